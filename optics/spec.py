@@ -1,0 +1,137 @@
+"""Spec: what a person or a file supplies. Caveats and refusals: how the tool speaks up.
+
+Two kinds of wrong. Impossible (a negative length, an NA above the index) raises `OutOfRange`.
+Outside the range that a formula's authors tested computes, and `beyond` finds the words for a
+`Caveat`. Nothing is clipped in silence.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+from pydantic import BaseModel, ConfigDict, Field, model_validator
+from pydantic_core import PydanticUndefined
+
+
+class OutOfRange(ValueError):
+    """An impossible value: the sentence names the argument, its value and what is allowed."""
+
+
+class Spec(BaseModel):
+    """Base of everything that a person or a file supplies: frozen, strict, nothing unknown."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid", strict=True, allow_inf_nan=False)
+
+
+@dataclass(frozen=True, slots=True)
+class Caveat:
+    """A sentence about this design that the reader should know, and the path it is about."""
+
+    where: str
+    text: str
+
+
+def quantity(
+    meaning: str,
+    *,
+    default: Any = PydanticUndefined,
+    usual: tuple[float, float] | None = None,
+    source: str | None = None,
+    common: bool = False,
+    gt: float | None = None,
+    ge: float | None = None,
+    lt: float | None = None,
+    le: float | None = None,
+) -> Any:
+    """One field of a Spec: its meaning, hard bounds (what is possible) and usual bounds.
+
+    `usual` feeds sliders, pick and random designs; `common` marks the few controls that people
+    move most; `source` is the key of a sourced default (or "trade", "assumed").
+    """
+    extra = {key: value for key, value in (("usual", usual), ("source", source), ("common", common)) if value}
+    return Field(default=default, description=meaning, json_schema_extra=extra or None, gt=gt, ge=ge, lt=lt, le=le)
+
+
+def require(name: str, value: Any, allowed: str, ok: Any) -> None:
+    """Raise OutOfRange unless `ok` holds everywhere; the sentence shows the first bad value.
+
+    >>> require("bore_mm", -1.0, "above 0", -1.0 > 0)
+    Traceback (most recent call last):
+    optics.spec.OutOfRange: bore_mm is -1; it must be above 0.
+    """
+    good = np.asarray(ok)
+    if good.all():
+        return
+    values = np.broadcast_to(np.asarray(value, dtype=float), np.broadcast_shapes(good.shape, np.shape(value)))
+    first = values[~np.broadcast_to(good, values.shape)].flat[0]
+    raise OutOfRange(f"{name} is {first:g}; it must be {allowed}.")
+
+
+def positive(**values: Any) -> None:
+    """Each named value must be finite and above 0, everywhere."""
+    for name, value in values.items():
+        require(name, value, "above 0", np.isfinite(value) & (np.asarray(value) > 0))
+
+
+def not_negative(**values: Any) -> None:
+    """Each named value must be finite and 0 or more, everywhere."""
+    for name, value in values.items():
+        require(name, value, "0 or more", np.isfinite(value) & (np.asarray(value) >= 0))
+
+
+def within(low: float, high: float, **values: Any) -> None:
+    """Each named value must lie in [low, high], everywhere."""
+    for name, value in values.items():
+        array = np.asarray(value)
+        require(name, value, f"from {low:g} to {high:g}", (array >= low) & (array <= high))
+
+
+def beyond(tested: Mapping[str, tuple[float, float]], **values: float) -> list[str]:
+    """One sentence for each value outside the range its formula was tested in.
+
+    >>> beyond({"relative_bend": (0.0, 0.42)}, relative_bend=0.5)
+    ['relative bend is 0.5, outside the tested 0 to 0.42']
+    """
+    said = []
+    for name, value in values.items():
+        low, high = tested[name]
+        if not low <= value <= high:
+            said.append(f"{name.replace('_', ' ')} is {value:.3g}, outside the tested {low:g} to {high:g}")
+    return said
+
+
+class Curve(Spec):
+    """A sampled function of wavelength: strictly increasing abscissa; its ends are its valid range."""
+
+    wavelength_nm: tuple[float, ...] = Field(strict=False, min_length=2, description="abscissa, strictly increasing")
+    value: tuple[float, ...] = Field(strict=False, min_length=2, description="ordinate, in the unit of the curve's key")
+
+    @model_validator(mode="after")
+    def _increasing(self):
+        if len(self.wavelength_nm) != len(self.value):
+            raise ValueError(
+                f"has {len(self.wavelength_nm)} wavelengths but {len(self.value)} values; it needs as many of each"
+            )
+        steps = np.diff(self.wavelength_nm)
+        if not (steps > 0).all():
+            at = int(np.argmin(steps > 0))
+            raise ValueError(
+                f"goes from {self.wavelength_nm[at]:g} to {self.wavelength_nm[at + 1]:g} nm; "
+                "its wavelengths must be strictly increasing"
+            )
+        if min(self.value) < 0:
+            raise ValueError(f"has the value {min(self.value):g}; each must be 0 or more")
+        return self
+
+    @cached_property
+    def abscissa(self) -> np.ndarray:
+        return np.array(self.wavelength_nm)
+
+    @cached_property
+    def ordinate(self) -> np.ndarray:
+        return np.array(self.value)
+
+    def __hash__(self) -> int:
+        return hash((self.wavelength_nm, self.value))
