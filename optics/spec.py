@@ -5,13 +5,15 @@ Outside the range that a formula's authors tested computes, and `beyond` finds t
 `Caveat`. Nothing is clipped in silence.
 """
 
+import difflib
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Any
+from typing import Any, Literal, get_args, get_origin
 
 import numpy as np
-from pydantic import BaseModel, ConfigDict, Field, model_validator
+from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
+from pydantic.fields import FieldInfo
 from pydantic_core import PydanticUndefined
 
 
@@ -135,3 +137,87 @@ class Curve(Spec):
 
     def __hash__(self) -> int:
         return hash((self.wavelength_nm, self.value))
+
+
+# From a failed validation to one sentence
+
+
+def allowed(field: FieldInfo) -> str:
+    """What a field of a Spec allows, in words.
+
+    >>> class Lens(Spec):
+    ...     focal_mm: float = quantity("focal length", gt=0, le=50)
+    >>> allowed(Lens.model_fields["focal_mm"])
+    'above 0 and at most 50'
+    """
+    words = {"gt": "above {:g}", "ge": "at least {:g}", "lt": "below {:g}", "le": "at most {:g}"}
+    said = [text.format(bound) for item in field.metadata for key, text in words.items() if (bound := getattr(item, key, None)) is not None]
+    return " and ".join(said)
+
+
+def refusal(model: type[BaseModel], wrong: ValidationError) -> str:
+    """The first error of a validation as one sentence: path, value, what is allowed (and the nearest known name)."""
+    error = min(wrong.errors(), key=lambda item: item["type"] == "missing")
+    path, owner, field = _walk(model, error["loc"])
+    context, value, kind = error.get("ctx", {}), error["input"], error["type"]
+    if kind == "missing":
+        return f"{path} is missing; it is {field.description}." if field else f"{path} is missing."
+    if kind == "extra_forbidden":
+        known = list(owner.model_fields) if owner else []
+        near = difflib.get_close_matches(str(error["loc"][-1]), known, n=1, cutoff=0.5)
+        hint = f" (nearest: {near[0]})" if near else ""
+        return f"{path} is not a known key{hint}; known here: {', '.join(known)}."
+    if kind == "union_tag_not_found":
+        return f"{path}.form is missing; it must be one of {_tags(field)}."
+    if kind == "union_tag_invalid":
+        return f"{path}.form is {context.get('tag')!r}; it must be one of {_tags(field)}."
+    if kind == "literal_error":
+        return f"{path} is {value!r}; it must be {context['expected']}."
+    if kind == "value_error":
+        said = str(context["error"])
+        return f"{path} {said}." if path else said
+    bounds = field and allowed(field)
+    number = "a finite number" if "float" in kind or kind == "finite_number" else "a whole number" if "int" in kind else ""
+    if number or kind in ("greater_than", "greater_than_equal", "less_than", "less_than_equal"):
+        shown = f"{value:g}" if isinstance(value, float | int) and not isinstance(value, bool) else repr(value)
+        return f"{path} is {shown}; it must be {' '.join(filter(None, (number, bounds)))}."
+    return f"{path} is {value!r}: {error['msg'][0].lower()}{error['msg'][1:]}."
+
+
+def _tags(field: FieldInfo | None) -> str:
+    members = _members(field.annotation) if field else []
+    return ", ".join(sorted({tag for member in members for tag in _form_of(member)}))
+
+
+def _form_of(member: Any) -> tuple[str, ...]:
+    form = getattr(member, "model_fields", {}).get("form")
+    return get_args(form.annotation) if form else ()
+
+
+def _members(annotation: Any) -> list[Any]:
+    """The types an annotation may be, unions and tuples opened."""
+    inner = [part for part in get_args(annotation) if part not in (type(None), Ellipsis)]
+    if not inner or annotation is None or get_origin(annotation) is Literal:
+        return [annotation]
+    return [member for part in inner for member in _members(part)]
+
+
+def _walk(model: Any, loc: tuple) -> tuple[str, Any, FieldInfo | None]:
+    """(dotted path without union tags, the Spec that owns its last part, the field) of an error's place."""
+    path: list[str] = []
+    owner, field, here = None, None, [model]
+    for part in loc:
+        specs = [item for item in here if isinstance(item, type) and issubclass(item, BaseModel)]
+        holder = next((item for item in specs if part in item.model_fields), None)
+        tagged = [item for item in specs if part in _form_of(item)]
+        if isinstance(part, int):
+            path.append(str(part))
+        elif tagged and (len(here) > 1 or holder is None):
+            here = tagged
+        elif holder is not None:
+            owner, field, here = holder, holder.model_fields[part], _members(holder.model_fields[part].annotation)
+            path.append(part)
+        elif specs:
+            owner, field = specs[0], None
+            path.append(str(part))
+    return ".".join(path), owner, field

@@ -122,3 +122,9 @@ def db_from_transmission(transmission: Numbers) -> Numbers:
 def db_m_from_db_km(loss_db: Numbers) -> Numbers:
     """Decibels per meter from decibels per kilometer."""
     return loss_db * 1e-3
+
+
+# Illuminance
+def lux_from_lm_mm2(exitance_lm_mm2: Numbers) -> Numbers:
+    """Lux from lumens per mm2; W/m2 from W per mm2 alike."""
+    return exitance_lm_mm2 * 1e6

@@ -1,0 +1,112 @@
+"""`size`: light on the target, smallest detail, fit and caveats of one design."""
+
+import argparse
+
+from optics.commands.terminal import add_design, as_json, opened, paragraph, rounded, table
+from optics.report.answer import Report
+from optics.report.reasons import limit_reason
+from optics.report.size import size
+from optics.report.verdict import sentence
+
+
+
+def add_arguments(parser: argparse.ArgumentParser) -> None:
+    add_design(parser)
+    parser.add_argument("--json", action="store_true", help="JSON alone, numbers unrounded")
+
+
+def run(options: argparse.Namespace) -> int:
+    design = opened(options)
+    report = size(design.fiberscope, design.sourced)
+    print(as_json(report.as_dict()) if options.json else written(report))
+    return 0
+
+
+def written(report: Report) -> str:
+    """The report as text: the answer first, then the light, the target, the detail, the body, the needs, caveats last."""
+    parts = [f"{report.name}  ({report.setting}, design {report.design_hash}, version {report.version})", paragraph(sentence(report), lead=""), ""]
+    parts += ["Light, in the order of its way", _light(report), ""]
+    if report.target:
+        parts += ["On the target", _pairs(_target_rows(report)), ""]
+    if report.detail:
+        parts += ["Detail", _pairs(_detail_rows(report)), "", _ledger(report), ""]
+    if report.fit:
+        parts += ["Fit and passage", _pairs(_fit_rows(report)), ""]
+    if report.exposure:
+        rows = [(line.name, rounded(line.value), line.unit, rounded(line.limit), line.because) for line in report.exposure]
+        parts += ["Screening of optical radiation", table([("", "value", "unit", "figure", ""), *rows], right=(1, 3)), ""]
+    if report.needs:
+        rows = [(("met" if line.met else "NOT met"), line.name, rounded(line.wanted), rounded(line.got), _margin(line.margin)) for line in report.needs]
+        parts += ["Needs", table([("", "", "wanted", "got", "margin"), *rows], right=(2, 3, 4)), ""]
+    parts += ["Caveats", *(paragraph(f"{item.where}: {item.text}", lead="  - ") for item in report.caveats)]
+    return "\n".join(parts)
+
+
+def _margin(margin: float | None) -> str:
+    return "-" if margin is None else f"{margin:+.0%}"
+
+
+def _pairs(rows) -> str:
+    return table([(name, rounded(value), unit) for name, value, unit in rows if value is not None], right=(1,))
+
+
+def _light(report: Report) -> str:
+    light = report.light
+    rows = [(step.name, rounded(step.after_lm), f"x {step.factor:.3f}", step.because) for step in light.steps]
+    total = [
+        ("delivered", rounded(light.delivered_lm), f"x {light.transmission:.3f}", f"{rounded(light.delivered_w)} W, 95 % within NA "
+         f"{light.exit_na:.3f}, {light.color_temperature_k:.0f} K, color rendering index {light.color_rendering_index:.0f}"),
+    ]  # fmt: skip
+    return table([("", "lm", "factor", ""), *rows, *total], right=(1, 2))
+
+
+def _target_rows(report: Report):
+    target = report.target
+    return [
+        ("at the center", target.center_lux, "lux"),
+        ("mean over the field of view", target.mean_lux, "lux"),
+        ("least in the field of view", target.min_lux, "lux"),
+        ("evenness (least over mean)", target.evenness, ""),
+        ("field without light", target.unlit_fraction, "of its area"),
+        ("irradiance at the center", target.center_w_m2, "W/m2"),
+        ("radius of the field", target.field_radius_mm, "mm"),
+        ("light reaches the axis from", target.first_lit_mm, "mm"),
+    ]
+
+
+def _detail_rows(report: Report):
+    detail, summary = report.detail, report.summary
+    return [
+        ("resolved at the target", summary.resolved_lp_mm, "lp/mm"),
+        ("smallest gap seen", summary.smallest_gap_mm, "mm"),
+        ("thinnest dark line seen", summary.smallest_line_mm, "mm"),
+        ("one pitch at the target", detail.pitch_at_target_mm, "mm"),
+        ("lattice limit at the target", detail.lattice_limit_lp_mm, "lp/mm"),
+        ("signal to noise of one core", detail.snr, ""),
+        ("exposure", detail.exposure_s, "s"),
+        ("sharp from", detail.near_mm, "mm"),
+        ("sharp to", "far away" if detail.far_mm is None else detail.far_mm, "" if detail.far_mm is None else "mm"),
+        ("field of view", summary.field_of_view_deg, "deg"),
+        ("limited by", summary.limited_by, limit_reason(summary.limited_by)),
+    ]
+
+
+def _ledger(report: Report) -> str:
+    rows = [(line.name, f"{line.contrast:.3f}", "no limit" if line.limit_lp_mm is None else rounded(line.limit_lp_mm)) for line in report.detail.ledger]
+    return table([("part", "contrast there", "alone allows, lp/mm"), *rows], right=(1, 2))
+
+
+def _fit_rows(report: Report):
+    fit, summary = report.fit, report.summary
+    return [
+        ("outer diameter", fit.outer_diameter_mm, "mm"),
+        ("lumen", fit.lumen_mm, "mm"),
+        ("free area", fit.free_area_mm2, "mm2"),
+        ("light area (fibers)", fit.light_area_mm2, "mm2"),
+        ("fibers", fit.fiber_count, ""),
+        ("rigid tip", summary.rigid_tip_mm, "mm"),
+        ("longest rigid tip that passes", fit.longest_rigid_tip_mm, "mm"),
+        ("least bend radius of the tube", fit.bend_radius_mm, "mm"),
+        ("bend radius that the bore gives", fit.passable_radius_mm, "mm"),
+        ("passes", fit.passes, ""),
+    ]

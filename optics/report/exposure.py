@@ -1,0 +1,3 @@
+"""The screening of optical radiation, as lines with their words."""
+def exposure(fiberscope, figures, row):
+    return ()
