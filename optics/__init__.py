@@ -1,8 +1,8 @@
 """Sizing of fiberscopes: light on the target, smallest detail, fit and passage, each number with its source.
 
-    >>> import optics
-    >>> optics.size(optics.load("gearbox_tooth")).name
-    'Gearbox tooth check'
+>>> import optics
+>>> optics.size(optics.load("gearbox_tooth")).name
+'Gearbox tooth check'
 """
 
 # The public names and the module each lives in; nothing heavy is imported until one is asked for.
@@ -20,7 +20,7 @@ PUBLIC = {
     "resolve": "optics.presets",
     "edited": "optics.presets",
 }
-__all__ = list(PUBLIC)  # noqa: PLE0604
+__all__ = list(PUBLIC)
 
 
 def __getattr__(name: str):

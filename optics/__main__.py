@@ -31,7 +31,7 @@ def main(arguments: list[str] | None = None) -> int:
     except OutOfRange as wrong:
         print(wrong, file=sys.stderr)
         return 1
-    except BrokenPipeError:   # the reader (head, less) has seen enough
+    except BrokenPipeError:  # the reader (head, less) has seen enough
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return 0
 

@@ -37,7 +37,9 @@ class Source(Spec):
 
     lamp: Lamp = Field(description="the lamp")
     filter: Filter | None = Field(default=None, description="a filter between lamp and guide; absent: none")
-    launch: Annotated[Butt | Spot | Matched | Rated, Discriminator("form")] = Field(description="how the light meets the first face")
+    launch: Annotated[Butt | Spot | Matched | Rated, Discriminator("form")] = Field(
+        description="how the light meets the first face"
+    )
 
 
 class Guide(Spec):
@@ -64,7 +66,9 @@ class BundleImage(Spec):
 
     form: Literal["bundle"] = Field(description="a coherent fiber bundle carries the picture")
     objective: Objective = Field(description="the lens at the tip")
-    tip: Tip | None = Field(default=None, description="a prism, mirror or window in front of the objective; absent: none")
+    tip: Tip | None = Field(
+        default=None, description="a prism, mirror or window in front of the objective; absent: none"
+    )
     bundle: ImageBundle = Field(description="the coherent bundle")
 
 
@@ -73,7 +77,9 @@ class ChipImage(Spec):
 
     form: Literal["chip"] = Field(description="a sensor at the tip")
     objective: Objective = Field(description="the lens at the tip")
-    tip: Tip | None = Field(default=None, description="a prism, mirror or window in front of the objective; absent: none")
+    tip: Tip | None = Field(
+        default=None, description="a prism, mirror or window in front of the objective; absent: none"
+    )
     chip: Chip = Field(description="the sensor at the tip")
 
 
@@ -96,7 +102,9 @@ class Body(Spec):
 
     section: Section = Field(description="the section of the insertion tube")
     passage: Passage | None = Field(default=None, description="what the scope must pass; absent: nothing asked")
-    handling: Handling | None = Field(default=None, description="how the tube is bent and treated; absent: nothing asked")
+    handling: Handling | None = Field(
+        default=None, description="how the tube is bent and treated; absent: nothing asked"
+    )
 
 
 class Fiberscope(Spec):
@@ -108,8 +116,12 @@ class Fiberscope(Spec):
     source: Source = Field(description="lamp and launch")
     guide: Guide = Field(description="cable, joint, fiber and bundle")
     scene: Scene | None = Field(default=None, description="ports and target; absent: a bare light guide")
-    image: Annotated[BundleImage | ChipImage, Discriminator("form")] | None = Field(default=None, description="objective and bundle, or a chip; absent: none")
-    viewer: Annotated[CameraViewer | EyeViewer, Discriminator("form")] | None = Field(default=None, description="camera or eye; absent: none")
+    image: Annotated[BundleImage | ChipImage, Discriminator("form")] | None = Field(
+        default=None, description="objective and bundle, or a chip; absent: none"
+    )
+    viewer: Annotated[CameraViewer | EyeViewer, Discriminator("form")] | None = Field(
+        default=None, description="camera or eye; absent: none"
+    )
     body: Body | None = Field(default=None, description="section, passage, handling; absent: not asked")
     needs: Needs = Field(default_factory=Needs, description="what the job asks for")
 
@@ -121,8 +133,10 @@ class Fiberscope(Spec):
         for rule in RULES:
             values = [known.get(path) for path in rule.paths]
             if None not in values and not np.all(rule.holds(*values)):
-                shown = " and ".join(f"{path} is {value:g}" if isinstance(value, float | int) else f"{path} is {value}"
-                                     for path, value in zip(rule.paths[: rule.shown], values))
+                shown = " and ".join(
+                    f"{path} is {value:g}" if isinstance(value, float | int) else f"{path} is {value}"
+                    for path, value in zip(rule.paths[: rule.shown], values)
+                )
                 raise ValueError(f"{shown}; {rule.sentence}.")
         return self
 
@@ -164,12 +178,26 @@ def _at_most(low, high):
 LAMP = ("source.lamp.emitter_mm", "source.lamp.cone_na")
 RULES = (
     Rule(
-        ("source.launch.spot_mm", "source.launch.cone_na", *LAMP, "source.launch.transmission", "source.launch.profile"),
-        lambda spot, na, emitter, cone, transmission, profile: _spot_allowed(emitter, cone, spot, na, transmission, profile),
+        (
+            "source.launch.spot_mm",
+            "source.launch.cone_na",
+            *LAMP,
+            "source.launch.transmission",
+            "source.launch.profile",
+        ),
+        lambda spot, na, emitter, cone, transmission, profile: _spot_allowed(
+            emitter, cone, spot, na, transmission, profile
+        ),
         "such a spot is brighter than its lamp allows (radiance is conserved): widen the spot or its cone, or take a brighter lamp",
     ),
     Rule(
-        ("source.launch.rated_lm", "source.lamp.flux_lm", *LAMP, "source.launch.reference_diameter_mm", "source.launch.reference_na"),
+        (
+            "source.launch.rated_lm",
+            "source.lamp.flux_lm",
+            *LAMP,
+            "source.launch.reference_diameter_mm",
+            "source.launch.reference_na",
+        ),
         _rating_allowed,
         "the rating is brighter than the lamp allows (radiance is conserved): it must be at most flux x etendue of the guide / etendue of the lamp",
     ),
@@ -181,21 +209,42 @@ RULES = (
             Rule((f"{fiber}.na", f"{fiber}.core_index"), _below, "the NA must be below the core index"),
         )
     ),
-    Rule(("guide.fiber.fiber_um", "guide.bundle.diameter_mm"), lambda fiber, bundle: np.asarray(fiber) <= bundle * 1000,
-         "the bundle must hold at least one fiber"),
+    Rule(
+        ("guide.fiber.fiber_um", "guide.bundle.diameter_mm"),
+        lambda fiber, bundle: np.asarray(fiber) <= bundle * 1000,
+        "the bundle must hold at least one fiber",
+    ),
     Rule(("guide.bundle.packing_fraction", "guide.fiber.fiber_um"), lambda packing, _: np.asarray(packing) <= 1, "", 1),
     Rule(("image.bundle.core_um", "image.bundle.pitch_um"), _below, "the core must be narrower than the pitch"),
     Rule(("image.bundle.na", "image.bundle.core_index"), _below, "the NA must be below the core index"),
-    Rule(("image.bundle.diameter_mm", "image.bundle.pitch_um"), lambda bundle, pitch: np.asarray(bundle) * 1000 >= 2.777 * pitch,
-         "an image bundle must have at least 7 cores"),
-    Rule(("image.objective.focus_mm", "image.objective.focal_mm"), lambda focus, focal: np.asarray(focus) > focal,
-         "the focus must lie beyond the focal length"),
-    Rule(("scene.target.near_mm", "scene.target.distance_mm"), _at_most, "the near end must be at most the working distance"),
-    Rule(("scene.target.distance_mm", "scene.target.far_mm"), _at_most, "the far end must be at least the working distance"),
-    Rule(("body.section.wall_mm", "body.section.outer_diameter_mm"),
-         lambda wall, outer: np.array([2 * w < o if not isinstance(o, str) else True for w, o in zip(np.atleast_1d(wall), np.atleast_1d(outer))]),
-         "the walls leave no lumen"),
-)  # fmt: skip
+    Rule(
+        ("image.bundle.diameter_mm", "image.bundle.pitch_um"),
+        lambda bundle, pitch: np.asarray(bundle) * 1000 >= 2.777 * pitch,
+        "an image bundle must have at least 7 cores",
+    ),
+    Rule(
+        ("image.objective.focus_mm", "image.objective.focal_mm"),
+        lambda focus, focal: np.asarray(focus) > focal,
+        "the focus must lie beyond the focal length",
+    ),
+    Rule(
+        ("scene.target.near_mm", "scene.target.distance_mm"),
+        _at_most,
+        "the near end must be at most the working distance",
+    ),
+    Rule(
+        ("scene.target.distance_mm", "scene.target.far_mm"),
+        _at_most,
+        "the far end must be at least the working distance",
+    ),
+    Rule(
+        ("body.section.wall_mm", "body.section.outer_diameter_mm"),
+        lambda wall, outer: np.array(
+            [2 * w < o if not isinstance(o, str) else True for w, o in zip(np.atleast_1d(wall), np.atleast_1d(outer))]
+        ),
+        "the walls leave no lumen",
+    ),
+)
 
 
 def broken_tables(fiberscope: Fiberscope) -> Iterator[str]:
@@ -263,4 +312,4 @@ FORMS: dict[str, dict[str, tuple[type[Spec], dict[str, Any]]]] = {
         "camera": (CameraViewer, _CAMERA),
         "eye": (EyeViewer, {"eye": {"preset": "eyepiece_25mm"}}),
     },
-}  # fmt: skip
+}

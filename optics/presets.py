@@ -44,7 +44,7 @@ class Design:
     sourced: dict[str, Sourced]
 
 
-def open(path_or_name: str | Path) -> Design:  # noqa: A001
+def open(path_or_name: str | Path) -> Design:
     """The design of a file, or of a demo design by its name.
 
     >>> open("gearbox_tooth").fiberscope.setting

@@ -85,14 +85,25 @@ def _row(entry: dict[str, Any], source: str, where: str) -> Row:
     if not isinstance(entry.get("printed"), str) or "quantity" not in entry:
         raise OutOfRange(f"{where}: printed is {entry.get('printed')!r}; it must be a text with the digits as printed.")
     if "tolerance" in entry and "because" not in entry:
-        raise OutOfRange(f"{where}: tolerance is {entry['tolerance']}; a tolerance of its own needs a reason (because).")
+        raise OutOfRange(
+            f"{where}: tolerance is {entry['tolerance']}; a tolerance of its own needs a reason (because)."
+        )
     basis = entry.get("basis", "read")
     if basis not in BASES:
         raise OutOfRange(f"{where}: basis is {basis!r}; it must be one of {', '.join(BASES)}.")
     return Row(
-        source, entry["quantity"], entry.get("given", {}), entry.get("field"), entry.get("item"), entry["printed"], entry.get("at", ""),
-        float(entry.get("tolerance", half_unit(entry["printed"]))), entry.get("because"), entry.get("differs"), basis,
-    )  # fmt: skip
+        source,
+        entry["quantity"],
+        entry.get("given", {}),
+        entry.get("field"),
+        entry.get("item"),
+        entry["printed"],
+        entry.get("at", ""),
+        float(entry.get("tolerance", half_unit(entry["printed"]))),
+        entry.get("because"),
+        entry.get("differs"),
+        basis,
+    )
 
 
 def _found(path: list[str], name: str) -> Any:

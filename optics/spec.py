@@ -135,6 +135,9 @@ class Curve(Spec):
     def ordinate(self) -> np.ndarray:
         return np.array(self.value)
 
+    def __eq__(self, other: object) -> bool:
+        return isinstance(other, Curve) and (self.wavelength_nm, self.value) == (other.wavelength_nm, other.value)
+
     def __hash__(self) -> int:
         return hash((self.wavelength_nm, self.value))
 
@@ -151,7 +154,12 @@ def allowed(field: FieldInfo) -> str:
     'above 0 and at most 50'
     """
     words = {"gt": "above {:g}", "ge": "at least {:g}", "lt": "below {:g}", "le": "at most {:g}"}
-    said = [text.format(bound) for item in field.metadata for key, text in words.items() if (bound := getattr(item, key, None)) is not None]
+    said = [
+        text.format(bound)
+        for item in field.metadata
+        for key, text in words.items()
+        if (bound := getattr(item, key, None)) is not None
+    ]
     return " and ".join(said)
 
 
@@ -177,7 +185,9 @@ def refusal(model: type[BaseModel], wrong: ValidationError) -> str:
         said = str(context["error"])
         return f"{path} {said}." if path else said
     bounds = field and allowed(field)
-    number = "a finite number" if "float" in kind or kind == "finite_number" else "a whole number" if "int" in kind else ""
+    number = (
+        "a finite number" if "float" in kind or kind == "finite_number" else "a whole number" if "int" in kind else ""
+    )
     if number or kind in ("greater_than", "greater_than_equal", "less_than", "less_than_equal"):
         shown = f"{value:g}" if isinstance(value, float | int) and not isinstance(value, bool) else repr(value)
         return f"{path} is {shown}; it must be {' '.join(filter(None, (number, bounds)))}."

@@ -15,9 +15,7 @@ import numpy as np
 from optics import units
 from optics.spec import Curve, OutOfRange, not_negative, positive, require, within
 from optics.tables import table
-
-AnyUnit = float | np.ndarray  # in the unit of what went in, or one without a suffix
-Mask = np.ndarray
+from optics.units import AnyUnit, Flags
 
 
 def _frozen(array: np.ndarray) -> np.ndarray:
@@ -64,7 +62,7 @@ def on_grid(curve: Curve) -> AnyUnit:
     return np.interp(GRID_NM, curve.abscissa, curve.ordinate, left=0.0, right=0.0)
 
 
-def covered(curve: Curve) -> Mask:
+def covered(curve: Curve) -> Flags:
     """Where on the grid a curve has data."""
     return (curve.abscissa[0] <= GRID_NM) & (curve.abscissa[-1] >= GRID_NM)
 
@@ -258,8 +256,7 @@ def _chromaticity(xyz: np.ndarray) -> Chromaticity:
 @lru_cache(maxsize=1)
 def _locus() -> tuple[np.ndarray, np.ndarray]:
     """Temperatures in steps of 0.25 % and the u, v of their black bodies."""
-    low, high = np.log(LOCUS_K)
-    temperature_k = np.exp(np.linspace(low, high, 1 + round((high - low) / 0.0025)))
+    temperature_k = np.geomspace(*LOCUS_K, 1 + round(np.log(LOCUS_K[1] / LOCUS_K[0]) / 0.0025))
     return temperature_k, _uv(planck(temperature_k=temperature_k) @ _observer())
 
 
@@ -274,7 +271,7 @@ def _nearest_on_locus(color: Chromaticity) -> tuple[np.ndarray, np.ndarray]:
     # Triangle: the foot of the perpendicular on the chord between the two neighbors
     chord = points[..., 2, :] - points[..., 0, :]
     length = np.linalg.norm(chord, axis=-1)
-    along = (d[..., 0] ** 2 - d[..., 2] ** 2 + length**2) / (2 * length**2)
+    along = ((d[..., 0] ** 2 - d[..., 2] ** 2 + length**2) / (2 * length**2)).clip(0.0, 1.0)
     foot = points[..., 0, :] + chord * along[..., None]
     near_k = t[..., 0] + (t[..., 2] - t[..., 0]) * along
     sign = np.where(uv[..., 1] >= foot[..., 1], 1.0, -1.0)
@@ -282,20 +279,24 @@ def _nearest_on_locus(color: Chromaticity) -> tuple[np.ndarray, np.ndarray]:
     # Parabola through the three distances, in temperature from the middle point
     before, after = t[..., 0] - t[..., 1], t[..., 2] - t[..., 1]
     left, right = (d[..., 0] - d[..., 1]) / before, (d[..., 2] - d[..., 1]) / after
-    bend = np.maximum((right - left) / (after - before), 1e-300)
+    bend = (right - left) / (after - before)
     slope = left - bend * before
-    far_k, far = t[..., 1] - slope / (2 * bend), d[..., 1] - slope**2 / (4 * bend)
+    # Beyond an end of the table the curve falls toward that end and may not bend up
+    vertex = np.where(bend > 0, -slope / np.where(bend > 0, 2 * bend, 1.0), -np.sign(slope) * np.inf)
+    shift = np.clip(vertex, before, after)
+    far_k, far = t[..., 1] + shift, d[..., 1] + shift * (slope + bend * shift)
     close, lit = near < 0.002, uv[..., 1] > 0
-    found_k = np.clip(np.where(close, near_k, far_k), *LOCUS_K)
-    return np.where(lit, found_k, 0.0)[()], np.where(lit, sign * np.where(close, near, far), 0.0)[()]
+    return np.where(lit, np.where(close, near_k, far_k), 0.0)[()], np.where(
+        lit, sign * np.where(close, near, far), 0.0
+    )[()]
 
 
 def _reference(t: np.ndarray, at_nm: np.ndarray, weights: np.ndarray) -> np.ndarray:
     """[..., 9, 3]: X, Y, Z of white and the 8 samples under the reference light of CIE 13.3 of t kelvin."""
     day = table("cie_daylight")
     basis = np.array([np.interp(at_nm, day["wavelength_nm"], day[key]) for key in ("s0", "s1", "s2")]) @ weights
-    low = np.polynomial.polynomial.polyval(1e3 / t, [0.244063, 0.09911, 2.9678, -4.6070])
-    high = np.polynomial.polynomial.polyval(1e3 / t, [0.237040, 0.24748, 1.9018, -2.0064])
+    low = np.polynomial.polynomial.polyval(1.0 / t, [0.244063, 0.09911e3, 2.9678e6, -4.6070e9])
+    high = np.polynomial.polynomial.polyval(1.0 / t, [0.237040, 0.24748e3, 1.9018e6, -2.0064e9])
     x = np.where(t <= 7000.0, low, high)
     y = -3.0 * x**2 + 2.870 * x - 0.275
     m = 0.0241 + 0.2562 * x - 0.7341 * y

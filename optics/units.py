@@ -4,10 +4,15 @@ A quantity is a plain float whose name ends in its unit. Conversions happen here
 else, so that no formula carries a bare power of ten.
 """
 
+from typing import Annotated
+
 import numpy as np
 
-# What a public number may be: one value, or an array that broadcasts.
+# What a public number may be: one value, or an array that broadcasts, in the unit that its name ends in.
 Numbers = float | np.ndarray
+# The same in whatever unit came in, and truth values one by one.
+AnyUnit = Annotated[float | np.ndarray, "in the unit of what went in"]
+Flags = Annotated[bool | np.ndarray, "true or false"]
 
 SUFFIXES = tuple(
     "nm um mm m mm2 um2 deg rad db db_m w w_nm lm w_m2 w_mm2 w_m2_k lux w_m2_sr cd_m2 j_m2 j_m2_sr "

@@ -219,9 +219,15 @@ def test_greenish_light_lies_above_the_locus_and_pinkish_below():
 def test_far_colors_give_a_number_within_the_ends_and_words():
     lines = np.eye(151)[[int((w - 350.0) / 5.0) for w in (450.0, 530.0, 640.0)]]
     kelvin, apart = color_temperature_k(**color(lines)), duv(**color(lines))
+    assert np.isfinite(apart).all()
     assert (kelvin >= 1000.0).all()
     assert (kelvin <= 100_000.0).all()
     assert kelvin[2] < 2000.0 < 20_000.0 < kelvin[0]
+    # The end of the table, and the distance to that end
+    ends = [np.array(chromaticity(**color(planck(temperature_k=t)))[2:]) for t in spectrum.LOCUS_K]
+    blue = np.array(chromaticity(**color(lines[0]))[2:])
+    assert kelvin[0] == pytest.approx(100_000.0)
+    assert apart[0] == pytest.approx(-np.hypot(*(blue - ends[1])), rel=1e-9)
     assert "outside the tested" in beyond(spectrum.TESTED, distance_from_locus=float(apart[1]))[0]
     assert np.isfinite(color_rendering_index(**color(lines))).all()
 

@@ -36,7 +36,12 @@ class Handling(Spec):
         default="none", description="harshest treatment: none, wipe (chemical), gas (ethylene oxide), plasma, steam"
     )
     highest_temperature_c: float = quantity(
-        "highest temperature that the insertion part meets", default=40.0, usual=(20, 150), source="assumed", ge=-50, le=1000
+        "highest temperature that the insertion part meets",
+        default=40.0,
+        usual=(20, 150),
+        source="assumed",
+        ge=-50,
+        le=1000,
     )
 
 

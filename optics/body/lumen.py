@@ -6,15 +6,19 @@ often the rest comes free beside them. Three that do not: the circle that enclos
 ones (Soddy). More: `placing` builds layouts in a few orders while the lumen closes in.
 """
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 
-from optics.body.placing import orders, placed
+from optics.body.orders import orders
+from optics.body.placing import placed
+from optics.body.search import thorough_layout
 from optics.spec import not_negative, require
 from optics.units import Numbers
 
 _COARSE, _FINE = 6, 9  # halvings of the bracket while orders compete, then with the best one
+_BLOCK = 256  # lanes worked on together: their arrays stay in the cache
 _FIRST = 1.25  # of the lower bound: most lumens lie below
 _PLAIN = 0.004  # gain for which another order is taken up
 _FREE = 1e-9  # slack within which a lumen counts as that of the two largest parts
@@ -32,9 +36,7 @@ class Layout:
     comes_free: np.ndarray
 
 
-def smallest_lumens(
-    *, diameters_mm: np.ndarray, clearance_mm: Numbers, at_wall: np.ndarray | None = None
-) -> Layout:
+def smallest_lumens(*, diameters_mm: np.ndarray, clearance_mm: Numbers, at_wall: np.ndarray | None = None) -> Layout:
     """Smallest lumens for lists of round parts [section, part]; a diameter of 0 stands for no part.
 
     Closed forms up to three parts. From four on the lumen is the least in which one of a few orders
@@ -65,6 +67,44 @@ def smallest_lumens(
     widest = np.sort(radii, axis=1)[:, -2:].sum(axis=1)
     free = (counts > 2) & (radius <= widest * (1 + _FREE))
     return Layout(2 * radius + clearance, upright(centers, radii), free)
+
+
+def smallest_lumen(
+    *,
+    diameters_mm: np.ndarray,
+    clearance_mm: float,
+    thorough: bool,
+    at_wall: np.ndarray | None = None,
+    progress: Callable[[float], None] | None = None,
+) -> Layout:
+    """Smallest lumen for one list of round parts, centers in the order given.
+
+    Quick: `smallest_lumens`, milliseconds. Thorough: a search over the orders of placing and a
+    polish of the positions, up to a few seconds; `progress` is called with the share done.
+    Both give the same layout every time. Raises OutOfRange as `smallest_lumens` does.
+    References: unequal_circles_2013 (radii 1 to N).
+
+    >>> found = smallest_lumen(diameters_mm=[2.0, 4.0, 6.0, 8.0, 10.0], clearance_mm=0.0, thorough=True)
+    >>> round(float(found.lumen_mm) / 2, 6)
+    9.001398
+    """
+    parts = np.asarray(diameters_mm, float)
+    require("diameters_mm", parts.ndim, "one list of parts", parts.ndim == 1)
+    wall = np.zeros(parts.shape, bool) if at_wall is None else np.asarray(at_wall, bool)
+    quick = smallest_lumens(diameters_mm=parts[None], clearance_mm=clearance_mm, at_wall=wall[None])
+    one = Layout(float(quick.lumen_mm[0]), quick.centers_mm[0], quick.comes_free[0])
+    radii = np.where(parts > 0, (parts + clearance_mm) / 2, 0.0)
+    if not thorough or (parts > 0).sum() < 4 or one.comes_free:
+        return one
+    order = np.argsort(-radii, kind="stable")[: (parts > 0).sum()]
+    x, y = one.centers_mm[order].T
+    known = ((one.lumen_mm - clearance_mm) / 2, x, y)
+    least = float(_beside_two(radii[order][None], wall[order][None])[0][0])
+    lumen, x, y = thorough_layout(radii[order], wall[order], least, known, progress)
+    centers = np.zeros((len(parts), 2))
+    centers[order, 0], centers[order, 1] = x, y
+    free = lumen <= radii[order][:2].sum() * (1 + _FREE)
+    return Layout(float(2 * lumen + clearance_mm), upright(centers[None], radii[None])[0], np.bool_(free))
 
 
 def upright(centers: np.ndarray, radii: np.ndarray) -> np.ndarray:
@@ -148,11 +188,15 @@ def _closed_in(radii: np.ndarray, at_wall: np.ndarray, least: np.ndarray):
     lower bound leave.
     """
     sections, count = radii.shape
-    order, tie = orders(count, 24)
+    order, tie = orders(count)
 
     def fits(rows, number, lumen):
-        pick = (rows, order[number].T)
-        return placed(radii[pick], at_wall[pick], lumen, tie[number])
+        blocks = []
+        for k in range(0, max(len(rows), 1), _BLOCK):
+            few = slice(k, k + _BLOCK)
+            pick = (rows[few], order[number[few]].T)
+            blocks.append(placed(radii[pick], at_wall[pick], lumen[few], tie[number[few]]))
+        return [np.concatenate(found, axis=-1) for found in zip(*blocks)]
 
     def halved(rows, number, low, high, times):
         for _ in range(times):

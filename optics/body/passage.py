@@ -6,8 +6,6 @@ gap between tip and bore only grows. With Ri = Rc - B/2 and Ro = Rc + B/2 the ti
 inner wall in the middle of the bend while the corners of its ends touch the outer wall.
 """
 
-from dataclasses import dataclass
-
 import numpy as np
 from pydantic import Field
 

@@ -9,63 +9,9 @@ bit, alone and among others.
 Lengths are in any one unit; arrays lie as [circle, layout].
 """
 
-from itertools import permutations
-
 import numpy as np
 
 _TOUCH = 1e-9  # circles may come this much closer than touching, as a share of the lumen
-
-# Orders (largest circle 0) and the side that ties go to: +1 toward the first circle, -1 away from
-# it. Chosen once from all orders, so that few of them reach the best of all on random part lists.
-_ORDERS = {
-    4: (("0123", -1), ("0213", -1), ("1230", 1)),
-    5: (("12304", 1), ("01234", -1), ("03214", -1), ("02134", -1)),
-    6: (
-        ("130425", -1),
-        ("012345", 1),
-        ("012435", 1),
-        ("045231", 1),
-        ("041325", -1),
-        ("041235", -1),
-        ("042315", -1),
-        ("032514", -1),
-    ),
-    7: (
-        ("0452136", 1),
-        ("0123456", -1),
-        ("6204135", 1),
-        ("6204135", -1),
-        ("1253046", 1),
-        ("4201356", -1),
-        ("4015263", 1),
-        ("3125046", -1),
-        ("3241056", 1),
-        ("3015624", 1),
-        ("6241350", -1),
-        ("6103245", 1),
-        ("2406135", -1),
-        ("5321406", -1),
-        ("4301256", -1),
-        ("1504236", -1),
-    ),
-}
-
-
-def orders(count: int, most: int) -> tuple[np.ndarray, np.ndarray]:
-    """Orders to try for so many circles, and where ties go: [order, circle] and [order].
-
-    Up to 7 circles a short list serves unless `most` allows every order; beyond, seeded draws.
-    """
-    listed = _ORDERS.get(count)
-    if listed and most <= len(listed):
-        return np.array([[int(c) for c in order] for order, _ in listed]), np.array([float(tie) for _, tie in listed])
-    if count <= 7 and most > len(listed or ()):
-        every = np.array(list(permutations(range(count))))
-        if 2 * len(every) <= most or listed is None:
-            return np.repeat(every, 2, axis=0), np.tile([-1.0, 1.0], len(every))
-    draw = np.random.default_rng(count)
-    drawn = np.array([np.arange(count), *(draw.permutation(count) for _ in range(most - 1))])
-    return drawn, np.where(np.arange(most) % 2, 1.0, -1.0)
 
 
 def placed(

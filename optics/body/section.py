@@ -36,9 +36,7 @@ class Section(Spec):
         json_schema_extra={"usual": (0.8, 12.0), "common": True},
     )
     wall_mm: float = quantity("wall on each side: tube, braid and covering together", usual=(0.05, 0.7), ge=0, le=20)
-    clearance_mm: float = quantity(
-        "least gap between parts, and between parts and wall", usual=(0.0, 0.15), ge=0, le=5
-    )
+    clearance_mm: float = quantity("least gap between parts, and between parts and wall", usual=(0.0, 0.15), ge=0, le=5)
     image_jacket_mm: float = quantity(
         "wall around the image bundle, added to its radius; 0: bare",
         default=0.0,

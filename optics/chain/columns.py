@@ -18,9 +18,9 @@ from optics.spectrum import GRID_NM, covered, on_grid
 class Curves:
     """The distinct curves of one path on the wavelength grid, and which of them each design has (-1: none)."""
 
-    on_grid: np.ndarray   # [curve, wavelength]
-    covered: np.ndarray   # [curve, wavelength] inside the curve's own range
-    row: np.ndarray       # [design]
+    on_grid: np.ndarray  # [curve, wavelength]
+    covered: np.ndarray  # [curve, wavelength] inside the curve's own range
+    row: np.ndarray  # [design]
 
 
 @dataclass(frozen=True, slots=True)
@@ -132,18 +132,18 @@ def _padded(found: list[tuple | None]) -> np.ndarray:
     return table
 
 
+ABSENT = -1.2345e300  # stands for "no such number" where rows are compared
+
+
 def distinct_rows(tables: Columns, prefixes: tuple[str, ...]) -> tuple[np.ndarray, np.ndarray]:
     """(first row of each distinct setting of these tables, for every row which of them it is)."""
     parts = [np.zeros((tables.count, 1))]
-    for path in sorted(tables.number):
-        if path.startswith(prefixes):
-            parts.append(np.nan_to_num(tables.number[path].reshape(tables.count, -1), nan=-1.2345e300))
-    for path in sorted(tables.text):
-        if path.startswith(prefixes):
-            parts.append(np.unique(tables.text[path].astype(str), return_inverse=True)[1].reshape(-1, 1))
-    for path in sorted(tables.curve):
-        if path.startswith(prefixes):
-            parts.append(tables.curve[path].row.reshape(-1, 1))
+    for path in (path for path in sorted(tables.number) if path.startswith(prefixes)):
+        parts += [np.nan_to_num(tables.number[path].reshape(tables.count, -1), nan=ABSENT)]
+    for path in (path for path in sorted(tables.text) if path.startswith(prefixes)):
+        parts += [np.unique(tables.text[path].astype(str), return_inverse=True)[1].reshape(-1, 1)]
+    for path in (path for path in sorted(tables.curve) if path.startswith(prefixes)):
+        parts += [tables.curve[path].row.reshape(-1, 1)]
     stacked = np.ascontiguousarray(np.hstack([part.astype(float) for part in parts]))
     keys = stacked.view(np.dtype((np.void, stacked.dtype.itemsize * stacked.shape[1]))).ravel()
     _, first, inverse = np.unique(keys, return_index=True, return_inverse=True)

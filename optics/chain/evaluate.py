@@ -11,8 +11,8 @@ from optics.chain.light import light
 from optics.chain.target import field_of_view, target
 from optics.viewer.detail import PARTS
 
-BLOCK = 128   # designs at a time: what fits the cache
-NO_LIMIT = "limited_by"
+BLOCK = 128  # designs at a time: what fits the cache
+SPECTRA = ("lamp", "delivered", "target")
 
 
 @dataclass(frozen=True, slots=True)
@@ -20,11 +20,13 @@ class Figures:
     """All numbers of all designs: `value` by name [design], nan where a design has no such number.
 
     `after_lm`: lumens after each step, in the order of the light (nan: the design has no such step).
-    `spectrum_w_nm` [design, wavelength] of the delivered light and `lamp_w_nm` of the lamp.
+    `spectrum_w_nm` [design, wavelength]: of the lamp, of the delivered light, and (in W/m2/nm) at the
+    center of the target.
     """
 
     value: dict[str, np.ndarray]
     after_lm: dict[str, np.ndarray]
+    spectrum_w_nm: dict[str, np.ndarray]
 
     def __getitem__(self, name: str) -> np.ndarray:
         return self.value[name]
@@ -35,31 +37,62 @@ class Figures:
 
 
 STEPS = (
-    "lamp", "filter", "condenser", "cone", "spot", "input face",
-    "cable packing", "cable core share", "cable attenuation", "cable exit face", "joint", "guide input face",
-    "packing", "core share", "broken fibers", "attenuation", "bends", "exit face", "cover",
-)  # fmt: skip
+    "lamp",
+    "filter",
+    "condenser",
+    "cone",
+    "spot",
+    "input face",
+    "cable packing",
+    "cable core share",
+    "cable attenuation",
+    "cable exit face",
+    "joint",
+    "guide input face",
+    "packing",
+    "core share",
+    "broken fibers",
+    "attenuation",
+    "bends",
+    "exit face",
+    "cover",
+)
 
 
 def evaluate(columns: Columns) -> Figures:
-    """Every number of every design, in blocks; a design's numbers do not depend on its neighbors."""
-    blocks = [_block(columns.take(np.arange(start, min(start + BLOCK, columns.count)))) for start in range(0, columns.count, BLOCK)]
-    names = blocks[0].value.keys() if blocks else ()
-    value = {name: np.concatenate([block.value[name] for block in blocks]) for name in names}
-    steps = [step for step in STEPS if any(step in block.after_lm for block in blocks)]
-    after = {
-        step: np.concatenate([block.after_lm.get(step, np.full(len(block.value["delivered_lm"]), np.nan)) for block in blocks])
-        for step in steps
-    }
-    return Figures(value, after)
+    """Every number of every design; a design's numbers do not depend on its neighbors.
 
-
-def _block(columns: Columns) -> Figures:
-    lit = light(columns)
+    The section is laid out before the ports are placed, once for each distinct section; the light and
+    the detail follow in blocks.
+    """
     seen = field_of_view(columns)
-    body, ports = fit(columns, seen)
+    body, ports = fit(columns, seen["image_mm"])
+    blocks = []
+    for start in range(0, columns.count, BLOCK):
+        rows = np.arange(start, min(start + BLOCK, columns.count))
+        blocks.append(_block(columns.take(rows), _taken(ports, rows), _taken(seen, rows)))
+    value = {
+        name: np.concatenate([block.value[name] for block in blocks]) for name in (blocks[0].value if blocks else ())
+    }
+    after = {
+        step: np.concatenate(
+            [block.after_lm.get(step, np.full(len(block.value["delivered_lm"]), np.nan)) for block in blocks]
+        )
+        for step in STEPS
+        if any(step in block.after_lm for block in blocks)
+    }
+    spectrum = {name: np.concatenate([block.spectrum_w_nm[name] for block in blocks]) for name in SPECTRA if blocks}
+    return Figures({**seen, **body, **value}, after, spectrum)
+
+
+def _taken(table: dict[str, np.ndarray], rows: np.ndarray) -> dict[str, np.ndarray]:
+    return {name: found[rows] for name, found in table.items()}
+
+
+def _block(columns: Columns, ports: dict[str, np.ndarray], seen: dict[str, np.ndarray]) -> Figures:
+    lit = light(columns)
     landed = target(columns, lit, ports, seen)
     told = detail(columns, landed, seen)
-    value = {**lit.value, **seen, **body, **landed.value, **told}
-    value["frame_hz"] = 1.0 / value["exposure_s"]
-    return Figures(value, lit.after_lm)
+    value = {**lit.value, **landed.value, **told, "frame_hz": 1.0 / told["exposure_s"]}
+    spectrum = {"lamp": lit.lamp_w_nm, "delivered": lit.beam.spectrum_w_nm, "target": landed.center_w_m2_nm}
+    return Figures(value, lit.after_lm, spectrum)

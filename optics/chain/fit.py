@@ -13,11 +13,11 @@ from optics.units import um_from_mm
 TABLES = ("guide.bundle.diameter_mm", "image.bundle.diameter_mm", "image.chip", "scene.ports", "body.section")
 
 
-def fit(columns: Columns, seen: dict[str, np.ndarray]) -> tuple[dict[str, np.ndarray], dict[str, np.ndarray]]:
+def fit(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarray], dict[str, np.ndarray]]:
     """Numbers of the body [design] (nan without a body), and the ports [design, port] around the objective's axis."""
     first, inverse = distinct_rows(columns, TABLES)
     few = columns.take(first)
-    section, ports = _section(few, seen["image_mm"][first])
+    section, ports = _section(few, image_mm[first])
     section = {name: found[inverse] for name, found in section.items()}
     ports = {name: found[inverse] for name, found in ports.items()}
     body = columns.has("body.section.wall_mm")
@@ -37,7 +37,9 @@ def fit(columns: Columns, seen: dict[str, np.ndarray]) -> tuple[dict[str, np.nda
 
 def bend_radius_mm(columns: Columns) -> np.ndarray:
     """The least bend radius of the tube: the largest of what handling asks and what the fibers' strain allows."""
-    guide = least_bend_radius_mm(fiber_um=columns["guide.fiber.fiber_um"], allowed_strain=columns["guide.fiber.allowed_strain"])
+    guide = least_bend_radius_mm(
+        fiber_um=columns["guide.fiber.fiber_um"], allowed_strain=columns["guide.fiber.allowed_strain"]
+    )
     rod = columns.get("image.bundle.one_rod", 0.0) > 0
     image_um = np.where(rod, um_from_mm(columns["image.bundle.diameter_mm"]), columns["image.bundle.pitch_um"])
     image = least_bend_radius_mm(
@@ -56,7 +58,9 @@ def _section(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarr
     )
     core = np.where(np.isnan(image_mm), 0.0, core)
     ports, head, light = _ports(columns, core)
-    channels = columns.items("body.section.channels.inner_mm", 0.0) + 2 * columns.items("body.section.channels.wall_mm", 0.0)
+    channels = columns.items("body.section.channels.inner_mm", 0.0) + 2 * columns.items(
+        "body.section.channels.wall_mm", 0.0
+    )
     wires, at_wall = _wires(columns)
     parts = np.concatenate([head[:, None], light, channels, wires], axis=1)
     walled = np.concatenate([np.zeros((columns.count, parts.shape[1] - wires.shape[1]), bool), at_wall], axis=1)
@@ -81,7 +85,13 @@ def _ports(columns: Columns, core_mm: np.ndarray):
     A ring or a crescent lies around the image part: the head part is then as wide as its outer circle.
     """
     area_mm = columns["guide.bundle.diameter_mm"]
-    most = int(max(np.nan_to_num(columns["scene.ports.count"]).max(initial=1), columns.items("scene.ports.ports.x_mm", 0.0).shape[1], 2))
+    most = int(
+        max(
+            np.nan_to_num(columns["scene.ports.count"]).max(initial=1),
+            columns.items("scene.ports.ports.x_mm", 0.0).shape[1],
+            2,
+        )
+    )
     x, y, radius = (np.zeros((columns.count, most)) for _ in range(3))
     head, light = core_mm.copy(), np.zeros((columns.count, most))
     for form, rows in columns.split("scene.ports.form"):
@@ -95,22 +105,30 @@ def _ports(columns: Columns, core_mm: np.ndarray):
             y[rows] = np.where(here, offset * np.sin(turn), 0.0)
             light[rows] = 2 * radius[rows]
         elif form in ("annulus", "crescent"):
-            inner = np.where(np.isnan(columns["scene.ports.inner_mm"][rows]), core_mm[rows], columns["scene.ports.inner_mm"][rows])
+            inner = np.where(
+                np.isnan(columns["scene.ports.inner_mm"][rows]), core_mm[rows], columns["scene.ports.inner_mm"][rows]
+            )
             outer = np.sqrt(inner**2 + area_mm[rows] ** 2)
             away = np.zeros(len(rows))
             if form == "crescent":
                 asked = columns["scene.ports.offset_mm"][rows]
                 away = np.where(np.isnan(asked), (outer - inner) / 2, np.minimum(asked, (outer - inner) / 2))
-            radius[rows, 0], radius[rows, 1] = outer / 2, -inner / 2   # a negative radius is cut out of the first port
+            radius[rows, 0], radius[rows, 1] = outer / 2, -inner / 2  # a negative radius is cut out of the first port
             x[rows, 0] = away
             head[rows] = np.maximum(head[rows], outer)
         elif form == "placed":
-            given = {key: columns.items(f"scene.ports.ports.{key}", 0.0)[rows] for key in ("x_mm", "y_mm", "diameter_mm")}
+            given = {
+                key: columns.items(f"scene.ports.ports.{key}", 0.0)[rows] for key in ("x_mm", "y_mm", "diameter_mm")
+            }
             width = given["x_mm"].shape[1]
-            x[rows, :width], y[rows, :width], radius[rows, :width] = given["x_mm"], given["y_mm"], given["diameter_mm"] / 2
+            x[rows, :width], y[rows, :width], radius[rows, :width] = (
+                given["x_mm"],
+                given["y_mm"],
+                given["diameter_mm"] / 2,
+            )
             reach = 2 * (np.hypot(given["x_mm"], given["y_mm"]) + given["diameter_mm"] / 2).max(axis=1)
             head[rows] = np.maximum(head[rows], reach)
-        else:   # no scene: the guide itself is the only light part
+        else:  # no scene: the guide itself is the only light part
             light[rows, 0] = area_mm[rows]
             radius[rows, 0] = area_mm[rows] / 2
     return (x, y, radius), head, light
@@ -130,7 +148,10 @@ def _placed(columns: Columns, ports, centers_mm: np.ndarray, count: int) -> dict
 
 def _wires(columns: Columns) -> tuple[np.ndarray, np.ndarray]:
     """Diameters of all wires written out [design, wire], and which are fixed on the wall."""
-    diameter, count = columns.items("body.section.wires.diameter_mm", 0.0), columns.items("body.section.wires.count", 0.0)
+    diameter, count = (
+        columns.items("body.section.wires.diameter_mm", 0.0),
+        columns.items("body.section.wires.count", 0.0),
+    )
     at_wall = columns.items("body.section.wires.at_wall", 0.0) > 0
     width = int(count.sum(axis=1).max(initial=0))
     out, walled = np.zeros((columns.count, width)), np.zeros((columns.count, width), bool)

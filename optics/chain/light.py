@@ -29,17 +29,18 @@ from optics.source.launch import (
     matched_fraction,
     rated_flux_share,
 )
-from optics.spectrum import color_rendering_index, color_temperature_k, duv, integral, luminous_flux_lm, GRID_NM
+from optics.spectrum import GRID_NM, color_rendering_index, color_temperature_k, duv, integral, luminous_flux_lm
 
 INNER_BINS, OUTER_BINS = 20, 12
-WIDENED = 1.2   # bends leave light up to this multiple of NA^2 (leaky skew rays beyond the guide's own cone)
-EXIT_SHARE = 0.95   # exit_na holds this share of the lumens
+WIDENED = 1.2  # bends leave light up to this multiple of NA^2 (leaky skew rays beyond the guide's own cone)
+EXIT_SHARE = 0.95  # exit_na holds this share of the lumens
 
 
 @dataclass(frozen=True, slots=True)
 class Light:
     """The beam in front of the exit face, the lumens after each step (nan: no such step), and its numbers."""
 
+    lamp_w_nm: np.ndarray
     beam: Beam
     after_lm: dict[str, np.ndarray]
     value: dict[str, np.ndarray]
@@ -47,7 +48,7 @@ class Light:
 
 def light(columns: Columns) -> Light:
     """Every step from the lamp to the exit face (and the cover over it), for all designs."""
-    spectrum = lamp_spectrum(columns)
+    spectrum = lamp = lamp_spectrum(columns)
     after = {"lamp": luminous_flux_lm(spectrum)}
     value = {"lamp_w": integral(spectrum)}
     cable, filtered = columns.has("guide.cable.length_m"), (columns.curve.get("source.filter.transmission"))
@@ -70,15 +71,20 @@ def light(columns: Columns) -> Light:
     after["cone"] = after["condenser"] * share.sum(axis=1)
     share = share * launched.spot_share
     after["spot"] = after["condenser"] * share.sum(axis=1)
-    share = share * launched.condenser_share[:, None] * face_transmission_at(
-        core_index=face_index[:, None], outside_index=1.0, na_of_ray=na
+    share = (
+        share
+        * launched.condenser_share[:, None]
+        * face_transmission_at(core_index=face_index[:, None], outside_index=1.0, na_of_ray=na)
     )
     after["input face"] = flux * share.sum(axis=1)
     if cable.any():
-        packing, core = columns.get("guide.cable.packing_fraction", 1.0), np.nan_to_num(_core_share(columns, "guide.cable.fiber"), nan=1.0)
+        packing, core = (
+            columns.get("guide.cable.packing_fraction", 1.0),
+            _core_share(columns, "guide.cable.fiber"),
+        )
         after["cable packing"] = _only(cable, after["input face"] * packing)
         after["cable core share"] = _only(cable, after["input face"] * packing * core)
-        share = share * (packing * core)[:, None]   # both 1 where there is no cable
+        share = share * (packing * core)[:, None]  # both 1 where there is no cable
         through = _attenuated(columns, "guide.cable.fiber", columns.get("guide.cable.length_m", 0.0), na)
         power = share[:, :, None] * spectrum[:, None, :] * through
         bins = luminous_flux_lm(power)
@@ -94,7 +100,11 @@ def light(columns: Columns) -> Light:
     total = bins.sum(axis=1)
     after["packing"], after["core share"] = total * packing, total * packing * core
     after["broken fibers"] = _only(whole < 1, total * packing * core * whole)
-    power = power * (packing * core * whole)[:, None, None] * _attenuated(columns, "guide.fiber", columns["guide.bundle.length_m"], na)
+    power = (
+        power
+        * (packing * core * whole)[:, None, None]
+        * _attenuated(columns, "guide.fiber", columns["guide.bundle.length_m"], na)
+    )
     bins = luminous_flux_lm(power)
     after["attenuation"] = bins.sum(axis=1)
     power, bent = _bent(columns, edges, power)
@@ -104,19 +114,25 @@ def light(columns: Columns) -> Light:
 
     medium = medium_index(columns)
     cover = columns.has("scene.cover.index")
-    beyond = np.where(cover, 1.0, medium)   # a cover stands in air before the exit face
-    factor = face_transmission_at(core_index=columns["guide.fiber.core_index"][:, None], outside_index=beyond[:, None], na_of_ray=na)
+    beyond = np.where(cover, 1.0, medium)  # a cover stands in air before the exit face
+    factor = face_transmission_at(
+        core_index=columns["guide.fiber.core_index"][:, None], outside_index=beyond[:, None], na_of_ray=na
+    )
     bins = bins * factor
     after["exit face"] = bins.sum(axis=1)
     if cover.any():
         glass = columns.get("scene.cover.index", 1.0)[:, None]
         window = face_transmission_at(core_index=glass, outside_index=1.0, na_of_ray=na)
-        window = np.where(cover[:, None], window * face_transmission_at(core_index=glass, outside_index=medium[:, None], na_of_ray=na), 1.0)
+        window = np.where(
+            cover[:, None],
+            window * face_transmission_at(core_index=glass, outside_index=medium[:, None], na_of_ray=na),
+            1.0,
+        )
         factor, bins = factor * window, bins * window
         after["cover"] = _only(cover, bins.sum(axis=1))
     beam = Beam(power * factor[:, :, None], edges)
     value.update(_numbers(columns, beam, bins, after))
-    return Light(beam, after, value)
+    return Light(lamp, beam, after, value)
 
 
 def lamp_spectrum(columns: Columns) -> np.ndarray:
@@ -145,7 +161,9 @@ def lamp_etendue(columns: Columns) -> np.ndarray:
     return etendue_mm2_sr(diameter_mm=columns["source.lamp.emitter_mm"], na=columns["source.lamp.cone_na"])
 
 
-def launch(columns: Columns, edges: np.ndarray, fill_na: np.ndarray, *, face_mm: np.ndarray, face_na: np.ndarray) -> Launched:
+def launch(
+    columns: Columns, edges: np.ndarray, fill_na: np.ndarray, *, face_mm: np.ndarray, face_na: np.ndarray
+) -> Launched:
     """What reaches the first face, by each design's own form of launch."""
     guided = np.minimum(edges, face_na[:, None] ** 2)
     condenser = columns.get("source.launch.transmission", 1.0)
@@ -164,12 +182,15 @@ def launch(columns: Columns, edges: np.ndarray, fill_na: np.ndarray, *, face_mm:
             )
         elif form == "spot":
             gaussian = columns.texts("source.launch.profile")[rows] == "gaussian"
-            spot[rows] = disc_share(spot_mm=columns["source.launch.spot_mm"][rows], face_mm=face_mm[rows], gaussian=gaussian)[:, None]
+            spot[rows] = disc_share(
+                spot_mm=columns["source.launch.spot_mm"][rows], face_mm=face_mm[rows], gaussian=gaussian
+            )[:, None]
         elif form == "matched":
             condenser[rows] *= matched_fraction(lamp_etendue_mm2_sr=lamp[rows], bundle_etendue_mm2_sr=face)
         elif form == "rated":
             reference = etendue_mm2_sr(
-                diameter_mm=columns["source.launch.reference_diameter_mm"][rows], na=columns["source.launch.reference_na"][rows]
+                diameter_mm=columns["source.launch.reference_diameter_mm"][rows],
+                na=columns["source.launch.reference_na"][rows],
             )
             condenser[rows] = rated_flux_share(
                 rated_share=columns["source.launch.rated_lm"][rows] / columns["source.lamp.flux_lm"][rows],
@@ -201,7 +222,7 @@ def _only(has: np.ndarray, lumens: np.ndarray) -> np.ndarray:
 
 
 def _core_share(columns: Columns, table: str) -> np.ndarray:
-    return core_share(core_um=columns[f"{table}.core_um"], fiber_um=columns[f"{table}.fiber_um"])
+    return core_share(core_um=columns.get(f"{table}.core_um", 1.0), fiber_um=columns.get(f"{table}.fiber_um", 1.0))
 
 
 def _attenuated(columns: Columns, table: str, length_m: np.ndarray, na: np.ndarray) -> np.ndarray:
@@ -209,14 +230,18 @@ def _attenuated(columns: Columns, table: str, length_m: np.ndarray, na: np.ndarr
     stretch = stretch_at(na_of_ray=na, core_index=columns.get(f"{table}.core_index", 2.0)[:, None])
     inside = columns.covered(f"{table}.attenuation")
     loss = columns.spectrum(f"{table}.attenuation")
-    through = attenuation_transmission(loss_db_m=loss[:, None, :], length_m=length_m[:, None, None], stretch=stretch[:, :, None])
+    through = attenuation_transmission(
+        loss_db_m=loss[:, None, :], length_m=length_m[:, None, None], stretch=stretch[:, :, None]
+    )
     return np.where(inside[:, None, :], through, 0.0)
 
 
 def _joint(columns: Columns, cable: np.ndarray, na: np.ndarray, bins: np.ndarray):
     """Factor of each bin from the cable's core to the guide's core, and the lumens after each of its three steps."""
     gap = columns.get("guide.joint.index", 1.0)[:, None]
-    leave = face_transmission_at(core_index=columns.get("guide.cable.fiber.core_index", 1.5)[:, None], outside_index=gap, na_of_ray=na)
+    leave = face_transmission_at(
+        core_index=columns.get("guide.cable.fiber.core_index", 1.5)[:, None], outside_index=gap, na_of_ray=na
+    )
     cross = joint_share(
         from_mm=columns.get("guide.cable.diameter_mm", 1.0)[:, None],
         to_mm=columns["guide.bundle.diameter_mm"][:, None],
@@ -232,7 +257,10 @@ def _joint(columns: Columns, cable: np.ndarray, na: np.ndarray, bins: np.ndarray
 
 def _bent(columns: Columns, edges: np.ndarray, power: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
     """The beam after the bends of the scope's guide, and which designs have any."""
-    radius, angle = columns.items("guide.bundle.bends.radius_mm", np.inf), columns.items("guide.bundle.bends.angle_deg", 0.0)
+    radius, angle = (
+        columns.items("guide.bundle.bends.radius_mm", np.inf),
+        columns.items("guide.bundle.bends.angle_deg", 0.0),
+    )
     bent = (angle > 0).any(axis=1)
     if not bent.any():
         return power, bent
@@ -278,5 +306,6 @@ def _numbers(columns: Columns, beam: Beam, bins: np.ndarray, after: dict[str, np
         "color_rendering_index": color_rendering_index(wavelength_nm=GRID_NM, power=spectrum),
         "core_area_mm2": fiber_area_mm2(
             diameter_mm=columns["guide.bundle.diameter_mm"], packing_fraction=columns["guide.bundle.packing_fraction"]
-        ) * _core_share(columns, "guide.fiber"),
+        )
+        * _core_share(columns, "guide.fiber"),
     }

@@ -10,7 +10,7 @@ from optics.image.chip import diagonal_mm
 from optics.image.field import field_half_angle_deg, field_radius_mm
 from optics.image.objective import apparent_distance_mm, image_distance_mm
 from optics.image.tip import reduced_path_mm
-from optics.scene.field import field_irradiance, lit_tangents
+from optics.scene.field import field_irradiance
 from optics.spectrum import GRID_NM, integral, luminous_flux_lm
 from optics.units import deg_from_rad, m2_from_mm2
 
@@ -30,7 +30,9 @@ def field_of_view(columns: Columns) -> dict[str, np.ndarray]:
     index, depth = medium_index(columns), pupil_depth_mm(columns)
     image = columns.has("image.objective.focal_mm")
     focal = columns.get("image.objective.focal_mm", 1.0)
-    focus = apparent_distance_mm(distance_mm=columns.get("image.objective.focus_mm", 10.0), pupil_depth_mm=depth, index=index)
+    focus = apparent_distance_mm(
+        distance_mm=columns.get("image.objective.focus_mm", 10.0), pupil_depth_mm=depth, index=index
+    )
     behind = image_distance_mm(focal_mm=focal, focus_mm=focus)
     size = image_size_mm(columns)
     half = np.zeros(columns.count)
@@ -55,7 +57,9 @@ def field_of_view(columns: Columns) -> dict[str, np.ndarray]:
 
 def pupil_depth_mm(columns: Columns) -> np.ndarray:
     """Entrance pupil behind the distal face, glass of a viewing tip included as its reduced path."""
-    glass = reduced_path_mm(glass_path_mm=columns.get("image.tip.glass_path_mm", 0.0), index=columns.get("image.tip.index", 1.0))
+    glass = reduced_path_mm(
+        glass_path_mm=columns.get("image.tip.glass_path_mm", 0.0), index=columns.get("image.tip.index", 1.0)
+    )
     return columns.get("image.objective.pupil_depth_mm", 0.0) + glass
 
 
@@ -75,7 +79,16 @@ def image_size_mm(columns: Columns) -> np.ndarray:
 def target(columns: Columns, lit: Light, ports: dict[str, np.ndarray], seen: dict[str, np.ndarray]) -> Lit:
     """Illuminance over the field of view of every design that has a target."""
     wavelengths = lit.beam.power_w_nm.shape[-1]
-    names = ("center_lux", "mean_lux", "min_lux", "evenness", "unlit_fraction", "center_w_m2", "first_lit_mm", "uva_w_m2")
+    names = (
+        "center_lux",
+        "mean_lux",
+        "min_lux",
+        "evenness",
+        "unlit_fraction",
+        "center_w_m2",
+        "first_lit_mm",
+        "uva_w_m2",
+    )
     value = {name: np.full(columns.count, np.nan) for name in names}
     center = np.zeros((columns.count, wavelengths))
     rows = np.flatnonzero(columns.has("scene.target.distance_mm"))
@@ -98,11 +111,14 @@ def target(columns: Columns, lit: Light, ports: dict[str, np.ndarray], seen: dic
     has_field = ~np.isnan(seen["field_radius_mm"][rows])
     value["center_lux"][rows] = over.center_lux
     for name, found in (
-        ("mean_lux", over.mean_lux), ("min_lux", over.least_lux), ("evenness", over.evenness), ("unlit_fraction", over.unlit_share)
-    ):  # fmt: skip
+        ("mean_lux", over.mean_lux),
+        ("min_lux", over.least_lux),
+        ("evenness", over.evenness),
+        ("unlit_fraction", over.unlit_share),
+    ):
         value[name][rows] = np.where(has_field, found, np.nan)
     value["first_lit_mm"][rows] = over.first_lit_mm
     value["center_w_m2"][rows] = integral(center[rows])
-    uva = (GRID_NM >= UVA_NM[0]) & (GRID_NM <= UVA_NM[1])
+    uva = (UVA_NM[0] <= GRID_NM) & (UVA_NM[1] >= GRID_NM)
     value["uva_w_m2"][rows] = integral(np.where(uva, center[rows], 0.0))
     return Lit(center, value)

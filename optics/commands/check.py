@@ -25,10 +25,13 @@ def run(options: argparse.Namespace) -> int:
     bases = Counter(item.row.basis for item in checked)
     published = len(checked) - bases["remembered"]
     said = ", ".join(f"{count} {basis}" for basis, count in bases.most_common())
-    print(paragraph(
-        f"{len(checked)} rows from {len({item.row.source for item in checked})} sources ({said}): {published} published or derived by an "
-        f"independent route, {bases['remembered']} from memory. {len(wrong)} disagree.", lead="",
-    ))  # fmt: skip
+    print(
+        paragraph(
+            f"{len(checked)} rows from {len({item.row.source for item in checked})} sources ({said}): {published} published or derived by an "
+            f"independent route, {bases['remembered']} from memory. {len(wrong)} disagree.",
+            lead="",
+        )
+    )
     return 1 if wrong else 0
 
 
@@ -41,6 +44,13 @@ def _line(item: Checked) -> tuple[str, ...]:
 def _plain(item: Checked) -> dict:
     row = item.row
     return {
-        "source": row.source, "quantity": row.quantity, "printed": row.printed, "got": item.got, "tolerance": row.tolerance,
-        "met": item.met, "differs": row.differs, "basis": row.basis, "at": row.at,
-    }  # fmt: skip
+        "source": row.source,
+        "quantity": row.quantity,
+        "printed": row.printed,
+        "got": item.got,
+        "tolerance": row.tolerance,
+        "met": item.met,
+        "differs": row.differs,
+        "basis": row.basis,
+        "at": row.at,
+    }

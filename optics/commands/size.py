@@ -9,7 +9,6 @@ from optics.report.size import size
 from optics.report.verdict import sentence
 
 
-
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     add_design(parser)
     parser.add_argument("--json", action="store_true", help="JSON alone, numbers unrounded")
@@ -24,7 +23,11 @@ def run(options: argparse.Namespace) -> int:
 
 def written(report: Report) -> str:
     """The report as text: the answer first, then the light, the target, the detail, the body, the needs, caveats last."""
-    parts = [f"{report.name}  ({report.setting}, design {report.design_hash}, version {report.version})", paragraph(sentence(report), lead=""), ""]
+    parts = [
+        f"{report.name}  ({report.setting}, design {report.design_hash}, version {report.version})",
+        paragraph(sentence(report), lead=""),
+        "",
+    ]
     parts += ["Light, in the order of its way", _light(report), ""]
     if report.target:
         parts += ["On the target", _pairs(_target_rows(report)), ""]
@@ -33,10 +36,25 @@ def written(report: Report) -> str:
     if report.fit:
         parts += ["Fit and passage", _pairs(_fit_rows(report)), ""]
     if report.exposure:
-        rows = [(line.name, rounded(line.value), line.unit, rounded(line.limit), line.because) for line in report.exposure]
-        parts += ["Screening of optical radiation", table([("", "value", "unit", "figure", ""), *rows], right=(1, 3)), ""]
+        rows = [
+            (line.name, rounded(line.value), line.unit, rounded(line.limit), line.because) for line in report.exposure
+        ]
+        parts += [
+            "Screening of optical radiation",
+            table([("", "value", "unit", "figure", ""), *rows], right=(1, 3)),
+            "",
+        ]
     if report.needs:
-        rows = [(("met" if line.met else "NOT met"), line.name, rounded(line.wanted), rounded(line.got), _margin(line.margin)) for line in report.needs]
+        rows = [
+            (
+                ("met" if line.met else "NOT met"),
+                line.name,
+                rounded(line.wanted),
+                rounded(line.got),
+                _margin(line.margin),
+            )
+            for line in report.needs
+        ]
         parts += ["Needs", table([("", "", "wanted", "got", "margin"), *rows], right=(2, 3, 4)), ""]
     parts += ["Caveats", *(paragraph(f"{item.where}: {item.text}", lead="  - ") for item in report.caveats)]
     return "\n".join(parts)
@@ -54,9 +72,14 @@ def _light(report: Report) -> str:
     light = report.light
     rows = [(step.name, rounded(step.after_lm), f"x {step.factor:.3f}", step.because) for step in light.steps]
     total = [
-        ("delivered", rounded(light.delivered_lm), f"x {light.transmission:.3f}", f"{rounded(light.delivered_w)} W, 95 % within NA "
-         f"{light.exit_na:.3f}, {light.color_temperature_k:.0f} K, color rendering index {light.color_rendering_index:.0f}"),
-    ]  # fmt: skip
+        (
+            "delivered",
+            rounded(light.delivered_lm),
+            f"x {light.transmission:.3f}",
+            f"{rounded(light.delivered_w)} W, 95 % within NA "
+            f"{light.exit_na:.3f}, {light.color_temperature_k:.0f} K, color rendering index {light.color_rendering_index:.0f}",
+        ),
+    ]
     return table([("", "lm", "factor", ""), *rows, *total], right=(1, 2))
 
 
@@ -92,7 +115,10 @@ def _detail_rows(report: Report):
 
 
 def _ledger(report: Report) -> str:
-    rows = [(line.name, f"{line.contrast:.3f}", "no limit" if line.limit_lp_mm is None else rounded(line.limit_lp_mm)) for line in report.detail.ledger]
+    rows = [
+        (line.name, f"{line.contrast:.3f}", "no limit" if line.limit_lp_mm is None else rounded(line.limit_lp_mm))
+        for line in report.detail.ledger
+    ]
     return table([("part", "contrast there", "alone allows, lp/mm"), *rows], right=(1, 2))
 
 

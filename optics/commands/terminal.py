@@ -11,11 +11,17 @@ from optics import presets
 
 
 def add_design(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("design", metavar="FILE_OR_NAME", help="a design file, or the name of a demo design (see `list`)")
     parser.add_argument(
-        "--set", dest="settings", action="append", default=[], metavar="PATH=VALUE",
+        "design", metavar="FILE_OR_NAME", help="a design file, or the name of a demo design (see `list`)"
+    )
+    parser.add_argument(
+        "--set",
+        dest="settings",
+        action="append",
+        default=[],
+        metavar="PATH=VALUE",
         help="change one value, as in guide.bundle.length_m=3; may be repeated",
-    )  # fmt: skip
+    )
 
 
 def opened(options: argparse.Namespace) -> presets.Design:
@@ -61,7 +67,10 @@ def table(rows: Iterable[Sequence[str]], *, right: Sequence[int] = (), indent: i
     room = shutil.get_terminal_size((100, 24)).columns - indent - sum(widths[:-1]) - 2 * (len(widths) - 1)
     lines = []
     for row in rows:
-        cells = [cell.rjust(width) if column in right else cell.ljust(width) for column, (cell, width) in enumerate(zip(row, widths))]
+        cells = [
+            cell.rjust(width) if column in right else cell.ljust(width)
+            for column, (cell, width) in enumerate(zip(row, widths))
+        ]
         lead = " " * indent + "  ".join(cells[:-1]) + ("  " if len(cells) > 1 else "")
         last = textwrap.wrap(row[-1], max(room, 24)) if wrap and len(widths) - 1 not in right else [cells[-1]]
         lines.append((lead + (last or [""])[0]).rstrip())
@@ -70,4 +79,6 @@ def table(rows: Iterable[Sequence[str]], *, right: Sequence[int] = (), indent: i
 
 
 def paragraph(text: str, *, lead: str = "  ") -> str:
-    return textwrap.fill(text, shutil.get_terminal_size((100, 24)).columns, initial_indent=lead, subsequent_indent=" " * len(lead))
+    return textwrap.fill(
+        text, shutil.get_terminal_size((100, 24)).columns, initial_indent=lead, subsequent_indent=" " * len(lead)
+    )

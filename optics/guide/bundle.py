@@ -13,17 +13,27 @@ class Bend(Spec):
 
     radius_mm: float = quantity("radius of the guide's axis", gt=0, usual=(5.0, 200.0))
     angle_deg: float = quantity("angle turned", ge=0, le=3600, usual=(0.0, 360.0))
-    repeats: int = quantity("how many such bends, one after another with straight runs between", default=1, source="assumed", ge=1, le=12)
+    repeats: int = quantity(
+        "how many such bends, one after another with straight runs between", default=1, source="assumed", ge=1, le=12
+    )
 
 
 class GuideBundle(Spec):
     """The scope's own light guide, all branches together by area."""
 
-    diameter_mm: float = quantity("diameter of the round bundle that has the area of all branches", gt=0, le=50, usual=(0.3, 6.0), common=True)
+    diameter_mm: float = quantity(
+        "diameter of the round bundle that has the area of all branches", gt=0, le=50, usual=(0.3, 6.0), common=True
+    )
     length_m: float = quantity("length from input face to exit face", gt=0, le=1000, usual=(0.3, 8.0), common=True)
-    packing_fraction: float = quantity("fiber area over bundle area (the core share is a factor of its own)", gt=0, le=1, usual=(0.7, 0.9))
-    broken_fraction: float = quantity("share of the fibers that are broken", default=0.0, source="assumed", ge=0, lt=1, usual=(0.0, 0.2))
-    bends: tuple[Bend, ...] = Field(default=(), strict=False, max_length=12, description="separate bends, from the lamp on")
+    packing_fraction: float = quantity(
+        "fiber area over bundle area (the core share is a factor of its own)", gt=0, le=1, usual=(0.7, 0.9)
+    )
+    broken_fraction: float = quantity(
+        "share of the fibers that are broken", default=0.0, source="assumed", ge=0, lt=1, usual=(0.0, 0.2)
+    )
+    bends: tuple[Bend, ...] = Field(
+        default=(), strict=False, max_length=12, description="separate bends, from the lamp on"
+    )
 
 
 class Cable(Spec):

@@ -6,15 +6,19 @@ from optics.circles import overlap_area
 from optics.spec import Spec, quantity
 from optics.units import Numbers
 
-AZIMUTHS = (np.arange(24) + 0.5) * np.pi / 24   # half a turn; the other half mirrors it
+AZIMUTHS = (np.arange(24) + 0.5) * np.pi / 24  # half a turn; the other half mirrors it
 
 
 class Joint(Spec):
     """How the cable's face meets the guide's face."""
 
     gap_mm: float = quantity("distance between the two faces", ge=0, le=20, usual=(0.0, 1.0), common=True)
-    offset_mm: float = quantity("sideways offset of the two axes", default=0.0, source="assumed", ge=0, le=20, usual=(0.0, 1.0))
-    index: float = quantity("refractive index between the faces (1 = air)", default=1.0, source="assumed", ge=1, le=2, usual=(1.0, 1.6))
+    offset_mm: float = quantity(
+        "sideways offset of the two axes", default=0.0, source="assumed", ge=0, le=20, usual=(0.0, 1.0)
+    )
+    index: float = quantity(
+        "refractive index between the faces (1 = air)", default=1.0, source="assumed", ge=1, le=2, usual=(1.0, 1.6)
+    )
 
 
 def joint_share(
@@ -31,7 +35,11 @@ def joint_share(
     """
     sine = np.minimum(np.asarray(na) / gap_index, 1.0 - 1e-12)
     shift = (gap_mm * sine / np.sqrt(1 - sine**2))[..., None]
-    away = np.sqrt(shift**2 + np.asarray(offset_mm)[..., None] ** 2 + 2 * shift * np.asarray(offset_mm)[..., None] * np.cos(AZIMUTHS))
+    away = np.sqrt(
+        shift**2
+        + np.asarray(offset_mm)[..., None] ** 2
+        + 2 * shift * np.asarray(offset_mm)[..., None] * np.cos(AZIMUTHS)
+    )
     common = overlap_area(
         radius_1=np.asarray(from_mm)[..., None] / 2, radius_2=np.asarray(to_mm)[..., None] / 2, distance=away
     )

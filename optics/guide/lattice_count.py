@@ -74,7 +74,9 @@ def _rim_offsets(radius: float) -> np.ndarray:
     close = squared <= 4 * radius**2 * (1 + _ROUND)
     first, second, apart, squared = first[close], second[close], apart[close], squared[close]
     middle = (points[first] + points[second]) / 2
-    aside = np.sqrt(np.maximum(radius**2 / squared - 0.25, 0.0))[:, None] * np.stack([-apart[:, 1], apart[:, 0]], axis=1)
+    aside = np.sqrt(np.maximum(radius**2 / squared - 0.25, 0.0))[:, None] * np.stack(
+        [-apart[:, 1], apart[:, 0]], axis=1
+    )
     crossings = np.concatenate([middle + aside, middle - aside])
     x, y = crossings.T
     inside = (x <= 0.5 + _ROUND) & (y >= -_ROUND) & (y <= x / np.sqrt(3) + _ROUND)

@@ -11,7 +11,6 @@ from functools import lru_cache
 import numpy as np
 
 from optics import tables
-from optics.image.crosstalk import overlap
 from optics.image.modes import CONE_NODES, CONE_STEP, mode_tables, scaled_k, v_number
 from optics.spec import not_negative, positive, require
 from optics.units import Numbers, rad_from_deg, um_from_m, um_from_nm
@@ -80,20 +79,20 @@ def table_shares(*, coupling_over_spread: Numbers) -> np.ndarray:
     """
     not_negative(coupling_over_spread=coupling_over_spread)
     ratio = np.asarray(coupling_over_spread, float)
-    return (_weights(ratio.reshape(-1, 1), np.ones((ratio.size, 1))) @ exchange_table()[1]).reshape(*ratio.shape, -1)
+    weight = _weights(ratio.ravel(), np.ones(ratio.size), np.arange(ratio.size), ratio.size)
+    return (weight @ exchange_table()[1]).reshape(*ratio.shape, -1)
 
 
-def _weights(ratio: np.ndarray, amount: np.ndarray) -> np.ndarray:
-    """[row, node]: amounts of each row spread over the two nodes about each ratio; arrays [row, mode]."""
+def _weights(ratio: np.ndarray, amount: np.ndarray, rows: np.ndarray, size: int) -> np.ndarray:
+    """[row, node]: amounts spread over the two nodes about each ratio, added up by row."""
     nodes = exchange_table()[0]
     ratio = np.minimum(ratio, nodes[-1])
-    at = np.clip(np.searchsorted(nodes, ratio, side="right") - 1, 0, len(nodes) - 2)
+    at = np.minimum(np.searchsorted(nodes, ratio, side="right") - 1, len(nodes) - 2)
     part = (ratio - nodes[at]) / (nodes[at + 1] - nodes[at])
-    first = np.arange(len(ratio))[:, None] * len(nodes) + at
-    size = len(ratio) * len(nodes)
-    spread = np.bincount(first.ravel(), (amount * (1.0 - part)).ravel(), size)
-    spread += np.bincount(first.ravel() + 1, (amount * part).ravel(), size)
-    return spread.reshape(len(ratio), len(nodes))
+    first = rows * len(nodes) + at
+    places, amounts = np.concatenate([first, first + 1]), np.concatenate([amount * (1.0 - part), amount * part])
+    spread = np.bincount(places, amounts, size * len(nodes)).astype(float)
+    return spread.reshape(size, len(nodes))
 
 
 def ring_shares(
@@ -134,40 +133,60 @@ def ring_shares(
     v = v_number(core_um=core, na=aperture, wavelength_nm=at_nm)
     # beta is within NA^2/2 n^2 of k n; only the effect of the length uses it
     scale = 2.0 * um_from_m(length) * um_from_nm(at_nm) / (2.0 * np.pi * index * (0.5 * core) ** 2)
-    ratio, amount, settled = _modes(v, 2.0 * pitch / core, np.maximum(sigma, 1e-9), v * cone / aperture, scale)
-    weight = _weights(ratio, amount * settled)
-    weight[:, 0] += (amount * (1.0 - settled)).sum(axis=1)
+    amount = _launched(v, v * cone / aperture)
+    found = [
+        _exchange(azimuthal, amount, v, 2.0 * pitch / core, np.maximum(sigma, 1e-9), scale)
+        for azimuthal in sorted({mode.azimuthal for mode in mode_tables()})
+    ]
+    ratio, moved, rows = (np.concatenate(part) for part in zip(*found))
+    weight = _weights(ratio, moved, rows, len(v))
+    weight[:, 0] += amount.sum(axis=1) - weight.sum(axis=1)
     shares = weight @ exchange_table()[1] / amount.sum(axis=1, keepdims=True)
     return shares.reshape(*columns[0].shape, -1)
 
 
-def _modes(v, pitch_ratio, sigma, cone, scale) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
-    """(r, amount of light, part of the mean that the length reaches), each [row, mode and parity]."""
-    found = []
-    for mode in mode_tables():
-        l, guided = mode.azimuthal, v > mode.cutoff  # noqa: E741
-        if not guided.any():
-            continue
-        place = np.interp(v, mode.v_number, np.arange(len(mode.w)))
-        node = np.minimum(place.astype(int), len(mode.w) - 2)
-        w = mode.w[node] + (place - node) * (mode.w[node + 1] - mode.w[node])
-        (outside, above), far = scaled_k(l, w), w * pitch_ratio
-        fall = np.exp(2.0 * w - far) / (v * v)
-        below = np.abs(above - 2.0 * l / w * outside)
-        amount = np.where(guided, _launch(mode.launched, node, cone), 0.0)
-        for parity in (1,) if l == 0 else (1, -1):
-            lobes = np.abs(overlap(azimuthal=l, far=far, parity=parity)) * fall
-            turns = scale * (v * v - w * w) * lobes / (below * above)
-            found.append((np.sqrt(2.0) * lobes / (sigma * outside * outside), 2.0 * amount, _settled(turns)))
-    return tuple(np.stack(part, axis=1) for part in zip(*found))
+def _launched(v: np.ndarray, cone: np.ndarray) -> np.ndarray:
+    """Light in each mode, [row, mode]: degeneracy times the launched share, linear in W and in the cone k a sine.
 
-
-def _launch(launched: np.ndarray, node: np.ndarray, cone: np.ndarray) -> np.ndarray:
-    """Launched share at the mode's node, linear over the cone (k a sine); wider cones launch what the widest does."""
+    0 below cutoff; a cone wider than the table launches what its widest does.
+    """
     at = np.minimum(cone / CONE_STEP, CONE_NODES - 1.000001)
-    first = at.astype(int)
-    low, high = launched[node, first], launched[node, first + 1]
-    return low + (at - first) * (high - low)
+    amounts = np.zeros((len(v), len(mode_tables())))
+    for column, mode in enumerate(mode_tables()):
+        rows = np.flatnonzero(v > mode.cutoff)
+        place = np.interp(v[rows], mode.v_number, np.arange(len(mode.w)))
+        node, first = np.minimum(place.astype(int), len(mode.w) - 2), at[rows].astype(int)
+        down, over = place - node, at[rows] - first
+        low = (1.0 - over) * mode.launched[node, first] + over * mode.launched[node, first + 1]
+        high = (1.0 - over) * mode.launched[node + 1, first] + over * mode.launched[node + 1, first + 1]
+        amounts[rows, column] = (2.0 if mode.azimuthal == 0 else 4.0) * (low + down * (high - low))
+    return amounts
+
+
+def _exchange(azimuthal, amount, v, pitch_ratio, sigma, scale) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """(r, light that exchanges, row) of the modes of one order, each parity.
+
+    Left out, as staying: modes with under a thousandth of the light, and those whose r is below about 1e-5.
+    """
+    total = amount.sum(axis=1)
+    found = []
+    for column, mode in enumerate(mode_tables()):
+        if mode.azimuthal == azimuthal:
+            rows = np.flatnonzero(amount[:, column] > 1e-3 * total)
+            w = np.interp(v[rows], mode.v_number, mode.w)
+            rows, w = (part[w * (pitch_ratio[rows] - 2.0) < 14.0] for part in (rows, w))
+            found.append((rows, w, amount[rows, column]))
+    rows, w, light = (np.concatenate(part) for part in zip(*found))
+    (outside, above), far, v2 = scaled_k(azimuthal, w), w * pitch_ratio[rows], v[rows] ** 2
+    below = np.abs(above - 2.0 * azimuthal / w * outside)
+    zero, twice = (scaled_k(order, far)[0] for order in (0, 2 * azimuthal))
+    both = (zero,) if azimuthal == 0 else (zero + twice, twice - zero)
+    ratios, moved = [], []
+    for lobes in both:
+        fields = lobes * np.exp(2.0 * w - far) / v2
+        ratios.append(np.sqrt(2.0) * fields / (sigma[rows] * outside * outside))
+        moved.append(light / len(both) * _settled(scale[rows] * (v2 - w * w) * fields / (below * above)))
+    return np.concatenate(ratios), np.concatenate(moved), np.tile(rows, len(both))
 
 
 def _settled(turns: np.ndarray) -> np.ndarray:

@@ -70,17 +70,12 @@ def mode_coupling_per_um(
     w = outside_number(v_number=v, azimuthal=azimuthal, radial=radial)
     radius = 0.5 * np.asarray(core_um, float)
     far = w * pitch_um / radius
-    lobes = overlap(azimuthal=azimuthal, far=far, parity=parity)
+    zero, twice = (scaled_k(order, far)[0] for order in (0, 2 * azimuthal))
+    lobes = zero if azimuthal == 0 else zero + np.sign(parity) * twice
     outside, above = scaled_k(azimuthal, w)
     below = above - 2.0 * azimuthal / w * outside
     beta = _propagation_per_um(np.sqrt(v * v - w * w), radius, na, clad_index, wavelength_nm)
     return (v * v - w * w) * lobes * np.exp(2.0 * w - far) / (beta * radius**2 * v * v * np.abs(below) * above)
-
-
-def overlap(*, azimuthal: int, far: np.ndarray, parity: int) -> np.ndarray:
-    """exp(x) (K0(x) +- K_2l(x)), the part of the coupling that depends on the pitch; exp(x) K0(x) for l = 0."""
-    zero = scaled_k(0, far)[0]
-    return zero if azimuthal == 0 else zero + np.sign(parity) * scaled_k(2 * azimuthal, far)[0]
 
 
 def _propagation_per_um(u, radius, na, clad_index, wavelength_nm):

@@ -14,7 +14,10 @@ from optics.units import Numbers, um_from_nm
 
 # The modes with a cutoff below V = 10.2: (azimuthal l, radial m). Enough where V or the launched
 # cone is small; see `optics.image.coupled` for what is left out above.
-MODES = ((0, 1), (1, 1), (2, 1), (0, 2), (3, 1), (1, 2), (4, 1), (2, 2), (0, 3), (5, 1), (3, 2), (1, 3), (6, 1), (4, 2), (7, 1))  # fmt: skip
+MODES = (
+    *((0, 1), (1, 1), (2, 1), (0, 2), (3, 1), (1, 2), (4, 1), (2, 2)),
+    *((0, 3), (5, 1), (3, 2), (1, 3), (6, 1), (4, 2), (7, 1)),
+)
 STEPS = 48  # of the bisection: the bracket is below 4, so that 1e-14 is left
 CONE_STEP = 0.25  # of the launch table, in units of 1/radius
 CONE_NODES = 65

@@ -17,7 +17,7 @@ MEDIA = ("air", "water", "oil", "fused_silica", "pmma", "borosilicate_crown", "l
 D_LINE_NM = 587.5618  # helium d, where n_d is quoted
 
 
-class Dispersion(NamedTuple):
+class _Dispersion(NamedTuple):
     """n^e = constant + sum of b lambda^2/(lambda^2 - c) + sum of a lambda^p, lambda in um."""
 
     exponent: float
@@ -41,7 +41,7 @@ def refractive_index(*, medium: str, wavelength_nm: Numbers) -> Numbers:
     >>> [round(float(refractive_index(medium=name, wavelength_nm=D_LINE_NM)), 4) for name in MEDIA]
     [1.0003, 1.3334, 1.4771, 1.4585, 1.4925, 1.5168, 1.62]
     """
-    law = dispersion(medium)
+    law = _dispersion(medium)
     within(law.lowest_nm, law.highest_nm, **{f"wavelength_nm for {medium}": wavelength_nm})
     square = np.square(um_from_nm(np.asarray(wavelength_nm, dtype=float)))[..., None]
     resonances = (law.strength * square / (square - law.resonance_um2)).sum(axis=-1)
@@ -51,12 +51,12 @@ def refractive_index(*, medium: str, wavelength_nm: Numbers) -> Numbers:
 
 def valid_range_nm(*, medium: str) -> tuple[float, float]:
     """The shortest and the longest wavelength that the medium's formula holds for."""
-    law = dispersion(medium)
+    law = _dispersion(medium)
     return law.lowest_nm, law.highest_nm
 
 
 @lru_cache(maxsize=16)
-def dispersion(medium: str) -> Dispersion:
+def _dispersion(medium: str) -> _Dispersion:
     """The formula of one medium, from its preset."""
     if medium not in MEDIA:
         raise OutOfRange(
@@ -64,4 +64,4 @@ def dispersion(medium: str) -> Dispersion:
         )
     values = {key: entry.value for key, entry in preset("media", medium).values.items()}
     arrays = (np.array(values.get(key, ())) for key in ("strength", "resonance_um2", "term", "term_exponent"))
-    return Dispersion(values["exponent"], values["constant"], *arrays, values["lowest_nm"], values["highest_nm"])
+    return _Dispersion(values["exponent"], values["constant"], *arrays, values["lowest_nm"], values["highest_nm"])

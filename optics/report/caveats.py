@@ -10,7 +10,7 @@ from optics.fiberscope import Fiberscope
 from optics.guide.bend import TESTED as BEND_TESTED
 from optics.guide.bend import relative_bend_ratio
 from optics.spec import Caveat, beyond
-from optics.spectrum import GRID_NM, integral, luminous_flux_lm, on_grid, covered
+from optics.spectrum import covered, integral, luminous_flux_lm, on_grid
 from optics.tables import Sourced
 from optics.viewer.camera import LEAST_PIXELS_PER_PITCH
 
@@ -27,7 +27,11 @@ CAUTIONS = {
 
 
 def caveats(
-    fiberscope: Fiberscope, value: Mapping[str, float], figures: Figures, row: int, sourced: Mapping[str, Sourced] | None
+    fiberscope: Fiberscope,
+    value: Mapping[str, float],
+    figures: Figures,
+    row: int,
+    sourced: Mapping[str, Sourced] | None,
 ) -> tuple[Caveat, ...]:
     """All caveats of one design, in the order of the light; the setting's caution last."""
     found = [
@@ -64,7 +68,9 @@ def _coverage(scope: Fiberscope) -> Iterator[Caveat]:
         curves["image.bundle.attenuation"] = scope.image.bundle.attenuation
     for path, curve in curves.items():
         outside = np.where(covered(curve), 0.0, power)
-        watts, lumens = (float(measure(outside) / max(measure(power), 1e-300)) for measure in (integral, luminous_flux_lm))
+        watts, lumens = (
+            float(measure(outside) / max(measure(power), 1e-300)) for measure in (integral, luminous_flux_lm)
+        )
         if watts > 0.0005:
             yield Caveat(
                 path,
@@ -83,7 +89,9 @@ def _bends(scope: Fiberscope) -> Iterator[Caveat]:
     fiber = scope.guide.fiber
     for number, bend in enumerate(scope.guide.bundle.bends):
         relative = float(
-            relative_bend_ratio(na=fiber.na, core_index=fiber.core_index, core_um=fiber.core_um, bend_radius_mm=bend.radius_mm)
+            relative_bend_ratio(
+                na=fiber.na, core_index=fiber.core_index, core_um=fiber.core_um, bend_radius_mm=bend.radius_mm
+            )
         )
         for said in beyond(BEND_TESTED, relative_bend=relative):
             yield Caveat(f"guide.bundle.bends.{number}", f"The {said}; the loss there follows the mode-count bound.")
@@ -100,9 +108,15 @@ def _ports(scope: Fiberscope, value: Mapping[str, float]) -> Iterator[Caveat]:
         return
     target = scope.scene.target
     if np.isfinite(value["first_lit_mm"]) and value["first_lit_mm"] > target.distance_mm:
-        yield Caveat("scene.ports", f"The axis stays dark nearer than {value['first_lit_mm']:.3g} mm; the target is at {target.distance_mm:.3g} mm.")
+        yield Caveat(
+            "scene.ports",
+            f"The axis stays dark nearer than {value['first_lit_mm']:.3g} mm; the target is at {target.distance_mm:.3g} mm.",
+        )
     if np.isfinite(value["unlit_fraction"]) and value["unlit_fraction"] > 0.001:
-        yield Caveat("scene.ports", f"{value['unlit_fraction']:.1%} of the field of view gets no light: the cone is narrower than the view.")
+        yield Caveat(
+            "scene.ports",
+            f"{value['unlit_fraction']:.1%} of the field of view gets no light: the cone is narrower than the view.",
+        )
 
 
 def _detail(scope: Fiberscope, value: Mapping[str, float]) -> Iterator[Caveat]:
@@ -114,7 +128,10 @@ def _detail(scope: Fiberscope, value: Mapping[str, float]) -> Iterator[Caveat]:
     if scope.image and scope.scene:
         near, far = value["near_mm"], value["far_mm"]
         if not near <= scope.scene.target.distance_mm <= far:
-            yield Caveat("image.objective", f"The target at {scope.scene.target.distance_mm:.3g} mm lies outside the depth of field, {near:.3g} to {far:.3g} mm.")
+            yield Caveat(
+                "image.objective",
+                f"The target at {scope.scene.target.distance_mm:.3g} mm lies outside the depth of field, {near:.3g} to {far:.3g} mm.",
+            )
 
 
 def _body(scope: Fiberscope, value: Mapping[str, float]) -> Iterator[Caveat]:
@@ -146,5 +163,6 @@ def _basis(sourced: Mapping[str, Sourced] | None) -> Iterator[Caveat]:
         named = ", ".join(paths[:4]) + (" and more" if len(paths) > 4 else "")
         yield Caveat(
             "sources",
-            f"{soft} of {sum(bases.values())} preset values are remembered or assumed" + (f" (such as {named})." if named else "."),
+            f"{soft} of {sum(bases.values())} preset values are remembered or assumed"
+            + (f" (such as {named})." if named else "."),
         )

@@ -43,7 +43,11 @@ def _spot(scope: Fiberscope, value: Mapping[str, float]) -> str:
     face = scope.guide.cable.diameter_mm if scope.guide.cable else scope.guide.bundle.diameter_mm
     launch = scope.source.launch
     if isinstance(launch, Spot):
-        hint = "" if launch.spot_mm <= face and launch.profile == "top_hat" else f": a spot within {face:.3g} mm would waste nothing"
+        hint = (
+            ""
+            if launch.spot_mm <= face and launch.profile == "top_hat"
+            else f": a spot within {face:.3g} mm would waste nothing"
+        )
         return f"a spot of {launch.spot_mm:.3g} mm on a face of {face:.3g} mm{hint}"
     if isinstance(launch, Butt):
         return f"an emitter of {scope.source.lamp.emitter_mm:.3g} mm before a face of {face:.3g} mm, gap {launch.gap_mm:.3g} mm"
@@ -61,9 +65,11 @@ def _guide_loss(scope: Fiberscope, value: Mapping[str, float]) -> str:
 
 def _bends(scope: Fiberscope, value: Mapping[str, float]) -> str:
     bends = ", ".join(
-        f"{bend.repeats} x {bend.angle_deg:.3g} deg at {bend.radius_mm:.3g} mm" if bend.repeats > 1
-        else f"{bend.angle_deg:.3g} deg at {bend.radius_mm:.3g} mm" for bend in scope.guide.bundle.bends
-    )  # fmt: skip
+        f"{bend.repeats} x {bend.angle_deg:.3g} deg at {bend.radius_mm:.3g} mm"
+        if bend.repeats > 1
+        else f"{bend.angle_deg:.3g} deg at {bend.radius_mm:.3g} mm"
+        for bend in scope.guide.bundle.bends
+    )
     return f"{bends}: steep rays leave, the rest widens"
 
 
@@ -94,7 +100,9 @@ REASONS: dict[str, Callable[[Fiberscope, Mapping[str, float]], str]] = {
     "broken fibers": lambda scope, value: f"{scope.guide.bundle.broken_fraction:.3g} of the fibers are broken",
     "attenuation": _guide_loss,
     "bends": _bends,
-    "exit face": lambda scope, value: f"reflection where the guide ends; the light leaves within NA {value['exit_na']:.3g}",
+    "exit face": lambda scope, value: (
+        f"reflection where the guide ends; the light leaves within NA {value['exit_na']:.3g}"
+    ),
     "cover": lambda scope, value: "two more faces of the cover",
 }
 

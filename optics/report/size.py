@@ -42,20 +42,36 @@ def report_of(fiberscope: Fiberscope, figures: Figures, row: int, sourced: Mappi
     number = {name: (found if np.isfinite(found) else None) for name, found in value.items()}
     steps = _steps(fiberscope, figures, row, value)
     light = LightAnswer(
-        steps, value["delivered_lm"], value["delivered_w"], value["transmission"], value["exit_na"],
-        value["color_temperature_k"], value["color_rendering_index"],
-    )  # fmt: skip
+        steps,
+        value["delivered_lm"],
+        value["delivered_w"],
+        value["transmission"],
+        value["exit_na"],
+        value["color_temperature_k"],
+        value["color_rendering_index"],
+    )
     limited = figures.limited_by()[row]
     got = {
-        "target_center_lux": number["center_lux"], "target_mean_lux": number["mean_lux"], "target_min_lux": number["min_lux"],
-        "evenness": number["evenness"], "smallest_gap_mm": number["smallest_gap_mm"], "smallest_line_mm": number["smallest_line_mm"],
-        "resolved_lp_mm": number["resolved_lp_mm"], "outer_diameter_mm": number["outer_diameter_mm"],
-        "bend_radius_mm": number["bend_radius_mm"], "rigid_tip_mm": number["rigid_tip_mm"],
+        "target_center_lux": number["center_lux"],
+        "target_mean_lux": number["mean_lux"],
+        "target_min_lux": number["min_lux"],
+        "evenness": number["evenness"],
+        "smallest_gap_mm": number["smallest_gap_mm"],
+        "smallest_line_mm": number["smallest_line_mm"],
+        "resolved_lp_mm": number["resolved_lp_mm"],
+        "outer_diameter_mm": number["outer_diameter_mm"],
+        "bend_radius_mm": number["bend_radius_mm"],
+        "rigid_tip_mm": number["rigid_tip_mm"],
         "field_of_view_deg": number["field_of_view_deg"],
-    }  # fmt: skip
+    }
     needs = verdict(
         fiberscope.needs,
-        {**got, "target_uva_w_m2": number["uva_w_m2"], "frame_hz": number["frame_hz"], "color_rendering_index": value["color_rendering_index"]},
+        {
+            **got,
+            "target_uva_w_m2": number["uva_w_m2"],
+            "frame_hz": number["frame_hz"],
+            "color_rendering_index": value["color_rendering_index"],
+        },
     )
     summary = Summary(**got, limited_by=limited, needs_met=all(line.met for line in needs) if needs else None)
     lines = exposure(fiberscope, figures, row)
@@ -94,24 +110,44 @@ def _steps(fiberscope: Fiberscope, figures: Figures, row: int, value: Mapping[st
 
 def _target(number: Mapping[str, Any]) -> TargetAnswer:
     return TargetAnswer(
-        number["center_lux"], number["mean_lux"], number["min_lux"], number["evenness"], number["unlit_fraction"],
-        number["center_w_m2"], number["field_radius_mm"], number["first_lit_mm"],
-    )  # fmt: skip
+        number["center_lux"],
+        number["mean_lux"],
+        number["min_lux"],
+        number["evenness"],
+        number["unlit_fraction"],
+        number["center_w_m2"],
+        number["field_radius_mm"],
+        number["first_lit_mm"],
+    )
 
 
 def _detail(number: Mapping[str, Any]) -> DetailAnswer:
     ledger = tuple(
-        Limit(part, number[f"contrast.{part}"], number[f"limit.{part}"]) for part in PARTS if number[f"contrast.{part}"] is not None
+        Limit(part, number[f"contrast.{part}"], number[f"limit.{part}"])
+        for part in PARTS
+        if number[f"contrast.{part}"] is not None
     )
     return DetailAnswer(
-        ledger, number["pitch_at_target_mm"], number["lattice_limit_lp_mm"], number["snr"], number["exposure_s"],
-        number["near_mm"], number["far_mm"],
-    )  # fmt: skip
+        ledger,
+        number["pitch_at_target_mm"],
+        number["lattice_limit_lp_mm"],
+        number["snr"],
+        number["exposure_s"],
+        number["near_mm"],
+        number["far_mm"],
+    )
 
 
 def _fit(fiberscope: Fiberscope, number: Mapping[str, Any], value: Mapping[str, float]) -> FitAnswer:
     passes = number["passes"]
     return FitAnswer(
-        number["outer_diameter_mm"], number["lumen_mm"], number["free_area_mm2"], value["light_area_mm2"], int(value["fiber_count"]),
-        number["longest_rigid_tip_mm"], None if passes is None else bool(passes), number["bend_radius_mm"], number["passable_radius_mm"],
-    )  # fmt: skip
+        number["outer_diameter_mm"],
+        number["lumen_mm"],
+        number["free_area_mm2"],
+        value["light_area_mm2"],
+        int(value["fiber_count"]),
+        number["longest_rigid_tip_mm"],
+        None if passes is None else bool(passes),
+        number["bend_radius_mm"],
+        number["passable_radius_mm"],
+    )

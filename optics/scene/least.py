@@ -1,15 +1,16 @@
-"""The least irradiance over a field: sought on a grid of interpolated values, exact where it was found."""
+"""The least irradiance over a field: sought on a grid of interpolated values, exact around what was found."""
 
 import numpy as np
 
 from optics.scene.region import bin_factor, distinct_ports, ports_area_mm2
 
-# The grid: rings and spokes over the field, center and rim; nodes of the profile of one port.
-RINGS, SPOKES, NODES = 12, 48, 48
+# The grid: center, rings and spokes, and a finer rim (every 3 degrees: halfway between 2, 3, 4, 5, 6, 10 ports);
+# nodes of the profile of one port.
+RINGS, SPOKES, RIM, NODES = 12, 40, 120, 48
 
 
 def least_per_mm2(field, flux):
-    """The least irradiance over the field: sought on the grid by profiles, exact where found."""
+    """The least irradiance over the field: sought on the grid by profiles, exact at and around the worst point."""
     x, y, radius, edges = field.port_x_mm, field.port_y_mm, field.port_radius_mm, field.sine2_edges
     density = flux / (ports_area_mm2(radius)[:, None] * np.diff(edges, axis=-1))
     design, port, row = distinct_ports(radius)
@@ -21,19 +22,30 @@ def least_per_mm2(field, flux):
         total += np.sign(radius[:, one, None]) * _interpolated(profile, row[:, one], away)
     worst = np.argmin(total, axis=-1)[:, None]
     at_x, at_y = (np.take_along_axis(value, worst, axis=-1) for value in (at_x, at_y))
-    seen = bin_factor(field.distance_mm[:, None], np.hypot(at_x - x, at_y - y), np.abs(radius), edges[:, None])
-    seen = np.sum(np.sign(radius)[..., None] * seen, axis=1)
-    return np.maximum(np.sum(seen * density, axis=-1), 0.0)
+    at_x, at_y = _around(at_x, at_y, field.field_radius_mm[:, None])
+    away = np.hypot(at_x[:, None] - x[..., None], at_y[:, None] - y[..., None])
+    seen = bin_factor(field.distance_mm[:, None, None], away, np.abs(radius)[..., None], edges[:, None, None])
+    seen = np.sum(np.sign(radius)[..., None, None] * seen, axis=1)
+    return np.maximum(np.einsum("dnb,db->dn", seen, density).min(axis=-1), 0.0)
 
 
 def _points(field):
-    """The search grid: center, rings and rim, with spokes through the first port."""
-    rings = np.concatenate([(np.arange(RINGS) + 0.5) / RINGS, [1.0]])
-    turn = np.tile(2 * np.pi * np.arange(SPOKES) / SPOKES, rings.size)
-    along, across = (np.append(0.0, np.repeat(rings, SPOKES) * part) for part in (np.cos(turn), np.sin(turn)))
+    """The search grid: center, rings and rim, with a spoke through the first port."""
+    rings = np.repeat((np.arange(RINGS) + 0.5) / RINGS, SPOKES)
+    turn = np.concatenate([np.tile(np.arange(SPOKES) / SPOKES, RINGS), np.arange(RIM) / RIM]) * 2 * np.pi
+    radius = np.concatenate([rings, np.ones(RIM)])
+    along, across = (np.append(0.0, radius * part) for part in (np.cos(turn), np.sin(turn)))
     first = np.arctan2(field.port_y_mm[:, 0], field.port_x_mm[:, 0])
     cosine, sine = (field.field_radius_mm * part for part in (np.cos(first), np.sin(first)))
     return cosine[:, None] * along - sine[:, None] * across, sine[:, None] * along + cosine[:, None] * across
+
+
+def _around(x, y, edge):
+    """The point found and its surroundings within half a step of the grid, inside the field: [design, point]."""
+    radius, turn = np.hypot(x, y), np.arctan2(y, x)
+    radius = np.clip(radius + np.array([0.0, -0.5, -0.25, 0.25, 0.5, 0.0, 0.0]) * edge / RINGS, 0.0, edge)
+    turn = turn + np.array([0.0, 0.0, 0.0, 0.0, 0.0, -0.5, 0.5]) * 2 * np.pi / RIM
+    return radius * np.cos(turn), radius * np.sin(turn)
 
 
 def _profiles(field, radius, density):

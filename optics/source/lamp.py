@@ -13,7 +13,11 @@ class Lamp(Spec):
     """A lamp: spectrum, flux, emitting area and cone. Its radiance bounds everything after it."""
 
     flux_lm: float | None = quantity(
-        "luminous flux that the lamp gives; absent: flux_w is given", default=None, gt=0, usual=(20.0, 3000.0), common=True
+        "luminous flux that the lamp gives; absent: flux_w is given",
+        default=None,
+        gt=0,
+        usual=(20.0, 3000.0),
+        common=True,
     )
     flux_w: float | None = quantity(
         "radiant flux within the spectrum's range, for lamps outside the visible; absent: flux_lm is given",
@@ -22,7 +26,9 @@ class Lamp(Spec):
         usual=(0.1, 20.0),
     )
     emitter_mm: float = quantity("diameter of the disc that has the emitter's area", gt=0, usual=(0.3, 5.0))
-    cone_na: float = quantity("sine of the half-angle that the lamp fills in air; 1 = Lambertian", gt=0, le=1, usual=(0.2, 1.0))
+    cone_na: float = quantity(
+        "sine of the half-angle that the lamp fills in air; 1 = Lambertian", gt=0, le=1, usual=(0.2, 1.0)
+    )
     spectrum: Curve = quantity("relative spectral power, per nm")
 
 

@@ -27,9 +27,15 @@ class Spot(Spec):
     """A condenser makes a spot of stated diameter and cone on the face."""
 
     form: Literal["spot"] = quantity("a condensed spot on the face")
-    spot_mm: float = quantity("diameter of the spot; of its 1/e^2 circle for a gaussian", gt=0, usual=(0.3, 8.0), common=True)
-    cone_na: float = quantity("sine of the half-angle of the light on the face", gt=0, le=1, usual=(0.1, 0.8), common=True)
-    profile: Literal["top_hat", "gaussian"] = quantity("how the light is spread over the spot", default="top_hat", source="assumed")
+    spot_mm: float = quantity(
+        "diameter of the spot; of its 1/e^2 circle for a gaussian", gt=0, usual=(0.3, 8.0), common=True
+    )
+    cone_na: float = quantity(
+        "sine of the half-angle of the light on the face", gt=0, le=1, usual=(0.1, 0.8), common=True
+    )
+    profile: Literal["top_hat", "gaussian"] = quantity(
+        "how the light is spread over the spot", default="top_hat", source="assumed"
+    )
     transmission: float = quantity("of the condenser", gt=0, le=1, usual=(0.5, 1.0))
 
 
@@ -114,7 +120,11 @@ def matched_cone_na(*, lamp_etendue_mm2_sr: Numbers, face_mm: Numbers, na: Numbe
 
 
 def rated_flux_share(
-    *, rated_share: Numbers, lamp_etendue_mm2_sr: Numbers, reference_etendue_mm2_sr: Numbers, face_etendue_mm2_sr: Numbers
+    *,
+    rated_share: Numbers,
+    lamp_etendue_mm2_sr: Numbers,
+    reference_etendue_mm2_sr: Numbers,
+    face_etendue_mm2_sr: Numbers,
 ) -> Numbers:
     """Share of the lamp's light on this face, rescaled by etendue from a reference guide.
 

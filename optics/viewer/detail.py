@@ -13,7 +13,7 @@ from optics.units import Numbers, lp_mm_from_per_um
 # The order in which ties are settled: the light's way there, then the way back.
 PARTS = ("light", "objective", "focus", "lattice", "crosstalk", "camera", "eye")
 ITERATIONS = 14
-LINE_PITCHES = 10.0   # length of the single dark line looked for, in core pitches: a house choice
+LINE_PITCHES = 10.0  # length of the single dark line looked for, in core pitches: a house choice
 
 
 def largest_passing(margin: Callable[[np.ndarray], np.ndarray], *, upper_lp_mm: np.ndarray) -> np.ndarray:
@@ -31,10 +31,10 @@ def largest_passing(margin: Callable[[np.ndarray], np.ndarray], *, upper_lp_mm: 
     """
     low, high = np.zeros_like(upper_lp_mm), np.array(upper_lp_mm, float)
     at_low, at_high = margin(low), margin(high)
-    last, at_last = low, at_low      # the point that was dropped
+    last, at_last = low, at_low  # the point that was dropped
     step = np.full_like(high, 0.5)
-    here, at_here = high, at_high    # newest end of the bracket
-    other, at_other = low, at_low    # its other end
+    here, at_here = high, at_high  # newest end of the bracket
+    other, at_other = low, at_low  # its other end
     for _ in range(ITERATIONS):
         new = here + step * (other - here)
         at_new = margin(new)
@@ -53,9 +53,9 @@ def _next_step(here, other, last, at_here, at_other, at_last):
         place = (here - other) / (last - other)
         value = (at_here - at_other) / (at_last - at_other)
         safe = (1 - np.sqrt(1 - place) < value) & (value < np.sqrt(place))
-        quadratic = at_here / (at_other - at_here) * at_last / (at_other - at_last) + (last - here) / (other - here) * at_here / (
-            at_last - at_here
-        ) * at_other / (at_last - at_other)
+        quadratic = at_here / (at_other - at_here) * at_last / (at_other - at_last) + (last - here) / (
+            other - here
+        ) * at_here / (at_last - at_here) * at_other / (at_last - at_other)
     step = np.where(safe & np.isfinite(quadratic), quadratic, 0.5)
     tight = 1e-15
     return np.clip(step, tight, 1 - tight)
@@ -90,7 +90,13 @@ def snr_with_spread(*, snr: Numbers, transmission_spread: Numbers) -> np.ndarray
 
 
 def smallest_line_um(
-    *, contrast: Numbers, snr: Numbers, cell_um2: Numbers, threshold_snr: Numbers, line_um: Numbers, power_per_um: Numbers
+    *,
+    contrast: Numbers,
+    snr: Numbers,
+    cell_um2: Numbers,
+    threshold_snr: Numbers,
+    line_um: Numbers,
+    power_per_um: Numbers,
 ) -> np.ndarray:
     """Width of the thinnest single dark line that is detected, well below a core where light allows.
 

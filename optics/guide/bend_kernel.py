@@ -1,0 +1,87 @@
+"""The bend kernel's coordinates and its table: what one bend does to light of each angle and skewness.
+
+s is sin^2 of the angle over that of the guided limit, (n1 sin theta/NA)^2; l the same for the skewness
+x y' - y x'. Both are kept by a straight fiber. In the bend (R - the axis radius in core radii, m =
+NA^2/n1^2, X = 2/(R m)) a ray that moves from u to u' across the core ends with
+R ln((R + u')/(R + u)) = zeta(s') - zeta(s), zeta(s) = -ln(1 - m s)/(X m), exactly: the step in zeta is
+bounded by SPAN = R ln((R + 1)/(R - 1)) whatever the bend, and light with zeta(s) < zeta(1) - SPAN
+cannot be lost. So everything is tabulated over the distance to the limit in zeta.
+
+The state of the light behind a bend is, for each s, a distribution over the skewness; it is carried as
+Legendre moments over the rank of l among all guided rays of that s (0: least skew, 1: most), of which
+light that fills the fiber has only the zeroth.
+"""
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from optics import tables
+
+# Nodes of the table: relative bend Xe = X (1 - m), angle tau/sqrt(Xe) with tau = phi sqrt((1 - m)/m), and m.
+BEND_NODES = np.array(
+    [0.02, 0.035, 0.055, 0.08, 0.115, 0.16, 0.21, 0.27, 0.34, 0.41, 0.49, 0.58, 0.7, 0.85, 1.05, 1.35, 1.75]
+)
+ANGLE_NODES = np.array(
+    [0.12, 0.2, 0.3, 0.4, 0.5, 0.62, 0.76, 0.93, 1.15, 1.45, 1.85, 2.4, 3.2, 4.5, 6.5, 10, 16, 26, 45, 80, 140, 260]
+)
+SHARE_NODES = np.array([0.001, 0.1, 0.22, 0.36])
+MOMENTS = 3  # of the skewness
+DEGREES = 9  # of the step in zeta
+FINE = (12, 4, 5)  # level intervals within reach of the limit, below, above: of the survival
+COARSE = (5, 3, 4)  # of the spread
+LEVEL_SCALE = 0.05  # levels above the limit lie at s = 1 + 0.05 (2^k - 1)
+
+
+def level_count(intervals: tuple[int, int, int]) -> int:
+    return sum(intervals) + 1
+
+
+def zeta(s, x, m):
+    """-ln(1 - m s)/(X m), which a step across the core changes by R ln((R + u')/(R + u))."""
+    return -np.log1p(-m * s) / (x * m)
+
+
+def span(x, m):
+    """The largest step in zeta: R ln((R + 1)/(R - 1))."""
+    radius = 2 / (x * m)
+    return radius * np.log((radius + 1) / (radius - 1))
+
+
+def level(s, x, m, intervals):
+    """Where s lies on the level axis of a table, in node numbers from 0 (far above the limit) up.
+
+    Above the limit it counts in log2(1 + (s - 1)/LEVEL_SCALE), below in the distance in zeta up to the
+    longest step, then evenly to s = 0.
+    """
+    near, low, above = intervals
+    reach, top = span(x, m), zeta(1.0, x, m)
+    distance = (top - zeta(s, x, m)) / reach
+    room = np.maximum(top / reach - 1, 1e-9)
+    inside = np.where(distance <= 1, near * distance, near + low * np.minimum((distance - 1) / room, 1.0))
+    over = above * np.log2(1 + np.maximum(s - 1, 0.0) / LEVEL_SCALE) / 5
+    return above + np.where(s > 1, -np.minimum(over, above), inside)
+
+
+def rank_share(ratio):
+    """Share of light that fills the fiber at one angle whose l/s lies below `ratio`.
+
+    l/s is the square of a semicircle-distributed number: (2/pi)(asin y + y sqrt(1 - y^2)), y^2 = ratio.
+    """
+    y = np.sqrt(np.clip(ratio, 0.0, 1.0))
+    return 2 / np.pi * (np.arcsin(y) + y * np.sqrt(1 - y * y))
+
+
+def guided_rank(s, l):
+    """Rank of the skewness l among the guided rays of the same s (above the limit only l >= s - 1 is guided)."""
+    least = rank_share(1 - 1 / np.maximum(s, 1.0))
+    return np.clip((rank_share(l / np.maximum(s, 1e-300)) - least) / (1 - least), 0.0, 1.0)
+
+
+def legendre(x, count):
+    """P_0 ... P_(count-1) along a new last axis."""
+    out = [np.ones_like(x), x]
+    for k in range(1, count - 1):
+        out.append(((2 * k + 1) * x * out[k] - k * out[k - 1]) / (k + 1))
+    return np.stack(out[:count], axis=-1)
