@@ -15,19 +15,22 @@ from optics.body.handling import Handling
 from optics.body.passage import Passage
 from optics.body.section import Section
 from optics.guide.bundle import Cable, GuideBundle
+from optics.guide import fiber
 from optics.guide.fiber import Fiber
 from optics.guide.joint import Joint
 from optics.image.bundle import ImageBundle
 from optics.image.chip import Chip
+from optics.image.lattice import core_count
 from optics.image.objective import Objective
 from optics.image.tip import Tip
 from optics.needs import Needs
 from optics.scene.cover import Cover
 from optics.scene.ports import AnnulusPorts, CrescentPorts, PlacedPorts, RoundPorts
 from optics.scene.target import Target
-from optics.source.lamp import Filter, Lamp, etendue_mm2_sr
-from optics.source.launch import Butt, Matched, Rated, Spot, spot_radiance_ratio
+from optics.source.lamp import Filter, Lamp
+from optics.source.launch import Butt, Matched, Rated, Spot, rating_allowed, spot_allowed
 from optics.spec import Curve, Spec
+from optics.units import um_from_mm
 from optics.viewer.camera import Camera
 from optics.viewer.eye import Eye
 
@@ -131,50 +134,38 @@ class Fiberscope(Spec):
             raise ValueError(said)
         known = dict(leaves(self))
         for rule in RULES:
-            values = [known.get(path) for path in rule.paths]
+            values = tuple(known.get(path) for path in rule.paths)
             if None not in values and not np.all(rule.holds(*values)):
-                shown = " and ".join(
-                    f"{path} is {value:g}" if isinstance(value, float | int) else f"{path} is {value}"
-                    for path, value in zip(rule.paths[: rule.shown], values)
-                )
-                raise ValueError(f"{shown}; {rule.sentence}.")
+                raise ValueError(rule.broken(values))
         return self
+
+
+def _lumen_left(wall_mm, outer_mm):
+    """Whether walls leave a lumen; a diameter to be solved for always does."""
+    outer = [np.inf if isinstance(outer, str) else outer for outer in np.atleast_1d(np.asarray(outer_mm, dtype=object))]
+    return 2 * np.asarray(wall_mm) < np.array(outer)
 
 
 @dataclass(frozen=True, slots=True)
 class Rule:
-    """A rule across fields: the paths it reads, the predicate over their values, and what to say."""
+    """A rule across fields: the paths it reads, the predicate over their values, and what to say (of the first `shown`)."""
 
     paths: tuple[str, ...]
     holds: Callable[..., Any]
     sentence: str
     shown: int = 2
 
-
-def _spot_allowed(emitter_mm, cone_na, spot_mm, spot_na, transmission, profile):
-    ratio = spot_radiance_ratio(
-        transmission=transmission,
-        lamp_etendue_mm2_sr=etendue_mm2_sr(diameter_mm=emitter_mm, na=cone_na),
-        spot_mm=spot_mm,
-        cone_na=spot_na,
-        gaussian=np.asarray(profile) == "gaussian",
-    )
-    return ratio <= 1 + 1e-9
+    def broken(self, values: tuple[Any, ...]) -> str:
+        """The sentence, with the values of one design."""
+        pairs = zip(self.paths[: self.shown], values)
+        said = " and ".join(
+            f"{path} is {value if isinstance(value, str) else format(value, 'g')}" for path, value in pairs
+        )
+        return f"{said}; {self.sentence}."
 
 
-def _rating_allowed(rated_lm, flux_lm, emitter_mm, cone_na, diameter_mm, na):
-    lamp, guide = etendue_mm2_sr(diameter_mm=emitter_mm, na=cone_na), etendue_mm2_sr(diameter_mm=diameter_mm, na=na)
-    return rated_lm <= flux_lm * np.minimum(1.0, guide / lamp) * (1 + 1e-9)
-
-
-def _below(low, high):
-    return np.asarray(low) < high
-
-
-def _at_most(low, high):
-    return np.asarray(low) <= high
-
-
+LEAST_CORES = 7
+COMPARISONS = {"below": np.less, "at most": np.less_equal}
 LAMP = ("source.lamp.emitter_mm", "source.lamp.cone_na")
 RULES = (
     Rule(
@@ -185,10 +176,9 @@ RULES = (
             "source.launch.transmission",
             "source.launch.profile",
         ),
-        lambda spot, na, emitter, cone, transmission, profile: _spot_allowed(
-            emitter, cone, spot, na, transmission, profile
-        ),
-        "such a spot is brighter than its lamp allows (radiance is conserved): widen the spot or its cone, or take a brighter lamp",
+        spot_allowed,
+        "such a spot is brighter than its lamp allows (radiance is conserved): widen the spot or its cone, "
+        "or take a brighter lamp",
     ),
     Rule(
         (
@@ -198,52 +188,43 @@ RULES = (
             "source.launch.reference_diameter_mm",
             "source.launch.reference_na",
         ),
-        _rating_allowed,
-        "the rating is brighter than the lamp allows (radiance is conserved): it must be at most flux x etendue of the guide / etendue of the lamp",
+        rating_allowed,
+        "the rating is brighter than the lamp allows (radiance is conserved): it must be at most the lamp's lumens "
+        "times the guide's etendue over the lamp's",
     ),
     *(
-        rule
-        for fiber in ("guide.cable.fiber", "guide.fiber")
-        for rule in (
-            Rule((f"{fiber}.core_um", f"{fiber}.fiber_um"), _at_most, "the core must be at most as wide as its fiber"),
-            Rule((f"{fiber}.na", f"{fiber}.core_index"), _below, "the NA must be below the core index"),
-        )
+        Rule((f"{table}.{field}", f"{table}.{other}"), COMPARISONS[comparison], said)
+        for table in ("guide.cable.fiber", "guide.fiber")
+        for field, other, comparison, said in fiber.RULES
     ),
     Rule(
-        ("guide.fiber.fiber_um", "guide.bundle.diameter_mm"),
-        lambda fiber, bundle: np.asarray(fiber) <= bundle * 1000,
+        ("guide.bundle.diameter_mm", "guide.fiber.fiber_um"),
+        lambda bundle, fiber_um: um_from_mm(bundle) >= fiber_um,
         "the bundle must hold at least one fiber",
     ),
-    Rule(("guide.bundle.packing_fraction", "guide.fiber.fiber_um"), lambda packing, _: np.asarray(packing) <= 1, "", 1),
-    Rule(("image.bundle.core_um", "image.bundle.pitch_um"), _below, "the core must be narrower than the pitch"),
-    Rule(("image.bundle.na", "image.bundle.core_index"), _below, "the NA must be below the core index"),
+    Rule(("image.bundle.core_um", "image.bundle.pitch_um"), np.less, "the core must be narrower than the pitch"),
+    Rule(("image.bundle.na", "image.bundle.core_index"), np.less, "the NA must be below the core index"),
     Rule(
         ("image.bundle.diameter_mm", "image.bundle.pitch_um"),
-        lambda bundle, pitch: np.asarray(bundle) * 1000 >= 2.777 * pitch,
-        "an image bundle must have at least 7 cores",
+        lambda bundle, pitch: core_count(diameter_mm=bundle, pitch_um=pitch) >= LEAST_CORES - 1e-9,
+        f"an image bundle must have at least {LEAST_CORES} cores",
     ),
     Rule(
         ("image.objective.focus_mm", "image.objective.focal_mm"),
-        lambda focus, focal: np.asarray(focus) > focal,
+        np.greater,
         "the focus must lie beyond the focal length",
     ),
     Rule(
         ("scene.target.near_mm", "scene.target.distance_mm"),
-        _at_most,
+        np.less_equal,
         "the near end must be at most the working distance",
     ),
     Rule(
         ("scene.target.distance_mm", "scene.target.far_mm"),
-        _at_most,
+        np.less_equal,
         "the far end must be at least the working distance",
     ),
-    Rule(
-        ("body.section.wall_mm", "body.section.outer_diameter_mm"),
-        lambda wall, outer: np.array(
-            [2 * w < o if not isinstance(o, str) else True for w, o in zip(np.atleast_1d(wall), np.atleast_1d(outer))]
-        ),
-        "the walls leave no lumen",
-    ),
+    Rule(("body.section.wall_mm", "body.section.outer_diameter_mm"), _lumen_left, "the walls leave no lumen"),
 )
 
 
@@ -286,7 +267,6 @@ def leaves(spec: BaseModel, path: str = "") -> Iterator[tuple[str, Any]]:
 
 
 # Forms of the tagged tables, and the starting values that a change of form fills in.
-_CAMERA = {"camera": {"preset": "mono_3um45"}}
 FORMS: dict[str, dict[str, tuple[type[Spec], dict[str, Any]]]] = {
     "source.launch": {
         "butt": (Butt, {"gap_mm": 0.2}),
@@ -306,10 +286,10 @@ FORMS: dict[str, dict[str, tuple[type[Spec], dict[str, Any]]]] = {
     },
     "image": {
         "bundle": (BundleImage, {"bundle": {"preset": "leached_glass_10um", "diameter_mm": 1.0, "length_m": 1.5}}),
-        "chip": (ChipImage, {}),
+        "chip": (ChipImage, {"chip": {"preset": "color_1um75"}}),
     },
     "viewer": {
-        "camera": (CameraViewer, _CAMERA),
+        "camera": (CameraViewer, {"camera": {"preset": "mono_3um45"}}),
         "eye": (EyeViewer, {"eye": {"preset": "eyepiece_25mm"}}),
     },
 }

@@ -133,3 +133,8 @@ def db_m_from_db_km(loss_db: Numbers) -> Numbers:
 def lux_from_lm_mm2(exitance_lm_mm2: Numbers) -> Numbers:
     """Lux from lumens per mm2; W/m2 from W per mm2 alike."""
     return exitance_lm_mm2 * 1e6
+
+
+def mw_from_w(power_w: Numbers) -> Numbers:
+    """Milliwatts: the unit of the figures for explosive atmospheres."""
+    return power_w * 1e3

@@ -7,7 +7,7 @@ import numpy as np
 from optics.circles import open_area
 from optics.guide.packing import fiber_count_law
 from optics.spec import not_negative, positive, require, within
-from optics.units import Numbers
+from optics.units import Flags, Numbers
 
 
 @dataclass(frozen=True, slots=True)
@@ -17,7 +17,7 @@ class Fill:
     free_area_mm2: Numbers
     fiber_count: Numbers
     light_area_mm2: Numbers
-    fill_limited: np.ndarray
+    fill_limited: Flags
 
 
 def free_area_mm2(*, lumen_mm: Numbers, parts: np.ndarray, fiber_mm: Numbers) -> np.ndarray:

@@ -13,12 +13,13 @@ import numpy as np
 
 from optics.body.orders import orders
 from optics.body.placing import placed
-from optics.body.search import thorough_layout
+from optics.body.search import searched_layout
 from optics.spec import not_negative, require
-from optics.units import Numbers
+from optics.units import Flags, Numbers
 
 _COARSE, _FINE = 6, 9  # halvings of the bracket while orders compete, then with the best one
-_BLOCK = 256  # lanes worked on together: their arrays stay in the cache
+_LONG_LIST = 8  # parts from which the quick mode of one section tries more orders
+_BLOCK = 256  # sections worked on together, for the sake of memory
 _FIRST = 1.25  # of the lower bound: most lumens lie below
 _PLAIN = 0.004  # gain for which another order is taken up
 _FREE = 1e-9  # slack within which a lumen counts as that of the two largest parts
@@ -33,10 +34,10 @@ class Layout:
 
     lumen_mm: Numbers
     centers_mm: np.ndarray
-    comes_free: np.ndarray
+    comes_free: Flags
 
 
-def smallest_lumens(*, diameters_mm: np.ndarray, clearance_mm: Numbers, at_wall: np.ndarray | None = None) -> Layout:
+def smallest_lumens(*, diameters_mm: np.ndarray, clearance_mm: Numbers, at_wall: Flags | None = None) -> Layout:
     """Smallest lumens for lists of round parts [section, part]; a diameter of 0 stands for no part.
 
     Closed forms up to three parts. From four on the lumen is the least in which one of a few orders
@@ -57,8 +58,7 @@ def smallest_lumens(*, diameters_mm: np.ndarray, clearance_mm: Numbers, at_wall:
     radii = np.where(diameters > 0, (diameters + clearance[:, None]) / 2, 0.0)
     counts = (radii > 0).sum(axis=1)
     radius, centers = np.zeros(len(radii)), np.zeros((*radii.shape, 2))
-    for count in np.unique(counts):
-        rows = np.flatnonzero(counts == count)
+    for count, rows in _blocks(counts):
         order = np.argsort(-radii[rows], axis=1, kind="stable")[:, :count]
         sizes = np.take_along_axis(radii[rows], order, axis=1)
         found, x, y = _tightest(sizes, np.take_along_axis(wall[rows], order, axis=1))
@@ -74,13 +74,14 @@ def smallest_lumen(
     diameters_mm: np.ndarray,
     clearance_mm: float,
     thorough: bool,
-    at_wall: np.ndarray | None = None,
+    at_wall: Flags | None = None,
     progress: Callable[[float], None] | None = None,
 ) -> Layout:
     """Smallest lumen for one list of round parts, centers in the order given.
 
-    Quick: `smallest_lumens`, milliseconds. Thorough: a search over the orders of placing and a
-    polish of the positions, up to a few seconds; `progress` is called with the share done.
+    Quick: `smallest_lumens`, and from 8 parts on some more orders of placing: milliseconds.
+    Thorough: a search over the orders and a polish of the positions, up to a few seconds;
+    `progress` is called with the share done.
     Both give the same layout every time. Raises OutOfRange as `smallest_lumens` does.
     References: unequal_circles_2013 (radii 1 to N).
 
@@ -94,13 +95,14 @@ def smallest_lumen(
     quick = smallest_lumens(diameters_mm=parts[None], clearance_mm=clearance_mm, at_wall=wall[None])
     one = Layout(float(quick.lumen_mm[0]), quick.centers_mm[0], quick.comes_free[0])
     radii = np.where(parts > 0, (parts + clearance_mm) / 2, 0.0)
-    if not thorough or (parts > 0).sum() < 4 or one.comes_free:
+    count = (parts > 0).sum()
+    if count < (4 if thorough else _LONG_LIST) or one.comes_free:
         return one
-    order = np.argsort(-radii, kind="stable")[: (parts > 0).sum()]
+    order = np.argsort(-radii, kind="stable")[:count]
     x, y = one.centers_mm[order].T
     known = ((one.lumen_mm - clearance_mm) / 2, x, y)
     least = float(_beside_two(radii[order][None], wall[order][None])[0][0])
-    lumen, x, y = thorough_layout(radii[order], wall[order], least, known, progress)
+    lumen, x, y = searched_layout(radii[order], wall[order], least, known, thorough, progress)
     centers = np.zeros((len(parts), 2))
     centers[order, 0], centers[order, 1] = x, y
     free = lumen <= radii[order][:2].sum() * (1 + _FREE)
@@ -123,6 +125,14 @@ def upright(centers: np.ndarray, radii: np.ndarray) -> np.ndarray:
     side = np.where(np.take_along_axis(x, aside.argmax(axis=1)[:, None], axis=1) < 0, -1.0, 1.0)
     x = np.where(aside, x * side, 0.0)
     return np.where((radii > 0)[..., None], np.stack([x, y], axis=-1), 0.0)
+
+
+def _blocks(counts: np.ndarray):
+    """Sections with the same number of parts, a few hundred at a time."""
+    for count in np.unique(counts):
+        rows = np.flatnonzero(counts == count)
+        for start in range(0, len(rows), _BLOCK):
+            yield count, rows[start : start + _BLOCK]
 
 
 def _tightest(radii: np.ndarray, at_wall: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
@@ -191,12 +201,8 @@ def _closed_in(radii: np.ndarray, at_wall: np.ndarray, least: np.ndarray):
     order, tie = orders(count)
 
     def fits(rows, number, lumen):
-        blocks = []
-        for k in range(0, max(len(rows), 1), _BLOCK):
-            few = slice(k, k + _BLOCK)
-            pick = (rows[few], order[number[few]].T)
-            blocks.append(placed(radii[pick], at_wall[pick], lumen[few], tie[number[few]]))
-        return [np.concatenate(found, axis=-1) for found in zip(*blocks)]
+        pick = (rows, order[number].T)
+        return placed(radii[pick], at_wall[pick], lumen, tie[number])
 
     def halved(rows, number, low, high, times):
         for _ in range(times):

@@ -10,29 +10,35 @@ from collections.abc import Callable
 
 import numpy as np
 
+from optics.body.orders import orders
 from optics.body.placing import placed
 
-_LANES, _HALVINGS = 300, 9  # orders tried at once, and halvings of the lumen for each
-_ROUNDS, _ELITE, _POLISHED = 16, 60, 16
+_HALVINGS = 9  # of the lumen, for each order
+_LANES, _ROUNDS, _ELITE, _POLISHED = 300, 16, 60, 16
+_QUICK_LANES, _QUICK_ROUNDS = 80, 2
 _SLACK = 1e-9
 
 
-def thorough_layout(
+def searched_layout(
     radii: np.ndarray,
     at_wall: np.ndarray,
     least: float,
     known: tuple[float, np.ndarray, np.ndarray],
+    thorough: bool,
     progress: Callable[[float], None] | None,
 ) -> tuple[float, np.ndarray, np.ndarray]:
     """Lumen radius and centers x, y of circles sorted from the largest; `known` is a layout to better.
 
-    `least` is a lower bound that ends the search; `progress` is called with the share done.
+    `least` is a lower bound that ends the search; `progress` is called with the share done. Not
+    thorough: two rounds of eighty orders, and no polish.
     """
     draw, count = np.random.default_rng(len(radii)), len(radii)
-    order = np.array([draw.permutation(count) for _ in range(_LANES)])
-    tie = draw.choice([-1.0, 1.0], _LANES)
-    best, elite, seen = known, [], set()
-    for number in range(_ROUNDS):
+    lanes, rounds = (_LANES, _ROUNDS) if thorough else (_QUICK_LANES, _QUICK_ROUNDS)
+    listed, ties = orders(count)
+    order = np.concatenate([listed, [draw.permutation(count) for _ in range(lanes - len(listed))]])
+    tie = np.concatenate([ties, draw.choice([-1.0, 1.0], lanes - len(listed))])
+    best, elite, seen, idle = known, [], set(), 0
+    for number in range(rounds):
         lumen, x, y = _closed(radii, at_wall, order, tie, least, known[0] * 1.05)
         for lane in np.argsort(lumen, kind="stable")[:_ELITE]:
             kind = round(lumen[lane] / least, 4)  # one of each lumen: they are mostly the same layout
@@ -40,13 +46,17 @@ def thorough_layout(
                 seen.add(kind)
                 elite.append((lumen[lane], order[lane], tie[lane], x[:, lane], y[:, lane]))
         elite = sorted(elite, key=lambda kept: kept[0])[:_ELITE]
-        if number % 4 == 3 or number == 0:
-            best = min([best, *(_polished(radii, at_wall, k[3], k[4]) for k in elite[:_POLISHED])], key=lambda b: b[0])
+        best = min([best, *((kept[0], kept[3], kept[4]) for kept in elite[:1])], key=lambda found: found[0])
+        if thorough and (number % 4 == 3 or number == 0):
+            tried = [_polished(radii, at_wall, kept[3], kept[4]) for kept in elite[:_POLISHED]]
+            better = min([best, *tried], key=lambda found: found[0])
+            idle = 0 if better[0] < best[0] * (1 - _SLACK) else idle + 1
+            best = better
         if progress:
-            progress((number + 1) / _ROUNDS)
-        if best[0] <= least * (1 + _SLACK) or not elite:
+            progress((number + 1) / rounds)
+        if best[0] <= least * (1 + _SLACK) or not elite or idle > 1:
             break
-        order, tie = _bred(draw, elite, count)
+        order, tie = _bred(draw, elite, count, lanes)
     return best
 
 
@@ -66,10 +76,10 @@ def _closed(radii, at_wall, order, tie, least, most):
     return lumen, np.take_along_axis(x, back, axis=0), np.take_along_axis(y, back, axis=0)
 
 
-def _bred(draw, elite, count):
+def _bred(draw, elite, count, lanes):
     """New orders from the best: one or two exchanges or moves each; ties sometimes the other way."""
-    order, tie = np.zeros((_LANES, count), int), np.zeros(_LANES)
-    for lane in range(_LANES):
+    order, tie = np.zeros((lanes, count), int), np.zeros(lanes)
+    for lane in range(lanes):
         parent = elite[min(int(draw.exponential(6.0)), len(elite) - 1)]
         child = list(parent[1])
         for _ in range(1 + int(draw.random() < 0.4)):

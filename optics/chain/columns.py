@@ -132,6 +132,16 @@ def _padded(found: list[tuple | None]) -> np.ndarray:
     return table
 
 
+def written_out(values: np.ndarray, repeats: np.ndarray, fill: float) -> np.ndarray:
+    """List columns [design, item] with each item written out as often as it repeats, filled up at the end."""
+    width = int(repeats.sum(axis=1).max(initial=0))
+    out, end, place = np.full((len(values), width), fill), np.cumsum(repeats, axis=1), np.arange(width)
+    for item in range(values.shape[1]):
+        here = (place >= (end[:, item] - repeats[:, item])[:, None]) & (place < end[:, item, None])
+        out = np.where(here, values[:, item, None], out)
+    return out
+
+
 ABSENT = -1.2345e300  # stands for "no such number" where rows are compared
 
 

@@ -8,10 +8,12 @@ from optics.chain.columns import Columns
 from optics.chain.detail import detail
 from optics.chain.fit import fit
 from optics.chain.light import light
+from optics.chain.screen import screen
 from optics.chain.target import field_of_view, target
 from optics.viewer.detail import PARTS
 
 BLOCK = 128  # designs at a time: what fits the cache
+Numbers = dict[str, np.ndarray]  # by name [design]
 SPECTRA = ("lamp", "delivered", "target")
 
 
@@ -55,6 +57,7 @@ STEPS = (
     "attenuation",
     "bends",
     "exit face",
+    "spreading",
     "cover",
 )
 
@@ -70,7 +73,7 @@ def evaluate(columns: Columns) -> Figures:
     blocks = []
     for start in range(0, columns.count, BLOCK):
         rows = np.arange(start, min(start + BLOCK, columns.count))
-        blocks.append(_block(columns.take(rows), _taken(ports, rows), _taken(seen, rows)))
+        blocks.append(_block(columns.take(rows), _taken(seen, rows), _taken(body, rows), _taken(ports, rows)))
     value = {
         name: np.concatenate([block.value[name] for block in blocks]) for name in (blocks[0].value if blocks else ())
     }
@@ -85,14 +88,15 @@ def evaluate(columns: Columns) -> Figures:
     return Figures({**seen, **body, **value}, after, spectrum)
 
 
-def _taken(table: dict[str, np.ndarray], rows: np.ndarray) -> dict[str, np.ndarray]:
+def _taken(table: Numbers, rows: np.ndarray) -> Numbers:
     return {name: found[rows] for name, found in table.items()}
 
 
-def _block(columns: Columns, ports: dict[str, np.ndarray], seen: dict[str, np.ndarray]) -> Figures:
+def _block(columns: Columns, seen: Numbers, body: Numbers, ports: Numbers) -> Figures:
     lit = light(columns)
     landed = target(columns, lit, ports, seen)
     told = detail(columns, landed, seen)
-    value = {**lit.value, **landed.value, **told, "frame_hz": 1.0 / told["exposure_s"]}
+    screened = screen(columns, lit, landed, body)
+    value = {**lit.value, **landed.value, **told, **screened, "frame_hz": 1.0 / told["exposure_s"]}
     spectrum = {"lamp": lit.lamp_w_nm, "delivered": lit.beam.spectrum_w_nm, "target": landed.center_w_m2_nm}
     return Figures(value, lit.after_lm, spectrum)

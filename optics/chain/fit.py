@@ -6,7 +6,7 @@ from optics.body.handling import least_bend_radius_mm
 from optics.body.lumen import smallest_lumens
 from optics.body.passage import longest_rigid_tip_mm, tube_bend_radius_mm
 from optics.body.section import jacketed_mm, outer_diameter_mm
-from optics.chain.columns import Columns, distinct_rows
+from optics.chain.columns import Columns, distinct_rows, written_out
 from optics.guide.bundle import fiber_area_mm2
 from optics.units import um_from_mm
 
@@ -148,19 +148,9 @@ def _placed(columns: Columns, ports, centers_mm: np.ndarray, count: int) -> dict
 
 def _wires(columns: Columns) -> tuple[np.ndarray, np.ndarray]:
     """Diameters of all wires written out [design, wire], and which are fixed on the wall."""
-    diameter, count = (
-        columns.items("body.section.wires.diameter_mm", 0.0),
-        columns.items("body.section.wires.count", 0.0),
-    )
-    at_wall = columns.items("body.section.wires.at_wall", 0.0) > 0
-    width = int(count.sum(axis=1).max(initial=0))
-    out, walled = np.zeros((columns.count, width)), np.zeros((columns.count, width), bool)
-    end = np.cumsum(count, axis=1)
-    for item in range(count.shape[1]):
-        place = np.arange(width)
-        here = (place >= (end[:, item] - count[:, item])[:, None]) & (place < end[:, item][:, None])
-        out, walled = np.where(here, diameter[:, item, None], out), np.where(here, at_wall[:, item, None], walled)
-    return out, walled
+    count = columns.items("body.section.wires.count", 0.0).astype(int)
+    diameter, at_wall = (columns.items(f"body.section.wires.{name}", 0.0) for name in ("diameter_mm", "at_wall"))
+    return written_out(diameter, count, 0.0), written_out(at_wall, count, 0.0) > 0
 
 
 def _passage(columns: Columns, value: dict[str, np.ndarray]) -> dict[str, np.ndarray]:

@@ -1,34 +1,26 @@
 """The light from the lamp to the last face, step by step, for every design at once.
 
-Until the first length of fiber, angle and wavelength do not mix, so the steps act on the share of
-each angle bin; from there on the beam is a table of bins and wavelengths.
+Angle and wavelength mix only where light travels through fiber, so most steps act on the bins of
+angle alone; `Way` keeps them apart until a length of fiber brings them together.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 
 from optics.beam import Beam, bin_edges
-from optics.chain.columns import Columns
+from optics.chain.columns import Columns, written_out
+from optics.chain.launch import filled_na, lamp_spectrum, launch
 from optics.guide.bend import bend_matrix
 from optics.guide.bundle import fiber_area_mm2
 from optics.guide.fiber import stretch_at
 from optics.guide.joint import joint_share
 from optics.guide.packing import core_share
 from optics.media.face import face_transmission_at
-from optics.media.index import refractive_index
+from optics.media.index import D_LINE_NM, refractive_index
 from optics.media.loss import attenuation_transmission
+from optics.scene.cover import spread_share
 from optics.scene.exit_cone import cone_na_holding
-from optics.source.lamp import etendue_mm2_sr
-from optics.source.launch import (
-    Launched,
-    cone_share,
-    disc_share,
-    gap_share,
-    matched_cone_na,
-    matched_fraction,
-    rated_flux_share,
-)
 from optics.spectrum import GRID_NM, color_rendering_index, color_temperature_k, duv, integral, luminous_flux_lm
 
 INNER_BINS, OUTER_BINS = 20, 12
@@ -38,7 +30,7 @@ EXIT_SHARE = 0.95  # exit_na holds this share of the lumens
 
 @dataclass(frozen=True, slots=True)
 class Light:
-    """The beam in front of the exit face, the lumens after each step (nan: no such step), and its numbers."""
+    """The lamp's spectrum, the beam before the tip, the lumens after each step (nan: no such step), and its numbers."""
 
     lamp_w_nm: np.ndarray
     beam: Beam
@@ -46,179 +38,182 @@ class Light:
     value: dict[str, np.ndarray]
 
 
+@dataclass(slots=True)
+class Way:
+    """The beam on its way: power [design, bin or 1, wavelength] times `share` [design, bin], and what each step left."""
+
+    power_w_nm: np.ndarray
+    share: np.ndarray
+    bin_lm: np.ndarray
+    after_lm: dict[str, np.ndarray] = field(default_factory=dict)
+
+    def bins(self, name: str, factor: np.ndarray, only: np.ndarray | bool = True) -> None:
+        """A step that acts on angles: factor [design, bin or 1], counted for the designs that have it."""
+        factor = np.where(np.reshape(only, (-1, 1)), factor, 1.0)
+        self.share, self.bin_lm = self.share * factor, self.bin_lm * factor
+        self._note(name, only)
+
+    def colors(self, name: str, factor: np.ndarray, only: np.ndarray | bool = True) -> None:
+        """A step that acts on angles and colors: factor [design, bin or 1, wavelength], 1 where a design has it not."""
+        self.power_w_nm = self.power_w_nm * factor
+        self.bin_lm = luminous_flux_lm(self.power_w_nm) * self.share
+        self._note(name, only)
+
+    def mixed(self, name: str, matrix: np.ndarray, rows: np.ndarray) -> None:
+        """A step that moves light between angles in some designs: matrix [row, bin in, bin out]."""
+        power = self.power_w_nm * self.share[:, :, None]
+        power[rows] = np.einsum("dij,diw->djw", matrix, power[rows], optimize=True)
+        self.power_w_nm, self.share = power, np.ones_like(self.share)
+        self.bin_lm = luminous_flux_lm(power)
+        self._note(name, np.isin(np.arange(len(power)), rows))
+
+    def _note(self, name: str, only: np.ndarray | bool) -> None:
+        self.after_lm[name] = np.where(only, self.bin_lm.sum(axis=1), np.nan)
+
+
 def light(columns: Columns) -> Light:
     """Every step from the lamp to the exit face (and the cover over it), for all designs."""
-    spectrum = lamp = lamp_spectrum(columns)
-    after = {"lamp": luminous_flux_lm(spectrum)}
-    value = {"lamp_w": integral(spectrum)}
-    cable, filtered = columns.has("guide.cable.length_m"), (columns.curve.get("source.filter.transmission"))
-    if filtered is not None:
-        spectrum = spectrum * np.where(filtered.row[:, None] >= 0, columns.spectrum("source.filter.transmission"), 1.0)
-        after["filter"] = _only(filtered.row >= 0, luminous_flux_lm(spectrum))
-    flux = luminous_flux_lm(spectrum)
-
-    face_na = np.where(cable, columns["guide.cable.fiber.na"], columns["guide.fiber.na"])
-    face_mm = np.where(cable, columns["guide.cable.diameter_mm"], columns["guide.bundle.diameter_mm"])
-    face_index = np.where(cable, columns["guide.cable.fiber.core_index"], columns["guide.fiber.core_index"])
-    fill_na = filled_na(columns, face_mm=face_mm, face_na=face_na)
-    value["launch_na"], value["first_face_na"] = fill_na, face_na
-    edges = _edges(columns, fill_na, face_na)
+    spectrum = lamp_spectrum(columns)
+    cable = columns.has("guide.cable.length_m")
+    edges, way, value = _onto_the_face(columns, cable, spectrum)
     na = np.sqrt((edges[:, 1:] + edges[:, :-1]) / 2)
-    launched = launch(columns, edges, fill_na, face_mm=face_mm, face_na=face_na)
-
-    share = launched.cone_share
-    after["condenser"] = flux * launched.condenser_share
-    after["cone"] = after["condenser"] * share.sum(axis=1)
-    share = share * launched.spot_share
-    after["spot"] = after["condenser"] * share.sum(axis=1)
-    share = (
-        share
-        * launched.condenser_share[:, None]
-        * face_transmission_at(core_index=face_index[:, None], outside_index=1.0, na_of_ray=na)
-    )
-    after["input face"] = flux * share.sum(axis=1)
     if cable.any():
-        packing, core = (
-            columns.get("guide.cable.packing_fraction", 1.0),
-            _core_share(columns, "guide.cable.fiber"),
-        )
-        after["cable packing"] = _only(cable, after["input face"] * packing)
-        after["cable core share"] = _only(cable, after["input face"] * packing * core)
-        share = share * (packing * core)[:, None]  # both 1 where there is no cable
-        through = _attenuated(columns, "guide.cable.fiber", columns.get("guide.cable.length_m", 0.0), na)
-        power = share[:, :, None] * spectrum[:, None, :] * through
-        bins = luminous_flux_lm(power)
-        after["cable attenuation"] = _only(cable, bins.sum(axis=1))
-        factor, at = _joint(columns, cable, na, bins)
-        after["cable exit face"], after["joint"], after["guide input face"] = (_only(cable, lumens) for lumens in at)
-        power, bins = power * factor[:, :, None], bins * factor
-    else:
-        power, bins = share[:, :, None] * spectrum[:, None, :], flux[:, None] * share
+        _through_cable(columns, cable, way, na)
+    value["face_heat_w"] = value["face_heat_w"] - _first_cores_w(way, cable)
+    _through_guide(columns, way, na, edges)
+    before_w = (integral(way.power_w_nm) * way.share).sum(axis=1)
+    _out(columns, way, na, edges)
+    beam = Beam(way.power_w_nm * way.share[:, :, None], edges)
+    # What the last faces throw back is counted as heat of the tip: most of it is, and the rest is on the safe side.
+    value["tip_heat_w"] = np.maximum(before_w - beam.flux_w, 0.0)
+    value.update(_numbers(columns, beam, way))
+    return Light(spectrum, beam, way.after_lm, value)
 
-    packing, core = columns["guide.bundle.packing_fraction"], _core_share(columns, "guide.fiber")
+
+def _onto_the_face(columns: Columns, cable: np.ndarray, spectrum: np.ndarray):
+    """Lamp, filter, condenser, cone, spot and the first reflection: bin edges, the way begun, first numbers."""
+    lamp = spectrum
+    if "source.filter.transmission" in columns.curve:
+        filtered = columns.curve["source.filter.transmission"].row >= 0
+        spectrum = spectrum * np.where(filtered[:, None], columns.spectrum("source.filter.transmission"), 1.0)
+    face = {
+        name: np.where(cable, columns[f"guide.cable.fiber.{name}"], columns[f"guide.fiber.{name}"])
+        for name in ("na", "core_index")
+    }
+    face_mm = np.where(cable, columns["guide.cable.diameter_mm"], columns["guide.bundle.diameter_mm"])
+    fill_na = filled_na(columns, face_mm=face_mm, face_na=face["na"])
+    edges = _edges(columns, fill_na, face["na"])
+    na = np.sqrt((edges[:, 1:] + edges[:, :-1]) / 2)
+    launched = launch(columns, edges, fill_na, face_mm=face_mm, face_na=face["na"])
+
+    flux = luminous_flux_lm(lamp)
+    way = Way(spectrum[:, None, :], np.ones_like(na), luminous_flux_lm(spectrum)[:, None])
+    way.after_lm["lamp"] = flux
+    if "source.filter.transmission" in columns.curve:
+        way.after_lm["filter"] = np.where(filtered, luminous_flux_lm(spectrum), np.nan)
+    way.after_lm["condenser"] = way.bin_lm[:, 0] * launched.condenser_share
+    way.share = launched.condenser_share[:, None] * launched.cone_share
+    way.bin_lm = way.bin_lm * way.share
+    way.after_lm["cone"] = way.bin_lm.sum(axis=1)
+    way.bins("spot", launched.spot_share)
+    reflected = face_transmission_at(core_index=face["core_index"][:, None], outside_index=1.0, ray_na=na)
+    way.bins("input face", reflected)
+    value = {
+        "lamp_w": integral(lamp),
+        "launch_na": fill_na,
+        "first_face_na": face["na"],
+        "face_heat_w": integral(spectrum) * launched.condenser_share,
+    }
+    return edges, way, value
+
+
+def _through_cable(columns: Columns, cable: np.ndarray, way: Way, na: np.ndarray) -> None:
+    """A separate cable before the scope: its face, its length, and the joint."""
+    fiber, index = "guide.cable.fiber", columns.get("guide.joint.index", 1.0)[:, None]
+    way.bins("cable packing", columns.get("guide.cable.packing_fraction", 1.0)[:, None], cable)
+    way.bins("cable core share", _core_share(columns, fiber)[:, None], cable)
+    way.colors("cable attenuation", _attenuated(columns, fiber, columns.get("guide.cable.length_m", 0.0), na), cable)
+    leave = face_transmission_at(core_index=columns.get(f"{fiber}.core_index", 1.5)[:, None], outside_index=index, ray_na=na)
+    way.bins("cable exit face", leave, cable)
+    crosses = joint_share(
+        from_mm=columns.get("guide.cable.diameter_mm", 1.0)[:, None],
+        to_mm=columns["guide.bundle.diameter_mm"][:, None],
+        gap_mm=columns.get("guide.joint.gap_mm", 0.0)[:, None],
+        offset_mm=columns.get("guide.joint.offset_mm", 0.0)[:, None],
+        gap_index=index,
+        na=na,
+    )
+    way.bins("joint", crosses * (na <= columns["guide.fiber.na"][:, None]), cable)
+    enter = face_transmission_at(core_index=columns["guide.fiber.core_index"][:, None], outside_index=index, ray_na=na)
+    way.bins("guide input face", enter, cable)
+
+
+def _through_guide(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray) -> None:
+    """The scope's own guide: fibers and cores, broken ones, length, bends."""
     whole = 1.0 - columns.get("guide.bundle.broken_fraction", 0.0)
-    total = bins.sum(axis=1)
-    after["packing"], after["core share"] = total * packing, total * packing * core
-    after["broken fibers"] = _only(whole < 1, total * packing * core * whole)
-    power = (
-        power
-        * (packing * core * whole)[:, None, None]
-        * _attenuated(columns, "guide.fiber", columns["guide.bundle.length_m"], na)
-    )
-    bins = luminous_flux_lm(power)
-    after["attenuation"] = bins.sum(axis=1)
-    power, bent = _bent(columns, edges, power)
-    if bent.any():
-        bins = luminous_flux_lm(power)
-        after["bends"] = _only(bent, bins.sum(axis=1))
-
-    medium = medium_index(columns)
-    cover = columns.has("scene.cover.index")
-    beyond = np.where(cover, 1.0, medium)  # a cover stands in air before the exit face
-    factor = face_transmission_at(
-        core_index=columns["guide.fiber.core_index"][:, None], outside_index=beyond[:, None], na_of_ray=na
-    )
-    bins = bins * factor
-    after["exit face"] = bins.sum(axis=1)
-    if cover.any():
-        glass = columns.get("scene.cover.index", 1.0)[:, None]
-        window = face_transmission_at(core_index=glass, outside_index=1.0, na_of_ray=na)
-        window = np.where(
-            cover[:, None],
-            window * face_transmission_at(core_index=glass, outside_index=medium[:, None], na_of_ray=na),
-            1.0,
+    way.bins("packing", columns["guide.bundle.packing_fraction"][:, None])
+    way.bins("core share", _core_share(columns, "guide.fiber")[:, None])
+    if (whole < 1).any():
+        way.bins("broken fibers", whole[:, None], whole < 1)
+    way.colors("attenuation", _attenuated(columns, "guide.fiber", columns["guide.bundle.length_m"], na))
+    radius = columns.items("guide.bundle.bends.radius_mm", np.inf)
+    angle = columns.items("guide.bundle.bends.angle_deg", 0.0)
+    rows = np.flatnonzero((angle > 0).any(axis=1))
+    if rows.size:
+        repeats = columns.items("guide.bundle.bends.repeats", 0.0).astype(int)
+        matrix = bend_matrix(
+            sine2_edges=edges[rows],
+            na=columns["guide.fiber.na"][rows],
+            core_index=columns["guide.fiber.core_index"][rows],
+            core_um=columns["guide.fiber.core_um"][rows],
+            bend_radius_mm=written_out(radius, repeats, np.inf)[rows],
+            bend_deg=written_out(angle, repeats, 0.0)[rows],
         )
-        factor, bins = factor * window, bins * window
-        after["cover"] = _only(cover, bins.sum(axis=1))
-    beam = Beam(power * factor[:, :, None], edges)
-    value.update(_numbers(columns, beam, bins, after))
-    return Light(lamp, beam, after, value)
+        way.mixed("bends", matrix, rows)
 
 
-def lamp_spectrum(columns: Columns) -> np.ndarray:
-    """Spectral power of the lamp [design, wavelength], W/nm, scaled to its stated lumens or watts."""
-    relative = columns.spectrum("source.lamp.spectrum")
-    per_lm = columns["source.lamp.flux_lm"] / np.maximum(luminous_flux_lm(relative), 1e-300)
-    per_w = columns["source.lamp.flux_w"] / np.maximum(integral(relative), 1e-300)
-    return relative * np.where(np.isnan(per_lm), per_w, per_lm)[:, None]
+def _out(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray) -> None:
+    """The exit face, and a cover over it: clear or spreading."""
+    medium, cover = medium_index(columns)[:, None], columns.has("scene.cover.index")
+    before = np.where(cover[:, None], 1.0, medium)  # a cover stands in air before the exit face
+    core = columns["guide.fiber.core_index"][:, None]
+    way.bins("exit face", face_transmission_at(core_index=core, outside_index=before, ray_na=na))
+    if not cover.any():
+        return
+    spread = columns.get("scene.cover.spread_na", 0.0)
+    rows = np.flatnonzero(spread > 0)
+    if rows.size:
+        matrix = spread_share(sine2_edges=edges[rows], spread_na=spread[rows], spread_edges=edges[rows])
+        way.mixed("spreading", matrix, rows)
+    glass = columns.get("scene.cover.index", 1.5)[:, None]
+    faces = face_transmission_at(core_index=glass, outside_index=1.0, ray_na=na)
+    way.bins("cover", faces * face_transmission_at(core_index=glass, outside_index=medium, ray_na=na), cover)
 
 
-def filled_na(columns: Columns, *, face_mm: np.ndarray, face_na: np.ndarray) -> np.ndarray:
-    """The cone that the launch fills on the first face, NA [design]."""
-    filled = columns["source.lamp.cone_na"].copy()
-    lamp = lamp_etendue(columns)
-    for form, rows in columns.split("source.launch.form"):
-        if form == "spot":
-            filled[rows] = columns["source.launch.cone_na"][rows]
-        elif form == "matched":
-            filled[rows] = matched_cone_na(lamp_etendue_mm2_sr=lamp[rows], face_mm=face_mm[rows], na=face_na[rows])
-        elif form == "rated":
-            filled[rows] = face_na[rows]
-    return filled
-
-
-def lamp_etendue(columns: Columns) -> np.ndarray:
-    return etendue_mm2_sr(diameter_mm=columns["source.lamp.emitter_mm"], na=columns["source.lamp.cone_na"])
-
-
-def launch(
-    columns: Columns, edges: np.ndarray, fill_na: np.ndarray, *, face_mm: np.ndarray, face_na: np.ndarray
-) -> Launched:
-    """What reaches the first face, by each design's own form of launch."""
-    guided = np.minimum(edges, face_na[:, None] ** 2)
-    condenser = columns.get("source.launch.transmission", 1.0)
-    cone = cone_share(sine2_edges=guided, cone_na=fill_na)
-    spot = np.ones_like(cone)
-    lamp = lamp_etendue(columns)
-    for form, rows in columns.split("source.launch.form"):
-        face = etendue_mm2_sr(diameter_mm=face_mm[rows], na=face_na[rows])
-        if form == "butt":
-            sine = np.sqrt((edges[rows, 1:] + edges[rows, :-1]) / 2)
-            spot[rows] = gap_share(
-                emitter_mm=columns["source.lamp.emitter_mm"][rows, None],
-                face_mm=face_mm[rows, None],
-                gap_mm=columns["source.launch.gap_mm"][rows, None],
-                sine=np.minimum(sine, 1 - 1e-9),
-            )
-        elif form == "spot":
-            gaussian = columns.texts("source.launch.profile")[rows] == "gaussian"
-            spot[rows] = disc_share(
-                spot_mm=columns["source.launch.spot_mm"][rows], face_mm=face_mm[rows], gaussian=gaussian
-            )[:, None]
-        elif form == "matched":
-            condenser[rows] *= matched_fraction(lamp_etendue_mm2_sr=lamp[rows], bundle_etendue_mm2_sr=face)
-        elif form == "rated":
-            reference = etendue_mm2_sr(
-                diameter_mm=columns["source.launch.reference_diameter_mm"][rows],
-                na=columns["source.launch.reference_na"][rows],
-            )
-            condenser[rows] = rated_flux_share(
-                rated_share=columns["source.launch.rated_lm"][rows] / columns["source.lamp.flux_lm"][rows],
-                lamp_etendue_mm2_sr=lamp[rows],
-                reference_etendue_mm2_sr=reference,
-                face_etendue_mm2_sr=face,
-            )
-    return Launched(condenser, cone, spot)
+def _first_cores_w(way: Way, cable: np.ndarray) -> np.ndarray:
+    """Watts that got into the cores behind the first face."""
+    entered = np.where(cable, way.after_lm.get("cable core share", way.after_lm["input face"]), way.after_lm["input face"])
+    lamp = way.after_lm["condenser"]
+    share = np.where(lamp > 0, entered / np.where(lamp > 0, lamp, 1.0), 0.0)
+    return share * integral(way.power_w_nm).max(axis=1)
 
 
 def medium_index(columns: Columns) -> np.ndarray:
-    """Refractive index of what stands in front of the tip, at the d line [design]."""
+    """Refractive index of what stands in front of the tip, at the d line [design]; 1 in air and without a target."""
     found = np.ones(columns.count)
     for medium, rows in columns.split("scene.target.medium"):
-        found[rows] = refractive_index(medium=medium, wavelength_nm=587.56) if medium not in ("", "air") else 1.0
+        if medium not in ("", "air"):
+            found[rows] = refractive_index(medium=medium, wavelength_nm=D_LINE_NM)
     return found
 
 
 def _edges(columns: Columns, fill_na: np.ndarray, face_na: np.ndarray) -> np.ndarray:
-    """Inner bins up to where the light ends in every guide; outer bins up to what bends or a joint may need."""
-    first = np.minimum(fill_na, face_na)
-    guide = columns["guide.fiber.na"]
-    widest = np.minimum(np.maximum(first, guide) * np.sqrt(WIDENED), 0.999)
-    return bin_edges(inner_na=np.minimum(first, guide), outer_na=widest, inner_count=INNER_BINS, outer_count=OUTER_BINS)
-
-
-def _only(has: np.ndarray, lumens: np.ndarray) -> np.ndarray:
-    return np.where(has, lumens, np.nan)
+    """Inner bins up to where the light ends in every guide; outer bins for what bends, a joint or a cover may need."""
+    first, guide = np.minimum(fill_na, face_na), columns["guide.fiber.na"]
+    widest = np.maximum(first, guide) * np.sqrt(WIDENED) + columns.get("scene.cover.spread_na", 0.0)
+    return bin_edges(
+        inner_na=np.minimum(first, guide), outer_na=np.minimum(widest, 0.9999), inner_count=INNER_BINS, outer_count=OUTER_BINS
+    )
 
 
 def _core_share(columns: Columns, table: str) -> np.ndarray:
@@ -226,86 +221,27 @@ def _core_share(columns: Columns, table: str) -> np.ndarray:
 
 
 def _attenuated(columns: Columns, table: str, length_m: np.ndarray, na: np.ndarray) -> np.ndarray:
-    """Transmission [design, bin, wavelength] of a length of one fiber."""
-    stretch = stretch_at(na_of_ray=na, core_index=columns.get(f"{table}.core_index", 2.0)[:, None])
-    inside = columns.covered(f"{table}.attenuation")
-    loss = columns.spectrum(f"{table}.attenuation")
+    """Transmission [design, bin, wavelength] of a length of one fiber; no light where its data end, 1 without a fiber."""
+    stretch = stretch_at(ray_na=na, core_index=columns.get(f"{table}.core_index", 2.0)[:, None])
+    loss, inside = columns.spectrum(f"{table}.attenuation"), columns.covered(f"{table}.attenuation")
     through = attenuation_transmission(
         loss_db_m=loss[:, None, :], length_m=length_m[:, None, None], stretch=stretch[:, :, None]
     )
-    return np.where(inside[:, None, :], through, 0.0)
+    return through * inside[:, None, :]
 
 
-def _joint(columns: Columns, cable: np.ndarray, na: np.ndarray, bins: np.ndarray):
-    """Factor of each bin from the cable's core to the guide's core, and the lumens after each of its three steps."""
-    gap = columns.get("guide.joint.index", 1.0)[:, None]
-    leave = face_transmission_at(
-        core_index=columns.get("guide.cable.fiber.core_index", 1.5)[:, None], outside_index=gap, na_of_ray=na
+def _numbers(columns: Columns, beam: Beam, way: Way) -> dict[str, np.ndarray]:
+    spectrum, delivered, lamp = beam.spectrum_w_nm, way.bin_lm.sum(axis=1), way.after_lm["lamp"]
+    fibers = fiber_area_mm2(
+        diameter_mm=columns["guide.bundle.diameter_mm"], packing_fraction=columns["guide.bundle.packing_fraction"]
     )
-    cross = joint_share(
-        from_mm=columns.get("guide.cable.diameter_mm", 1.0)[:, None],
-        to_mm=columns["guide.bundle.diameter_mm"][:, None],
-        gap_mm=columns.get("guide.joint.gap_mm", 0.0)[:, None],
-        offset_mm=columns.get("guide.joint.offset_mm", 0.0)[:, None],
-        gap_index=gap,
-        na=na,
-    ) * (na <= columns["guide.fiber.na"][:, None])
-    enter = face_transmission_at(core_index=columns["guide.fiber.core_index"][:, None], outside_index=gap, na_of_ray=na)
-    at = [(bins * leave).sum(axis=1), (bins * leave * cross).sum(axis=1), (bins * leave * cross * enter).sum(axis=1)]
-    return np.where(cable[:, None], leave * cross * enter, 1.0), at
-
-
-def _bent(columns: Columns, edges: np.ndarray, power: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-    """The beam after the bends of the scope's guide, and which designs have any."""
-    radius, angle = (
-        columns.items("guide.bundle.bends.radius_mm", np.inf),
-        columns.items("guide.bundle.bends.angle_deg", 0.0),
-    )
-    bent = (angle > 0).any(axis=1)
-    if not bent.any():
-        return power, bent
-    repeats = columns.items("guide.bundle.bends.repeats", 0.0).astype(int)
-    radius, angle = (_repeated(values, repeats, fill) for values, fill in ((radius, np.inf), (angle, 0.0)))
-    rows = np.flatnonzero(bent)
-    matrix = bend_matrix(
-        sine2_edges=edges[rows],
-        na=columns["guide.fiber.na"][rows],
-        core_index=columns["guide.fiber.core_index"][rows],
-        core_um=columns["guide.fiber.core_um"][rows],
-        bend_radius_mm=radius[rows],
-        bend_deg=angle[rows],
-    )
-    power = power.copy()
-    power[rows] = np.einsum("dij,diw->djw", np.maximum(matrix, 0.0), power[rows], optimize=True)
-    return power, bent
-
-
-def _repeated(values: np.ndarray, repeats: np.ndarray, fill: float) -> np.ndarray:
-    """List columns with each item written out as often as it repeats [design, bend]."""
-    width = int(repeats.sum(axis=1).max())
-    out = np.full((len(values), width), fill)
-    end = np.cumsum(repeats, axis=1)
-    for item in range(values.shape[1]):
-        place = np.arange(width)
-        here = (place >= (end[:, item] - repeats[:, item])[:, None]) & (place < end[:, item][:, None])
-        out = np.where(here, values[:, item, None], out)
-    return out
-
-
-def _numbers(columns: Columns, beam: Beam, bins: np.ndarray, after: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
-    spectrum = beam.spectrum_w_nm
-    delivered = bins.sum(axis=1)
-    lamp = after["lamp"]
     return {
         "delivered_lm": delivered,
         "delivered_w": integral(spectrum),
-        "transmission": np.where(lamp > 0, delivered / np.maximum(lamp, 1e-300), 0.0),
-        "exit_na": cone_na_holding(sine2_edges=beam.sine2_edges, flux=bins, share=EXIT_SHARE),
+        "transmission": np.where(lamp > 0, delivered / np.where(lamp > 0, lamp, 1.0), 0.0),
+        "exit_na": cone_na_holding(sine2_edges=beam.sine2_edges, flux=way.bin_lm, share=EXIT_SHARE),
         "color_temperature_k": color_temperature_k(wavelength_nm=GRID_NM, power=spectrum),
         "color_duv": duv(wavelength_nm=GRID_NM, power=spectrum),
         "color_rendering_index": color_rendering_index(wavelength_nm=GRID_NM, power=spectrum),
-        "core_area_mm2": fiber_area_mm2(
-            diameter_mm=columns["guide.bundle.diameter_mm"], packing_fraction=columns["guide.bundle.packing_fraction"]
-        )
-        * _core_share(columns, "guide.fiber"),
+        "core_area_mm2": fibers * _core_share(columns, "guide.fiber"),
     }

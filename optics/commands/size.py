@@ -36,14 +36,7 @@ def written(report: Report) -> str:
     if report.fit:
         parts += ["Fit and passage", _pairs(_fit_rows(report)), ""]
     if report.exposure:
-        rows = [
-            (line.name, rounded(line.value), line.unit, rounded(line.limit), line.because) for line in report.exposure
-        ]
-        parts += [
-            "Screening of optical radiation",
-            table([("", "value", "unit", "figure", ""), *rows], right=(1, 3)),
-            "",
-        ]
+        parts += ["Screening of optical radiation (a screening estimate, no certificate)", _screening(report), ""]
     if report.needs:
         rows = [
             (
@@ -58,6 +51,16 @@ def written(report: Report) -> str:
         parts += ["Needs", table([("", "", "wanted", "got", "margin"), *rows], right=(2, 3, 4)), ""]
     parts += ["Caveats", *(paragraph(f"{item.where}: {item.text}", lead="  - ") for item in report.caveats)]
     return "\n".join(parts)
+
+
+def _screening(report: Report) -> str:
+    """Each line as its numbers, and below them what they are held against."""
+    said = []
+    for line in report.exposure:
+        held = f", screening figure {rounded(line.limit)}" if line.limit is not None else ""
+        value = "not assessed" if line.value is None else f"{rounded(line.value)} {line.unit}".strip()
+        said += [paragraph(f"{line.name}: {value}{held}"), paragraph(line.because, lead="      ")]
+    return "\n".join(said)
 
 
 def _margin(margin: float | None) -> str:

@@ -23,7 +23,7 @@ BLUE, VERMILION, PURPLE = "#0072B2", "#D55E00", "#CC79A7"
 
 @dataclass(frozen=True, slots=True)
 class Palette:
-    """What a picture is drawn in. `light` is the way there, `back` the way back, `accent` what limits or falls short."""
+    """What a picture is drawn in. `light` is the way there, `back` the way back, `accent` what limits or falls short; `on_...` words upon them."""
 
     name: str
     paper: str
@@ -35,6 +35,8 @@ class Palette:
     light: str
     back: str
     series: tuple[str, ...]
+    on_light: str = "#1f1500"
+    on_back: str = "#ffffff"
 
     @property
     def light_map(self) -> ListedColormap:
@@ -49,6 +51,7 @@ LIGHT = Palette(
 DARK = Palette(
     "dark", paper="#0e1117", ink="#f2f3f5", soft="#a4abb8", grid="#343a46", ghost="#1b202a",
     accent="#FF7F2A", light=ORANGE, back=SKY, series=(SKY, "#FF7F2A", "#2BC49A", ORANGE, PURPLE, YELLOW),
+    on_back="#04141f",
 )  # fmt: skip
 
 

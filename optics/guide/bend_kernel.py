@@ -85,3 +85,108 @@ def legendre(x, count):
     for k in range(1, count - 1):
         out.append(((2 * k + 1) * x * out[k] - k * out[k - 1]) / (k + 1))
     return np.stack(out[:count], axis=-1)
+
+
+@dataclass(frozen=True, slots=True)
+class Kernel:
+    """The table, decoded: [bend x angle x share, ...], and the spread's singular vectors by kind of bend.
+
+    `vectors` holds, for the skewness moments that come in and go out, [rank, level, pair, power] of the
+    step's twice-integrated density; its last power is the straight line beyond the longest step.
+    """
+
+    survival: np.ndarray
+    guided: np.ndarray
+    scores: np.ndarray
+    vectors: dict[str, np.ndarray]
+
+
+PAIRS = {
+    "only": (slice(0, 1), slice(0, 1)),
+    "first": (slice(0, 1), slice(None)),
+    "middle": (slice(None), slice(None)),
+    "last": (slice(None), slice(0, 1)),
+}
+NODES = (len(BEND_NODES), len(ANGLE_NODES), len(SHARE_NODES))
+VECTOR_SCALE = 4.0  # the largest entry of a singular vector that the table can hold
+
+
+def packed_parts(survival, guided, scores, vectors):
+    """One flat array in [-1, 1], as presets/tables/bend_kernel.toml holds it."""
+    return np.concatenate([np.ravel(part) for part in (survival, guided, scores, vectors / VECTOR_SCALE)])
+
+
+@lru_cache(maxsize=1)
+def kernel() -> Kernel:
+    """The table of presets/tables/bend_kernel.toml, read on first use."""
+    return unpacked(tables.packed("bend_kernel"))
+
+
+def unpacked(flat: np.ndarray) -> Kernel:
+    """The kernel from the flat array of `packed_parts`."""
+    count, fine, coarse = int(np.prod(NODES)), level_count(FINE), level_count(COARSE)
+    shape = (coarse, MOMENTS, MOMENTS, DEGREES)
+    rank = (flat.size - 2 * count * fine - int(np.prod(shape))) // (count + int(np.prod(shape)))
+    survival, guided, scores, vectors = np.split(flat, np.cumsum([count * fine, count * fine, count * rank]))
+    vectors = VECTOR_SCALE * vectors.reshape(rank + 1, *shape)
+    powers = vectors @ _step_powers()
+    by_kind = {}
+    for kind, (into, out) in PAIRS.items():
+        part = powers[:, :, into, out, :]
+        by_kind[kind] = np.ascontiguousarray(part.reshape(rank + 1, coarse, -1, powers.shape[-1]))
+    scores = np.concatenate([scores.reshape(count, rank), np.ones((count, 1))], axis=1)
+    return Kernel(survival.reshape(count, fine), guided.reshape(count, fine), scores, by_kind)
+
+
+def _step_powers() -> np.ndarray:
+    """[degree, power]: coefficients of t^1, t^2 ... in the twofold integral from -1 of (2k + 1)/2 P_k(t).
+
+    The constant drops out of second differences. Beyond t = 1 only degree 0 goes on, as a straight line:
+    the last column.
+    """
+    from numpy.polynomial import legendre as series
+
+    out = np.zeros((DEGREES, DEGREES + 2))
+    for k in range(DEGREES):
+        density = np.zeros(k + 1)
+        density[k] = k + 0.5
+        twice = series.leg2poly(series.legint(series.legint(density, lbnd=-1), lbnd=-1))
+        out[k, : len(twice) - 1] = twice[1:]
+    out[0, -1] = 1.0
+    return out
+
+
+def corners(bend: np.ndarray, angle: np.ndarray, share: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+    """The eight nodes around each design [design, 8] and their weights (bend and angle by logarithm)."""
+    places = [
+        _between(np.log(BEND_NODES), np.log(bend)),
+        _between(np.log(ANGLE_NODES), np.log(angle)),
+        _between(SHARE_NODES, share),
+    ]
+    index, weight = np.zeros((len(bend), 1), int), np.ones((len(bend), 1))
+    for (low, part), count in zip(places, NODES):
+        index = np.concatenate([index * count + (low + k)[:, None] for k in (0, 1)], axis=1)
+        weight = np.concatenate([weight * (1 - part)[:, None], weight * part[:, None]], axis=1)
+    return index, weight
+
+
+def _between(nodes: np.ndarray, values: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+    low = np.clip(np.searchsorted(nodes, values, side="right") - 1, 0, len(nodes) - 2)
+    return low, np.clip((values - nodes[low]) / (nodes[low + 1] - nodes[low]), 0.0, 1.0)
+
+
+def blended(table: np.ndarray, index: np.ndarray, weight: np.ndarray) -> np.ndarray:
+    """Rows of a table [node, column] blended over the corners, added in one order."""
+    out = weight[:, :1] * table[index[:, 0]]
+    for k in range(1, index.shape[1]):
+        out += weight[:, k : k + 1] * table[index[:, k]]
+    return out
+
+
+def at_level(columns: np.ndarray, level: np.ndarray) -> np.ndarray:
+    """Linear interpolation of columns [design, level node] at levels [design, ...]."""
+    flat = level.reshape(len(level), -1)
+    low = np.minimum(flat.astype(int), columns.shape[1] - 2)
+    part = flat - low
+    found = np.take_along_axis(columns, low, 1) * (1 - part) + np.take_along_axis(columns, low + 1, 1) * part
+    return found.reshape(level.shape)

@@ -78,7 +78,9 @@ def node(*, bend: float, share: float, rays: int, seed: int, angles: np.ndarray 
             rows.append(rows[-1])
             continue
         stop = angle * np.sqrt(bend * share / (1 - share))
-        now, through = raytrace.through_bend(now, radius_ratio=2 / (x * share), limit_sine=limit, bend_rad=stop - turned)
+        now, through = raytrace.through_bend(
+            now, radius_ratio=2 / (x * share), limit_sine=limit, bend_rad=stop - turned
+        )
         alive, turned = alive[through], stop
         keeps = raytrace.guided(now, limit_sine=limit)
         left, end = alive[keeps], now.kept(keeps)

@@ -89,16 +89,16 @@ def half_angle_deg(*, na: Numbers, outside_index: Numbers) -> np.ndarray:
     return deg_from_rad(np.arcsin(ratio))
 
 
-def stretch_at(*, na_of_ray: Numbers, core_index: Numbers) -> np.ndarray:
+def stretch_at(*, ray_na: Numbers, core_index: Numbers) -> np.ndarray:
     """Path over fiber length of a ray: 1/cos(theta) with sin(theta) = NA/n1, skew or not.
 
-    >>> round(float(stretch_at(na_of_ray=0.5, core_index=1.492)), 4)
+    >>> round(float(stretch_at(ray_na=0.5, core_index=1.492)), 4)
     1.0614
     """
-    not_negative(na_of_ray=na_of_ray)
+    not_negative(ray_na=ray_na)
     positive(core_index=core_index)
-    sine = np.asarray(na_of_ray, float) / core_index
-    require("na_of_ray", na_of_ray, "below the core index", sine < 1)
+    sine = np.asarray(ray_na, float) / core_index
+    require("ray_na", ray_na, "below the core index", sine < 1)
     return 1 / np.sqrt(1 - sine**2)
 
 
@@ -179,7 +179,7 @@ def tilted_end_deg(*, core_index: Numbers, tilt_deg: Numbers) -> np.ndarray:
     Raises OutOfRange where the axis itself would be reflected totally (n1 sin d above 1).
 
     >>> round(float(tilted_end_deg(core_index=1.492, tilt_deg=10.0)), 2)
-    5.01
+    5.02
     """
     positive(core_index=core_index)
     tilt = rad_from_deg(np.asarray(tilt_deg, float))

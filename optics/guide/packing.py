@@ -116,27 +116,38 @@ def circle_ratio(*, count: Numbers) -> Numbers:
     return found if np.ndim(count) else float(found)
 
 
-def hexagonal_number(*, rings: Numbers) -> Numbers:
+def hexagonal_count(*, ring_count: Numbers) -> Numbers:
     """Circles in a hexagonal arrangement of so many rings around one: 1 + 3 k (k + 1).
 
-    >>> [hexagonal_number(rings=k) for k in (1, 2, 3, 4, 5)]
+    >>> [hexagonal_count(ring_count=k) for k in (1, 2, 3, 4, 5)]
     [7, 19, 37, 61, 91]
     """
-    not_negative(rings=rings)
-    return 1 + 3 * rings * (rings + 1)
+    not_negative(ring_count=ring_count)
+    return 1 + 3 * ring_count * (ring_count + 1)
 
 
-def curved_hexagonal_ratio(*, rings: Numbers) -> Numbers:
+def curved_hexagonal_ratio(*, ring_count: Numbers) -> Numbers:
     """R/r of the curved hexagonal packing of 1 + 3 k (k + 1) circles: 1 + 1/sin(pi / 6k).
 
     Its outermost ring is a regular polygon of 6 k touching circles. Best known up to k = 5;
     from k = 6 on other packings are denser. References: lubachevsky_1997.
 
-    >>> [round(float(curved_hexagonal_ratio(rings=k)), 4) for k in (1, 2, 3, 4, 5)]
+    >>> [round(float(curved_hexagonal_ratio(ring_count=k)), 4) for k in (1, 2, 3, 4, 5)]
     [3.0, 4.8637, 6.7588, 8.6613, 10.5668]
     """
-    require("rings", rings, "1 or more", np.asarray(rings) >= 1)
-    return 1 + 1 / np.sin(np.pi / (6 * np.asarray(rings, float)))
+    require("ring_count", ring_count, "1 or more", np.asarray(ring_count) >= 1)
+    return 1 + 1 / np.sin(np.pi / (6 * np.asarray(ring_count, float)))
+
+
+def curved_hexagonal_fraction(*, ring_count: Numbers) -> Numbers:
+    """Area share of the curved hexagonal packing in its circle: (1 + 3 k (k + 1)) / ratio^2, pi^2/12 in the limit.
+
+    References: lubachevsky_1997.
+
+    >>> round(float(curved_hexagonal_fraction(ring_count=1)), 4)
+    0.7778
+    """
+    return hexagonal_count(ring_count=ring_count) / curved_hexagonal_ratio(ring_count=ring_count) ** 2
 
 
 def ferrule_count(*, bundle_mm: float, fiber_mm: float) -> int:

@@ -1,10 +1,6 @@
 """Exact trace of rays through bends of a step-index fiber: the reference that the bend kernel is checked against.
 
-Lengths inside this file count in core radii. The bend is a torus: u runs outward in the bend plane
-from the fiber's axis, y across, the axis circle has radius R. With h = u + (u^2 + y^2 - 1)/(2R) a
-straight chord is h(t) = h0 + B t + t^2/(2R), y(t) = y0 + y' t with B = u' + (u u' + y y')/R, and the
-wall is exactly h^2 + y^2 = 1: a ball in a disc under a constant pull. A ray is lost at the wall when
-its direction's component along the outward normal exceeds NA/n1.
+The geometry of a chord in the torus is `torus`; here are the rays, the straight runs, and the counting.
 
 Assumptions: geometric optics, smooth wall, no absorption (the bundle counts it once, along the whole
 length), a cladding thick enough that what enters it is lost. Skew rays above the NA count as guided.
@@ -14,11 +10,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.spec import OutOfRange, not_negative, positive, require
-from optics.units import rad_from_deg, um_from_mm
+from optics.guide.torus import through
+from optics.spec import not_negative, positive, require
+from optics.units import mm_from_um, rad_from_deg
 
-CHUNK = 16_000
-CREEP = 1e-3
+BATCH = 16_000
 CONE_SHARE = 0.95
 
 
@@ -70,8 +66,8 @@ def isotropic_rays(*, limit_sine: float, rays: int, random: np.random.Generator)
     """
     parts, have = [], 0
     while have < rays:
-        sine = np.sqrt(1 - random.random(CHUNK) ** 2)
-        radius, place, azimuth = np.sqrt(random.random(CHUNK)), *(2 * np.pi * random.random((2, CHUNK)))
+        sine = np.sqrt(1 - random.random(BATCH) ** 2)
+        radius, place, azimuth = np.sqrt(random.random(BATCH)), *(2 * np.pi * random.random((2, BATCH)))
         some = Rays(radius * np.cos(place), radius * np.sin(place), sine * np.cos(azimuth), sine * np.sin(azimuth))
         parts.append(some.kept(guided(some, limit_sine=limit_sine)))
         have += len(parts[-1])
@@ -98,110 +94,129 @@ def after_straight_run(rays: Rays, *, random: np.random.Generator) -> Rays:
     return Rays(along * c + caustic * s, along * s - caustic * c, sine * c, sine * s)
 
 
-def _first_chord(b, a, u, y, dy):
-    """Length of the chord from a point inside to the wall, A t = tau; the quartic's least positive root.
-
-    g = h^2 + y^2 - 1 is below 0 inside and its second derivative there at most M, so that the positive
-    root of g + g' s + M s^2/2 never passes the wall; the steps converge as Newton's do.
-    """
-    h = u + (u * u + y * y - 1) * a
-    most = 2 * (b * b + 4 * a * (1 - h)) + 4 * a + 2 * dy * dy
-    t = np.zeros_like(u)
-    for _ in range(14):
-        ht, yt, slope_h = h + t * (b + a * t), y + dy * t, b + 2 * a * t
-        g = np.minimum(ht * ht + yt * yt - 1, 0.0)
-        slope = 2 * (ht * slope_h + yt * dy)
-        root = np.sqrt(slope * slope - 2 * most * g)
-        t = t + np.where(slope > 0, -2 * g / np.maximum(slope + root, 1e-300), (root - slope) / most)
-    return t
-
-
-def _next_chord(b, a, u, y, dy):
-    """Length of the chord from a wall point to the next: the cubic's least positive root (tau = A t)."""
-    c = b * b + 2 * a * u + dy * dy
-    d = np.minimum(2 * a * (b * u + y * dy), 0.0)
-    third = 2 * b / 3
-    p = c / 3 - third * third
-    q = third * (third * third - c / 2) + d / 2
-    disc = q * q + p * p * p
-    three = disc < 0
-    tau = np.empty_like(u)
-    w = np.cbrt(-q - np.copysign(np.sqrt(np.maximum(disc, 0.0)), q))
-    np.subtract(w, p / np.where(w == 0, 1.0, w), out=tau)
-    if three.any():
-        p3, q3 = p[three], q[three]
-        size = np.sqrt(-p3)
-        turn = np.arccos(np.clip(-q3 / (size * -p3), -1, 1)) / 3
-        least = (b[three] < 0) & (c[three] > 0)
-        tau[three] = 2 * size * np.cos(turn - np.where(least, 4 * np.pi / 3, 0.0))
-    tau -= third
-    for _ in range(2):
-        value = d + tau * (c + tau * (2 * b + tau))
-        slope = c + tau * (4 * b + 3 * tau)
-        tau = np.maximum(tau - value / np.where(np.abs(slope) < 1e-300, 1e-300, slope), 0.0)
-    return tau / a
-
-
-def _through(state, radius, limit, bend_rad):
-    """Trace [5, ray] of (u, y, u', y', z') through bend_rad; the exit state, nan where the ray is lost.
-
-    New rays join whenever half of the working set has ended, so that the few rays with very many hits
-    do not make the rest wait.
-    """
-    out = np.full_like(state, np.nan)
-    work, live, left = state[:, :0], np.arange(0), np.zeros(0)
-    waiting = 0
-
-    def advance(work, live, left, chord):
-        u, y, du, dy, dz = work
-        b = du + (u * du + y * dy) / radius
-        t = chord(b, 0.5 / radius, u, y, dy)
-        at, along = radius + u + du * t, dz * t
-        turned = np.arctan2(along, at)
-        ends = turned >= left
-        if ends.any():
-            out[:, live[ends]] = _cut(work[:, ends], radius, left[ends])
-        rho = np.hypot(at, along)
-        du, dz = (du * at + dz * along) / rho, dz * (radius + u) / rho
-        u, y = rho - radius, y + dy * t
-        size = np.hypot(u, y)
-        u, y = u / size, y / size
-        normal = du * u + dy * y
-        back = normal + np.maximum(normal, CREEP * limit)
-        stay = (normal <= limit) & ~ends
-        work, left = np.stack([u, y, du - back * u, dy - back * y, dz]), left - turned
-        return (work, live, left) if stay.all() else (work[:, stay], live[stay], left[stay])
-
-    while live.size or waiting < state.shape[1]:
-        if live.size < CHUNK // 2 and waiting < state.shape[1]:
-            fresh = np.arange(waiting, min(waiting + CHUNK - live.size, state.shape[1]))
-            waiting = fresh[-1] + 1
-            joined = advance(state[:, fresh], fresh, np.full(fresh.size, float(bend_rad)), _first_chord)
-            work, live, left = (np.concatenate(pair, axis=-1) for pair in zip((work, live, left), joined))
-        work, live, left = advance(work, live, left, _next_chord)
-    return out
-
-
-def _cut(state, radius, left):
-    """State where a chord crosses the plane that lies `left` radians further."""
-    u, y, du, dy, dz = state
-    c, s = np.cos(left), np.sin(left)
-    t = (radius + u) * s / (dz * c - du * s)
-    at, along = radius + u + du * t, dz * t
-    return np.stack([np.hypot(at, along) - radius, y + dy * t, du * c + dz * s, dy, dz * c - du * s])
-
-
 def through_bend(rays: Rays, *, radius_ratio: float, limit_sine: float, bend_rad: float) -> tuple[Rays, np.ndarray]:
-    """Rays behind a bend in the x direction, and which of those sent in they are.
+    """Rays at the end of a bend toward -x, and which of those sent in they are.
 
-    radius_ratio: axis radius over core radius, above 1; limit_sine = NA/n1. A ray that leaves the bend
-    in its last chord above the limit is lost where the straight fiber begins.
+    radius_ratio: axis radius over core radius, above 1; limit_sine = NA/n1. A ray that leaves the bend in
+    the chord after its last hit is kept even where a straight fiber would lose it: see `guided`.
     """
-    parts = [rays.x_ratio, rays.y_ratio, rays.x_sine, rays.y_sine]
-    if bend_rad == 0:
+    if bend_rad == 0 or not len(rays):
         return rays, np.ones(len(rays), bool)
+    parts = [rays.x_ratio, rays.y_ratio, rays.x_sine, rays.y_sine]
     state = np.stack([*parts, np.sqrt(np.maximum(1 - parts[2] ** 2 - parts[3] ** 2, 0.0))])
-    out = _through(state, radius_ratio, limit_sine, bend_rad)
+    out = through(state, radius_ratio, limit_sine, bend_rad)
     alive = ~np.isnan(out[0])
-    left = Rays(*out[:4, alive])
-    return left, alive
+    return Rays(*out[:4, alive]), alive
+
+
+def trace_bend(
+    *,
+    core_index: float,
+    clad_index: float,
+    core_um: float,
+    bend_radius_mm: float,
+    bend_deg: float,
+    launch_na: float,
+    rays: int,
+    seed: int,
+) -> BendTrace:
+    """One bend of radius bend_radius_mm (of the axis) through bend_deg, filled evenly up to launch_na.
+
+    transmission: of the light launched, what leaves the bend still in the core. Above the fiber's NA only
+    the skew rays that the straight fiber guides arrive at the bend.
+    Raises OutOfRange on an impossible fiber, bend or launch.
+    References: independent_trace has values of the same geometry by another program.
+    """
+    fiber = _Fiber.of(core_index, clad_index, core_um)
+    launch_sine = _launch_sine(launch_na, core_index)
+    random = np.random.default_rng(seed)
+    start = filled_rays(launch_sine=launch_sine, rays=_count(rays), random=random)
+    left, _ = through_bend(start.kept(guided(start, limit_sine=fiber.limit)), **fiber.bend(bend_radius_mm, bend_deg))
+    return _counted(left, rays, core_index)
+
+
+def trace_bends(
+    *,
+    core_index: float,
+    clad_index: float,
+    core_um: float,
+    bend_radius_mm: np.ndarray,
+    bend_deg: np.ndarray,
+    launch_na: float,
+    rays: int,
+    seed: int,
+) -> tuple[BendTrace, ...]:
+    """The light behind each of several separate bends: a random straight run and a random azimuth between them.
+
+    Transmissions are cumulative; what the straight run does not guide is lost there.
+    """
+    fiber = _Fiber.of(core_index, clad_index, core_um)
+    random = np.random.default_rng(seed)
+    now = filled_rays(launch_sine=_launch_sine(launch_na, core_index), rays=_count(rays), random=random)
+    found = []
+    for radius, angle in zip(*np.broadcast_arrays(np.atleast_1d(bend_radius_mm), np.atleast_1d(bend_deg))):
+        now = now.kept(guided(now, limit_sine=fiber.limit))
+        now, _ = through_bend(after_straight_run(now, random=random), **fiber.bend(float(radius), float(angle)))
+        found.append(_counted(now, rays, core_index))
+    return tuple(found)
+
+
+def trace_isotropic(
+    *,
+    core_index: float,
+    clad_index: float,
+    core_um: float,
+    bend_radius_mm: float,
+    bend_deg: float,
+    rays: int,
+    seed: int,
+) -> BendTrace:
+    """As trace_bend, for light that an isotropic source in the whole core leaves trapped, skew rays included.
+
+    transmission is of the light that the straight fiber traps. References: achenbach_cobb_2002.
+    """
+    fiber = _Fiber.of(core_index, clad_index, core_um)
+    start = isotropic_rays(limit_sine=fiber.limit, rays=_count(rays), random=np.random.default_rng(seed))
+    left, _ = through_bend(start, **fiber.bend(bend_radius_mm, bend_deg))
+    return _counted(left, rays, core_index)
+
+
+@dataclass(frozen=True, slots=True)
+class _Fiber:
+    limit: float
+    core_mm: float
+
+    @classmethod
+    def of(cls, core_index, clad_index, core_um):
+        positive(core_index=core_index, clad_index=clad_index, core_um=core_um)
+        require("clad_index", clad_index, "below the core index", clad_index < core_index)
+        return cls(float(np.sqrt(1 - (clad_index / core_index) ** 2)), mm_from_um(core_um))
+
+    def bend(self, bend_radius_mm, bend_deg):
+        not_negative(bend_deg=bend_deg)
+        require("bend_radius_mm", bend_radius_mm, "above half the core diameter", bend_radius_mm > self.core_mm / 2)
+        straight = not np.isfinite(bend_radius_mm)
+        return {
+            "radius_ratio": 2 * bend_radius_mm / self.core_mm,
+            "limit_sine": self.limit,
+            "bend_rad": 0.0 if straight else float(rad_from_deg(bend_deg)),
+        }
+
+
+def _launch_sine(launch_na, core_index):
+    positive(launch_na=launch_na)
+    require("launch_na", launch_na, "at most the core index", launch_na <= core_index)
+    return launch_na / core_index
+
+
+def _count(rays):
+    require("rays", rays, "1 or more", rays >= 1)
+    return int(rays)
+
+
+def _counted(left: Rays, rays: int, core_index: float) -> BendTrace:
+    """The share that is left; its standard error by the rule of succession, so that it is never 0."""
+    kept, exit_na = len(left), core_index * left.sine()
+    error = np.sqrt((kept + 1) * (rays - kept + 1) / (rays + 3)) / (rays + 2)
+    cone = float(np.quantile(exit_na, CONE_SHARE)) if kept else 0.0
+    return BendTrace(kept / rays, float(error), cone, exit_na)

@@ -103,7 +103,7 @@ def outside_number(*, v_number: Numbers, azimuthal: int, radial: int) -> np.ndar
     Raises OutOfRange at or below cutoff. References: gloge_1971.
 
     >>> round(float(outside_number(v_number=3.8714, azimuthal=0, radial=1)), 3)
-    3.378
+    3.377
     """
     cutoff, top = _zeros(azimuthal, radial)
     require("v_number", v_number, f"above the cutoff {cutoff:g}", np.asarray(v_number) > cutoff)

@@ -27,16 +27,16 @@ def fresnel_reflectance(*, index_from: Numbers, index_to: Numbers, sine: Numbers
     return 1.0 - _transmission(index_from, index_to, cosine, np.sqrt(np.maximum(1.0 - refracted**2, 0.0)))
 
 
-def face_transmission_at(*, core_index: Numbers, outside_index: Numbers, na_of_ray: Numbers) -> Numbers:
+def face_transmission_at(*, core_index: Numbers, outside_index: Numbers, ray_na: Numbers) -> Numbers:
     """What one face lets through of a ray of numerical aperture n sin(theta), either way.
 
-    0 for a ray that the thinner side cannot take (total reflection). `na_of_ray` from 0 to the core index.
+    0 for a ray that the thinner side cannot take (total reflection). `ray_na` from 0 to the core index.
     """
     positive(core_index=core_index, outside_index=outside_index)
-    not_negative(na_of_ray=na_of_ray)
-    require("na_of_ray", na_of_ray, "core_index at most", np.asarray(na_of_ray) <= core_index)
-    inside = np.sqrt(np.maximum(1.0 - np.square(np.asarray(na_of_ray) / core_index), 0.0))
-    outside = np.sqrt(np.maximum(1.0 - np.square(np.asarray(na_of_ray) / outside_index), 0.0))
+    not_negative(ray_na=ray_na)
+    require("ray_na", ray_na, "core_index at most", np.asarray(ray_na) <= core_index)
+    inside = np.sqrt(np.maximum(1.0 - np.square(np.asarray(ray_na) / core_index), 0.0))
+    outside = np.sqrt(np.maximum(1.0 - np.square(np.asarray(ray_na) / outside_index), 0.0))
     return _transmission(core_index, outside_index, inside, outside)
 
 

@@ -103,6 +103,7 @@ REASONS: dict[str, Callable[[Fiberscope, Mapping[str, float]], str]] = {
     "exit face": lambda scope, value: (
         f"reflection where the guide ends; the light leaves within NA {value['exit_na']:.3g}"
     ),
+    "spreading": lambda scope, value: f"the cover spreads each ray by NA {scope.scene.cover.spread_na:.3g}",
     "cover": lambda scope, value: "two more faces of the cover",
 }
 

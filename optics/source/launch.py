@@ -13,7 +13,7 @@ import numpy as np
 from optics.circles import overlap_area
 from optics.source.lamp import etendue_mm2_sr
 from optics.spec import Spec, positive, quantity
-from optics.units import Numbers
+from optics.units import Flags, Numbers
 
 
 class Butt(Spec):
@@ -81,7 +81,7 @@ def matched_fraction(*, lamp_etendue_mm2_sr: Numbers, bundle_etendue_mm2_sr: Num
     return np.minimum(1.0, np.asarray(bundle_etendue_mm2_sr) / lamp_etendue_mm2_sr)
 
 
-def disc_share(*, spot_mm: Numbers, face_mm: Numbers, gaussian: Numbers) -> Numbers:
+def disc_share(*, spot_mm: Numbers, face_mm: Numbers, gaussian: Flags) -> Numbers:
     """Share of a centered spot that falls on a face: (D/d)^2 for a top hat, 1 - exp(-2 D^2/d^2) for a gaussian.
 
     >>> float(disc_share(spot_mm=2.0, face_mm=1.0, gaussian=False))
@@ -140,7 +140,7 @@ def rated_flux_share(
 
 
 def spot_radiance_ratio(
-    *, transmission: Numbers, lamp_etendue_mm2_sr: Numbers, spot_mm: Numbers, cone_na: Numbers, gaussian: Numbers
+    *, transmission: Numbers, lamp_etendue_mm2_sr: Numbers, spot_mm: Numbers, cone_na: Numbers, gaussian: Flags
 ) -> Numbers:
     """Peak radiance of a condensed spot over the lamp's own; above 1 the second law forbids it.
 
@@ -152,3 +152,25 @@ def spot_radiance_ratio(
     """
     peak = np.where(gaussian, 2.0, 1.0)
     return peak * transmission * lamp_etendue_mm2_sr / etendue_mm2_sr(diameter_mm=spot_mm, na=cone_na)
+
+
+# Rules across tables, asked of scalars and of arrays: no launch may be brighter than its lamp
+
+
+def spot_allowed(spot_mm, spot_na, emitter_mm, lamp_na, transmission, profile) -> Flags:
+    """Whether a condensed spot is at most as bright as its lamp."""
+    ratio = spot_radiance_ratio(
+        transmission=transmission,
+        lamp_etendue_mm2_sr=etendue_mm2_sr(diameter_mm=emitter_mm, na=lamp_na),
+        spot_mm=spot_mm,
+        cone_na=spot_na,
+        gaussian=np.asarray(profile) == "gaussian",
+    )
+    return ratio <= 1 + 1e-9
+
+
+def rating_allowed(rated_lm, flux_lm, emitter_mm, lamp_na, reference_mm, reference_na) -> Flags:
+    """Whether a rating is at most what the lamp's radiance puts into the reference guide."""
+    lamp = etendue_mm2_sr(diameter_mm=emitter_mm, na=lamp_na)
+    guide = etendue_mm2_sr(diameter_mm=reference_mm, na=reference_na)
+    return rated_lm <= flux_lm * np.minimum(1.0, guide / lamp) * (1 + 1e-9)

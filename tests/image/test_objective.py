@@ -89,7 +89,9 @@ def test_a_worked_light_budget_of_the_way_back():
 
 
 def test_apparent_distance_in_a_medium():
-    assert lens.apparent_distance_mm(distance_mm=13.333, pupil_depth_mm=0.5, index=1.3333) == pytest.approx(10.5, abs=1e-3)
+    assert lens.apparent_distance_mm(distance_mm=13.333, pupil_depth_mm=0.5, index=1.3333) == pytest.approx(
+        10.5, abs=1e-3
+    )
     assert lens.apparent_distance_mm(distance_mm=7.0, pupil_depth_mm=0.5, index=1.0) == 7.5
 
 
@@ -107,8 +109,14 @@ def test_one_design_equals_its_place_among_many():
     [
         (lambda: lens.magnification(focal_mm=2.0, focus_mm=2.0), "focus_mm is 2; it must be beyond the focal length"),
         (lambda: lens.image_distance_mm(focal_mm=-1.0, focus_mm=2.0), "focal_mm is -1; it must be above 0"),
-        (lambda: lens.accepted_fraction(core_na=0.4, cone_sine=1.2, tilt_sine=0.0), "cone_sine is 1.2; it must be 1 or"),
-        (lambda: lens.accepted_fraction(core_na=0.4, cone_sine=0.2, tilt_sine=-0.1), "tilt_sine is -0.1; it must be from"),
+        (
+            lambda: lens.accepted_fraction(core_na=0.4, cone_sine=1.2, tilt_sine=0.0),
+            "cone_sine is 1.2; it must be 1 or",
+        ),
+        (
+            lambda: lens.accepted_fraction(core_na=0.4, cone_sine=0.2, tilt_sine=-0.1),
+            "tilt_sine is -0.1; it must be from",
+        ),
         (
             lambda: lens.working_f_number(focal_mm=1.0, f_number=4.0, magnification=0.5, exit_pupil_mm=0.4),
             "exit_pupil_mm is 0.4",

@@ -10,7 +10,8 @@ def test_the_focal_length_in_place_of_the_image_distance_is_off_by_5_and_25_perc
     for focus, excess in ((20.0, 0.05), (5.0, 0.25)):
         v = image_distance_mm(focal_mm=1.0, focus_mm=focus)
         right, wrong = (
-            np.tan(np.deg2rad(field.field_half_angle_deg(image_mm=0.1, image_distance_mm=d, mapping="tan"))) for d in (v, 1.0)
+            np.tan(np.deg2rad(field.field_half_angle_deg(image_mm=0.1, image_distance_mm=d, mapping="tan")))
+            for d in (v, 1.0)
         )
         assert wrong / right - 1 == pytest.approx(excess, abs=0.003)
 
@@ -38,7 +39,8 @@ def test_the_radius_on_the_target_is_that_of_the_traced_edge_ray():
 def test_two_planes_find_the_field_wherever_the_pupil_lies_and_the_window_method_overstates_it():
     for depth in (0.0, 0.5, 2.0):
         near, far = (
-            field.field_radius_mm(half_angle_deg=42.0, distance_mm=d, pupil_depth_mm=depth, index=1.0) for d in (8.0, 20.0)
+            field.field_radius_mm(half_angle_deg=42.0, distance_mm=d, pupil_depth_mm=depth, index=1.0)
+            for d in (8.0, 20.0)
         )
         planes = field.field_from_planes_deg(near_radius_mm=near, far_radius_mm=far, near_mm=8.0, far_mm=20.0)
         assert planes == pytest.approx(84.0, rel=1e-12)
@@ -72,7 +74,9 @@ def test_a_barrel_fitted_in_air_shrinks_under_water_as_measured():
 
 
 def test_f_theta_holds_90_degrees_and_refuses_more():
-    assert field.field_half_angle_deg(image_mm=np.pi / 2, image_distance_mm=1.0, mapping="f_theta") == pytest.approx(45.0)
+    assert field.field_half_angle_deg(image_mm=np.pi / 2, image_distance_mm=1.0, mapping="f_theta") == pytest.approx(
+        45.0
+    )
     with pytest.raises(OutOfRange, match="image_mm is 4; it must be below pi times"):
         field.field_half_angle_deg(image_mm=4.0, image_distance_mm=1.0, mapping="f_theta")
     with pytest.raises(OutOfRange, match="half_angle_deg is 90; it must be below 90"):

@@ -37,7 +37,7 @@ def test_normal_and_brewster_and_grazing():
 
 @pytest.mark.parametrize("na", [0.0, 0.2, 0.7, 0.99])
 def test_a_face_is_the_same_both_ways(na):
-    there = face_transmission_at(core_index=1.62, outside_index=1.0, na_of_ray=na)
+    there = face_transmission_at(core_index=1.62, outside_index=1.0, ray_na=na)
     back = fresnel_reflectance(index_from=1.0, index_to=1.62, sine=na)
     assert there == pytest.approx(1 - back, rel=1e-13)
     assert there == pytest.approx(1 - fresnel_reflectance(index_from=1.62, index_to=1.0, sine=na / 1.62), rel=1e-13)
@@ -64,7 +64,7 @@ def test_two_faces_of_a_guide_in_air(core_index, na, two):
 )
 def test_cone_mean_against_adaptive_integration(core, outside, na):
     def passed(square):
-        return float(face_transmission_at(core_index=core, outside_index=outside, na_of_ray=np.sqrt(square)))
+        return float(face_transmission_at(core_index=core, outside_index=outside, ray_na=np.sqrt(square)))
 
     mean = quad(passed, 0.0, na**2, epsabs=1e-12, epsrel=1e-12, limit=400)[0] / na**2
     assert face_transmission(core_index=core, outside_index=outside, na=na) == pytest.approx(mean, abs=1e-9)
@@ -90,10 +90,10 @@ def test_scalar_equals_array_element():
 def test_total_reflection_and_other_refusals():
     with pytest.raises(OutOfRange, match=r"na is 1\.2; it must be at most the lower index of the face"):
         face_transmission(core_index=1.8, outside_index=1.0, na=1.2)
-    assert face_transmission_at(core_index=1.8, outside_index=1.0, na_of_ray=1.2) == 0.0
-    assert face_transmission_at(core_index=1.8, outside_index=1.0, na_of_ray=1.0) == 0.0
-    with pytest.raises(OutOfRange, match=r"na_of_ray is 1\.9; it must be core_index at most"):
-        face_transmission_at(core_index=1.8, outside_index=1.0, na_of_ray=1.9)
+    assert face_transmission_at(core_index=1.8, outside_index=1.0, ray_na=1.2) == 0.0
+    assert face_transmission_at(core_index=1.8, outside_index=1.0, ray_na=1.0) == 0.0
+    with pytest.raises(OutOfRange, match=r"ray_na is 1\.9; it must be core_index at most"):
+        face_transmission_at(core_index=1.8, outside_index=1.0, ray_na=1.9)
     with pytest.raises(OutOfRange, match=r"sine is 1\.1; it must be from 0 to 1"):
         fresnel_reflectance(index_from=1.0, index_to=1.5, sine=1.1)
     with pytest.raises(OutOfRange, match="core_index is 0; it must be above 0"):

@@ -1,0 +1,95 @@
+"""Bends as matrices on angle bins: a row of separate bends, with the memory of skewness between them.
+
+The step that a bend makes in zeta has, for each level s and each pair of skewness moments, a density that
+is a polynomial on [-1, 1] (in units of the longest step). Light enters evenly over a bin, so the share
+that lands in another bin is a second difference of the twice-integrated density over the four edges: no
+bin is ever narrower or wider than it says, and a bend of no strength is the unit matrix exactly.
+"""
+
+import numpy as np
+
+from optics.guide import bend_kernel as table
+
+_GAUSS = np.array([0.5 - np.sqrt(1 / 12), 0.5 + np.sqrt(1 / 12)])
+
+
+def bend_row(edges, x, share, columns):
+    """Matrix [design, bin in, bin out] of a row of bends that all act: columns(k) gives the table's part for bend k.
+
+    edges [design, bin + 1] in s; x [design, k]; share [design].
+    """
+    count = x.shape[1]
+    state = None
+    for k in range(count):
+        kind = "only" if count == 1 else "first" if k == 0 else "last" if k == count - 1 else "middle"
+        one = _one_bend(edges, x[:, k], share, *columns(k), kind)
+        state = one[:, :, 0] if k == 0 else _followed(state, one)
+    return _not_below_zero(state[:, :, 0])
+
+
+def _one_bend(edges, x, share, survival, bent, scores, kind):
+    """[design, bin in, moment in, moment out, bin out] of one bend."""
+    designs, bins = len(edges), edges.shape[1] - 1
+    vectors = table.kernel().vectors[kind]
+    rank, levels, pairs, powers = vectors.shape
+    spread = (scores[:, None, :] @ vectors.reshape(rank, -1)).reshape(designs, levels, pairs * powers)
+    s = edges[:, :-1, None] + np.diff(edges)[:, :, None] * _GAUSS
+    x, share = x[:, None], share[:, None]
+    keeps = table.at_level(survival, table.level(s, x[..., None], share[..., None], table.FINE)) / 2
+    at = table.level(s, x[..., None], share[..., None], table.COARSE)
+    weight = keeps[..., None] * np.maximum(1 - np.abs(at[..., None] - np.arange(levels)), 0.0)
+    weight = weight[:, :, 0] + weight[:, :, 1]
+    kept = (weight @ spread).reshape(designs, bins, pairs, powers)
+    scaled = table.zeta(edges, x, share) / table.span(x, share)
+    one = kept @ _landings(scaled, powers) / np.diff(scaled)[:, :, None, None]
+    into, out = (len(range(table.MOMENTS)[part]) for part in table.PAIRS[kind])
+    one = one.reshape(designs, bins, into, out, bins)
+    partly = bent < 1
+    if partly.any():
+        stays = np.zeros((bins, into, out, bins))
+        stays[np.arange(bins), :, :, np.arange(bins)] = np.eye(into, out)
+        stay = (1 - bent[partly])[:, None, None, None, None] * keeps[partly].sum(-1)[:, :, None, None, None] * stays
+        one[partly] = bent[partly][:, None, None, None, None] * one[partly] + stay
+    return one
+
+
+def _landings(scaled, powers):
+    """Second differences [design, bin in, power, bin out] of t^p, t the step between edges held in [-1, 1].
+
+    Light that would land below the first edge counts into the first bin, above the last into the last.
+    """
+    designs, edges = scaled.shape
+    step = scaled[:, None, :] - scaled[:, :, None]
+    held = np.clip(step, -1.0, 1.0)
+    held[:, :, 0], held[:, :, -1] = -1.0, 1.0
+    out = np.empty((designs, edges - 1, powers, edges - 1))
+    power = held
+    for p in range(powers - 1):
+        if p:
+            power = power * held
+        out[:, :, p] = _second_difference(power)
+    beyond = np.maximum(step - 1.0, 0.0)
+    beyond[:, :, 0] = 0.0
+    # the last edge stands for infinity: there the straight line is (edge - start), of which starts differ
+    beyond[:, :, -1] = scaled[:, -1:] - scaled
+    out[:, :, -1] = _second_difference(beyond)
+    return out
+
+
+def _second_difference(values):
+    along = values[:, :, 1:] - values[:, :, :-1]
+    return along[:, :-1] - along[:, 1:]
+
+
+def _followed(state, one):
+    """State [design, bin in, moment, bin] carried through the next bend."""
+    designs, bins, into, out, _ = one.shape
+    through = np.ascontiguousarray(one.transpose(0, 2, 1, 3, 4)).reshape(designs, into * bins, out * bins)
+    return (state.reshape(designs, bins, into * bins) @ through).reshape(designs, bins, out, bins)
+
+
+def _not_below_zero(matrix):
+    """The polynomial densities dip below 0 by up to about 0.01 of a row; the row's sum is kept."""
+    kept = np.maximum(matrix, 0.0)
+    total = matrix.sum(axis=-1, keepdims=True)
+    return kept * (np.maximum(total, 0.0) / np.maximum(kept.sum(axis=-1, keepdims=True), 1e-300))
