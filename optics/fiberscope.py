@@ -202,6 +202,12 @@ RULES = (
         lambda bundle, fiber_um: um_from_mm(bundle) >= fiber_um,
         "the bundle must hold at least one fiber",
     ),
+    Rule(
+        ("guide.bundle.diameter_mm", "scene.ports.ports.diameter_mm", "guide.bundle.packing_fraction"),
+        lambda bundle, ports, packing: np.nansum(np.square(ports), axis=-1) >= bundle**2 * packing * (1 - 1e-9),
+        "the placed ports together must have room for the guide's fibers",
+        shown=1,
+    ),
     Rule(("image.bundle.core_um", "image.bundle.pitch_um"), np.less, "the core must be narrower than the pitch"),
     Rule(("image.bundle.na", "image.bundle.core_index"), np.less, "the NA must be below the core index"),
     Rule(
@@ -278,7 +284,7 @@ FORMS: dict[str, dict[str, tuple[type[Spec], dict[str, Any]]]] = {
         "round": (RoundPorts, {"count": 2}),
         "annulus": (AnnulusPorts, {}),
         "crescent": (CrescentPorts, {}),
-        "placed": (PlacedPorts, {"ports": [{"x_mm": 1.5, "y_mm": 0.0, "diameter_mm": 1.0}]}),
+        "placed": (PlacedPorts, {"ports": [{"x_mm": side * 1.8, "y_mm": 0.0, "diameter_mm": 1.5} for side in (1, -1)]}),
     },
     "scene.target": {
         "plane": (Target, {}),

@@ -12,15 +12,16 @@ import numpy as np
 from optics.fiberscope import Fiberscope, leaves
 from optics.spec import Curve
 from optics.spectrum import GRID_NM, covered, on_grid
+from optics.units import AnyUnit, Flags
 
 
 @dataclass(frozen=True, slots=True)
 class Curves:
     """The distinct curves of one path on the wavelength grid, and which of them each design has (-1: none)."""
 
-    on_grid: np.ndarray  # [curve, wavelength]
-    covered: np.ndarray  # [curve, wavelength] inside the curve's own range
-    row: np.ndarray  # [design]
+    on_grid: AnyUnit  # [curve, wavelength]
+    covered: Flags  # [curve, wavelength] inside the curve's own range
+    row: AnyUnit  # [design]
 
 
 @dataclass(frozen=True, slots=True)

@@ -10,7 +10,7 @@ from optics.chain.columns import Columns
 from optics.chain.target import Lit
 from optics.chain.way_back import WORST_DEG, Parts, way_back
 from optics.image.contrast import aberration_mtf, cutoff_lp_mm, diffraction_mtf, disc_mtf, pixel_mtf, veil_contrast
-from optics.image.crosstalk import exchange_mtf
+from optics.image.coupled import ring_mtf
 from optics.image.objective import magnification
 from optics.units import lp_mm_from_per_um, mm_from_um, per_um_from_lp_mm, um_from_mm
 from optics.viewer.detail import LINE_PITCHES, PARTS, largest_passing, line_seen_um, needed_contrast, smallest_line_um
@@ -98,8 +98,8 @@ def _factors(parts: Parts, frequency: np.ndarray) -> dict[str, np.ndarray]:
             wavelength_nm=parts.color_nm,
             frequency_lp_mm=frequency[..., None],
         )
-    mixed = exchange_mtf(
-        neighbor_share=parts.exchange,
+    mixed = ring_mtf(
+        shares=parts.exchange_share,
         frequency_per_um=per_um_from_lp_mm(frequency),
         pitch_um=parts.pitch_um,
         direction_deg=WORST_DEG,
@@ -109,7 +109,7 @@ def _factors(parts: Parts, frequency: np.ndarray) -> dict[str, np.ndarray]:
         "focus": disc_mtf(diameter_um=parts.blur_um, frequency_lp_mm=frequency),
         # a core averages where it collects, and its disc is what the viewer sees
         "lattice": np.where(parts.bundle, disc_mtf(diameter_um=parts.core_um, frequency_lp_mm=frequency) ** 2, 1.0),
-        "crosstalk": np.where(parts.bundle, mixed * veil_contrast(veil_ratio=parts.veil), 1.0),
+        "crosstalk": np.where(parts.bundle, mixed * veil_contrast(veil_ratio=parts.veil_ratio), 1.0),
         "camera": pixel_mtf(pixel_um=parts.pixel_um, frequency_lp_mm=frequency),
     }
 

@@ -92,7 +92,7 @@ def _ports(columns: Columns, core_mm: np.ndarray):
             2,
         )
     )
-    x, y, radius = (np.zeros((columns.count, most)) for _ in range(3))
+    x, y, radius, tilt, azimuth = (np.zeros((columns.count, most)) for _ in range(5))
     head, light = core_mm.copy(), np.zeros((columns.count, most))
     for form, rows in columns.split("scene.ports.form"):
         if form == "round":
@@ -104,6 +104,7 @@ def _ports(columns: Columns, core_mm: np.ndarray):
             x[rows] = np.where(here, offset * np.cos(turn), 0.0)
             y[rows] = np.where(here, offset * np.sin(turn), 0.0)
             light[rows] = 2 * radius[rows]
+            tilt[rows] = np.where(here, columns.get("scene.ports.tilt_deg", 0.0)[rows, None], 0.0)
         elif form in ("annulus", "crescent"):
             inner = np.where(
                 np.isnan(columns["scene.ports.inner_mm"][rows]), core_mm[rows], columns["scene.ports.inner_mm"][rows]
@@ -126,24 +127,26 @@ def _ports(columns: Columns, core_mm: np.ndarray):
                 given["y_mm"],
                 given["diameter_mm"] / 2,
             )
+            tilt[rows, :width], azimuth[rows, :width] = (
+                columns.items(f"scene.ports.ports.{key}", 0.0)[rows] for key in ("tilt_deg", "azimuth_deg")
+            )
             reach = 2 * (np.hypot(given["x_mm"], given["y_mm"]) + given["diameter_mm"] / 2).max(axis=1)
             head[rows] = np.maximum(head[rows], reach)
         else:  # no scene: the guide itself is the only light part
             light[rows, 0] = area_mm[rows]
             radius[rows, 0] = area_mm[rows] / 2
-    return (x, y, radius), head, light
+    return (x, y, radius, tilt, azimuth), head, light
 
 
 def _placed(columns: Columns, ports, centers_mm: np.ndarray, count: int) -> dict[str, np.ndarray]:
     """Ports around the objective's axis; round ones without an offset of their own come from the layout."""
-    x, y, radius = ports
+    x, y, radius, tilt, azimuth = ports
     free = np.isnan(x)
     from_axis = centers_mm[:, 1 : 1 + count] - centers_mm[:, :1]
-    return {
-        "x_mm": np.where(free, from_axis[..., 0], x),
-        "y_mm": np.where(free, from_axis[..., 1], y),
-        "radius_mm": radius,
-    }
+    x, y = np.where(free, from_axis[..., 0], x), np.where(free, from_axis[..., 1], y)
+    outward = (columns.texts("scene.ports.form") == "round")[:, None]
+    azimuth = np.where(outward, np.degrees(np.arctan2(y, x)), azimuth)
+    return {"x_mm": x, "y_mm": y, "radius_mm": radius, "tilt_deg": tilt, "azimuth_deg": azimuth}
 
 
 def _wires(columns: Columns) -> tuple[np.ndarray, np.ndarray]:

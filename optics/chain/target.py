@@ -10,7 +10,9 @@ from optics.image.chip import diagonal_mm
 from optics.image.field import field_half_angle_deg, field_radius_mm
 from optics.image.objective import apparent_distance_mm, image_distance_mm
 from optics.image.tip import reduced_path_mm
-from optics.scene.field import field_irradiance
+from optics.scene.field import Lighting, field_irradiance
+from optics.scene.ports import Annulus, Crescent, Disc, Port
+from optics.scene.surface import bore_field, plane_field, seen_wall_mm
 from optics.spectrum import GRID_NM, integral, luminous_flux_lm
 from optics.units import deg_from_rad, m2_from_mm2
 
@@ -78,7 +80,6 @@ def image_size_mm(columns: Columns) -> np.ndarray:
 
 def target(columns: Columns, lit: Light, ports: dict[str, np.ndarray], seen: dict[str, np.ndarray]) -> Lit:
     """Illuminance over the field of view of every design that has a target."""
-    wavelengths = lit.beam.power_w_nm.shape[-1]
     names = (
         "center_lux",
         "mean_lux",
@@ -90,35 +91,88 @@ def target(columns: Columns, lit: Light, ports: dict[str, np.ndarray], seen: dic
         "uva_w_m2",
     )
     value = {name: np.full(columns.count, np.nan) for name in names}
-    center = np.zeros((columns.count, wavelengths))
-    rows = np.flatnonzero(columns.has("scene.target.distance_mm"))
-    if rows.size == 0:
-        return Lit(center, value)
-    medium = medium_index(columns)[rows]
-    edges = np.minimum(lit.beam.sine2_edges[rows] / medium[:, None] ** 2, 1.0)
-    field = np.where(np.isnan(seen["field_radius_mm"][rows]), 1.0, seen["field_radius_mm"][rows])
-    light = field_irradiance(
-        port_x_mm=ports["x_mm"][rows],
-        port_y_mm=ports["y_mm"][rows],
-        port_radius_mm=ports["radius_mm"][rows],
-        sine2_edges=edges,
-        distance_mm=columns["scene.target.distance_mm"][rows],
-        field_radius_mm=field,
-    )
-    lumens = luminous_flux_lm(lit.beam.power_w_nm[rows])
-    over = light.under(lumens)
-    center[rows] = np.einsum("db,dbw->dw", light.center_per_mm2, lit.beam.power_w_nm[rows]) / m2_from_mm2(1.0)
-    has_field = ~np.isnan(seen["field_radius_mm"][rows])
-    value["center_lux"][rows] = over.center_lux
-    for name, found in (
-        ("mean_lux", over.mean_lux),
-        ("min_lux", over.least_lux),
-        ("evenness", over.evenness),
-        ("unlit_fraction", over.unlit_share),
-    ):
-        value[name][rows] = np.where(has_field, found, np.nan)
-    value["first_lit_mm"][rows] = over.first_lit_mm
-    value["center_w_m2"][rows] = integral(center[rows])
-    uva = (UVA_NM[0] <= GRID_NM) & (UVA_NM[1] >= GRID_NM)
-    value["uva_w_m2"][rows] = integral(np.where(uva, center[rows], 0.0))
+    center = np.zeros((columns.count, lit.beam.power_w_nm.shape[-1]))
+    there = columns.has("scene.target.distance_mm")
+    slow = there & _needs_surface(columns, ports)
+    for rows, lighting in ((np.flatnonzero(there & ~slow), _facing), (np.flatnonzero(slow), _surface)):
+        if rows.size == 0:
+            continue
+        power = lit.beam.power_w_nm[rows]
+        edges = np.minimum(lit.beam.sine2_edges[rows] / medium_index(columns)[rows, None] ** 2, 1.0)
+        radius = seen["field_radius_mm"][rows]
+        field = np.where(np.isnan(radius), 1.0, radius)  # a guide without an image: only the center counts
+        per_mm2, over = lighting(
+            columns.take(rows),
+            {name: found[rows] for name, found in ports.items()},
+            edges,
+            luminous_flux_lm(power),
+            field,
+        )
+        center[rows] = np.einsum("db,dbw->dw", per_mm2, power) / m2_from_mm2(1.0)
+        value["center_lux"][rows], value["first_lit_mm"][rows] = over.center_lux, over.first_lit_mm
+        over_field = {"mean_lux": over.mean_lux, "min_lux": over.least_lux, "evenness": over.evenness}
+        for name, found in {**over_field, "unlit_fraction": over.unlit_share}.items():
+            value[name][rows] = np.where(np.isnan(radius), np.nan, found)
+        value["center_w_m2"][rows] = integral(center[rows])
+        value["uva_w_m2"][rows] = integral(center[rows] * ((UVA_NM[0] <= GRID_NM) & (UVA_NM[1] >= GRID_NM)))
     return Lit(center, value)
+
+
+def _needs_surface(columns: Columns, ports: dict[str, np.ndarray]) -> np.ndarray:
+    """Designs whose target does not face all ports: a tilted plane, a bore, tilted ports."""
+    tilted = (ports["tilt_deg"] != 0).any(axis=1)
+    return tilted | (columns.texts("scene.target.form") == "bore") | (columns.get("scene.target.tilt_deg", 0.0) != 0)
+
+
+def _facing(columns, ports, edges, lumens, field_mm):
+    """A plane that faces the ports: all designs at once. Returns the center per unit flux [design, bin] and the field."""
+    light = field_irradiance(
+        port_x_mm=ports["x_mm"],
+        port_y_mm=ports["y_mm"],
+        port_radius_mm=ports["radius_mm"],
+        sine2_edges=edges,
+        distance_mm=columns["scene.target.distance_mm"],
+        field_radius_mm=field_mm,
+    )
+    return light.center_per_mm2, light.under(lumens)
+
+
+def _surface(columns, ports, edges, lumens, field_mm):
+    """A tilted plane or a bore wall, or tilted ports: design by design."""
+    per_mm2, found = np.zeros_like(lumens), {name: np.zeros(columns.count) for name in Lighting.__slots__}
+    distance, depth = columns["scene.target.distance_mm"], pupil_depth_mm(columns)
+    for form, rows in columns.split("scene.target.form"):
+        common = {
+            "ports": [port_objects({name: all_of[row] for name, all_of in ports.items()}) for row in rows],
+            "sine2_edges": edges[rows],
+            "flux_lm": lumens[rows],
+            "distance_mm": distance[rows],
+        }
+        if form == "bore":
+            bore = columns["scene.target.bore_mm"][rows]
+            start, end = seen_wall_mm(
+                bore_mm=bore,
+                field_radius_mm=field_mm[rows],
+                distance_mm=distance[rows],
+                pupil_depth_mm=depth[rows],
+                near_mm=columns.get("scene.target.near_mm", 0.0)[rows],
+                far_mm=np.where(columns.has("scene.target.far_mm"), columns["scene.target.far_mm"], 2 * distance)[rows],
+            )
+            light = bore_field(**common, bore_mm=bore, from_mm=start, to_mm=end)
+        else:
+            tilt = columns.get("scene.target.tilt_deg", 0.0)[rows]
+            light = plane_field(**common, tilt_deg=tilt, field_radius_mm=field_mm[rows], pupil_depth_mm=depth[rows])
+        per_mm2[rows] = light.center_per_mm2
+        for name in found:
+            found[name][rows] = getattr(light.lighting, name)
+    return per_mm2, Lighting(**found)
+
+
+def port_objects(ports: dict[str, np.ndarray]) -> tuple[Port, ...]:
+    """The ports of one design as geometry: round ones, or the ring or crescent that a cut makes of the first."""
+    x, radius = ports["x_mm"], ports["radius_mm"]
+    if radius[1] < 0:
+        inner, outer = float(-radius[1]), float(radius[0])
+        return (Crescent(float(x[0]), inner, outer) if x[0] != 0 else Annulus(inner, outer),)
+    keys = ("x_mm", "y_mm", "radius_mm", "tilt_deg", "azimuth_deg")
+    return tuple(Disc(*(float(ports[key][port]) for key in keys)) for port in np.flatnonzero(radius > 0))

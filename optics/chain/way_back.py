@@ -12,14 +12,7 @@ from optics.chain.light import medium_index
 from optics.chain.target import pupil_depth_mm
 from optics.image.bundle import exit_luminance_cd_m2
 from optics.image.chip import sampling_um
-try:  # TEMPORARY until it lands
-    from optics.image.crosstalk import neighbor_share
-except ImportError:
-
-    def neighbor_share(**k):
-        return np.zeros(np.broadcast_shapes(*(np.shape(v) for v in k.values())))
-
-
+from optics.image.coupled import ring_shares, rings
 from optics.image.lattice import resolution_limit_lp_mm, square_limit_lp_mm
 from optics.image.objective import (
     accepted_fraction,
@@ -32,7 +25,7 @@ from optics.image.objective import (
 from optics.media.face import face_transmission
 from optics.media.loss import attenuation_transmission
 from optics.spectrum import GRID_NM, effective_wavelengths, integral, luminous_flux_lm, photons_per_j, photopic_weight
-from optics.units import m2_from_mm2, mm2_from_um2, mm_from_um
+from optics.units import Flags, m2_from_mm2, mm2_from_um2, mm_from_um
 from optics.viewer.camera import cell_signal_to_noise, exposure_s, relay_fraction
 from optics.viewer.eye import apparent_field_deg, pupil_diameter_mm, seen_luminance_cd_m2
 
@@ -45,8 +38,8 @@ UNQUANTIZED_DN_E = 1e9  # a camera without rounding
 class Parts:
     """What the contrast factors need, each [design] (colors [design, color]); 0 or nan where a part is absent."""
 
-    bundle: np.ndarray  # whether the image goes through a bundle
-    eye: np.ndarray  # whether an eye looks
+    bundle: Flags  # whether the image goes through a bundle
+    eye: Flags  # whether an eye looks
     f_number: np.ndarray
     color_nm: np.ndarray
     color_share: np.ndarray
@@ -55,9 +48,9 @@ class Parts:
     core_um: np.ndarray
     pitch_um: np.ndarray
     cell_um2: np.ndarray
-    exchange: np.ndarray
+    exchange_share: np.ndarray  # [design, ring]
     pixel_um: np.ndarray  # at the image, 0 where none
-    veil: np.ndarray
+    veil_ratio: np.ndarray
     lattice_limit_lp_mm: np.ndarray
     contrast: np.ndarray
     snr: np.ndarray
@@ -103,7 +96,7 @@ def way_back(columns, target_w_m2_nm, seen, size):
     apparent = apparent_distance_mm(distance_mm=columns["scene.target.distance_mm"], pupil_depth_mm=depth, index=index)
     blur = defocus_blur_um(focal_mm=focal, f_number=stop, focus_mm=seen["focus_from_pupil_mm"], distance_mm=apparent)
     depth_of = depth_of_field_mm(focal_mm=focal, f_number=stop, blur_um=pitch, focus_mm=seen["focus_from_pupil_mm"])
-    exchange = _exchange(columns, bundle, color, share)
+    exchange = _exchange(columns, bundle, color, share, cone)
     limit = np.where(
         bundle,
         resolution_limit_lp_mm(pitch_um=pitch, direction_deg=WORST_DEG),
@@ -220,16 +213,19 @@ def _response(columns: Columns) -> np.ndarray:
     return np.where(curves.row[:, None] >= 0, columns.spectrum("viewer.camera.response"), 1.0)
 
 
-def _exchange(columns, bundle, color_nm, color_share):
-    """Share of light that a core gives to each of its neighbors, weighted over the viewer's colors [design]."""
-    found = np.zeros(columns.count)
+def _exchange(
+    columns: Columns, bundle: np.ndarray, color_nm: np.ndarray, color_share: np.ndarray, cone: np.ndarray
+) -> np.ndarray:
+    """Share of a core's light that ends in one core of each ring around it, over the viewer's colors [design, ring]."""
+    names = ("core_um", "pitch_um", "na", "core_index", "core_spread_fraction", "length_m")
     rows = np.flatnonzero(bundle)
-    if rows.size:
-        column = {
-            name: columns[f"image.bundle.{name}"][rows, None]
-            for name in ("core_um", "pitch_um", "na", "core_index", "core_spread_fraction", "length_m")
-        }
-        found[rows] = (neighbor_share(**column, wavelength_nm=color_nm[rows]) * color_share[rows]).sum(axis=1)
+    found = np.zeros((columns.count, len(rings())))
+    found[:, 0] = 1.0
+    if rows.size == 0:
+        return found
+    taken = {name: columns[f"image.bundle.{name}"][rows, None] for name in names}
+    shares = ring_shares(**taken, wavelength_nm=color_nm[rows], cone_sine=np.minimum(cone[rows, None], 1.0))
+    found[rows] = (shares * color_share[rows][..., None]).sum(axis=1)
     return found
 
 

@@ -70,6 +70,16 @@ def three(value: float | None) -> str:
     return f"{value:.3g}"
 
 
+def round_length(value: float) -> float:
+    """The nearest length below that people count in: 1, 2 or 5 times a power of ten.
+
+    >>> round_length(0.37), round_length(5.9), round_length(12.0)
+    (0.2, 5.0, 10.0)
+    """
+    power = 10.0 ** math.floor(math.log10(max(value, 1e-12)))
+    return next(step for step in (5 * power, 2 * power, power) if step <= value * (1 + 1e-9))
+
+
 def seconds(value_s: float | None) -> str:
     """A time in the unit that reads best.
 

@@ -89,10 +89,10 @@ def half_angle_deg(*, na: Numbers, outside_index: Numbers) -> np.ndarray:
     return deg_from_rad(np.arcsin(ratio))
 
 
-def stretch_at(*, ray_na: Numbers, core_index: Numbers) -> np.ndarray:
+def ray_stretch(*, ray_na: Numbers, core_index: Numbers) -> np.ndarray:
     """Path over fiber length of a ray: 1/cos(theta) with sin(theta) = NA/n1, skew or not.
 
-    >>> round(float(stretch_at(ray_na=0.5, core_index=1.492)), 4)
+    >>> round(float(ray_stretch(ray_na=0.5, core_index=1.492)), 4)
     1.0614
     """
     not_negative(ray_na=ray_na)

@@ -5,6 +5,7 @@ the contrast negative beyond their first zero: the sign is kept, for the picture
 """
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -21,8 +22,8 @@ CORRELATION = 0.15
 class BarTarget:
     """Group and element of a three-bar target."""
 
-    group: np.ndarray
-    element: np.ndarray
+    group: Any
+    element: Any
 
 
 def disc_mtf(*, diameter_um: Numbers, frequency_lp_mm: Numbers) -> np.ndarray:
@@ -144,7 +145,7 @@ def honeycomb_filter_mtf(*, residual_contrast: Numbers, pitch_um: Numbers, frequ
     return np.asarray(residual_contrast, float) ** (order * order)
 
 
-def three_bar_lp_mm(*, group: int | np.ndarray, element: int | np.ndarray) -> Numbers:
+def three_bar_lp_mm(*, group: Any, element: Any) -> Numbers:
     """Frequency of an element of a three-bar target: 2^(G + (E - 1)/6) line pairs per mm, E from 1 to 6.
 
     References: mil_std_150a.

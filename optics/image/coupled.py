@@ -154,12 +154,14 @@ def _launched(v: np.ndarray, cone: np.ndarray) -> np.ndarray:
     at = np.minimum(cone / CONE_STEP, CONE_NODES - 1.000001)
     amounts = np.zeros((len(v), len(mode_tables())))
     for column, mode in enumerate(mode_tables()):
-        rows = np.flatnonzero(v > mode.cutoff)
+        rows = np.flatnonzero(v > mode.cutoff_v_number)
         place = np.interp(v[rows], mode.v_number, np.arange(len(mode.w)))
         node, first = np.minimum(place.astype(int), len(mode.w) - 2), at[rows].astype(int)
         down, over = place - node, at[rows] - first
-        low = (1.0 - over) * mode.launched[node, first] + over * mode.launched[node, first + 1]
-        high = (1.0 - over) * mode.launched[node + 1, first] + over * mode.launched[node + 1, first + 1]
+        low = (1.0 - over) * mode.launched_fraction[node, first] + over * mode.launched_fraction[node, first + 1]
+        high = (1.0 - over) * mode.launched_fraction[node + 1, first] + over * mode.launched_fraction[
+            node + 1, first + 1
+        ]
         amounts[rows, column] = (2.0 if mode.azimuthal == 0 else 4.0) * (low + down * (high - low))
     return amounts
 

@@ -10,7 +10,7 @@ from functools import lru_cache
 import numpy as np
 
 from optics.spec import positive, require
-from optics.units import Numbers, um_from_nm
+from optics.units import AnyUnit, Numbers, um_from_nm
 
 # The modes with a cutoff below V = 10.2: (azimuthal l, radial m). Enough where V or the launched
 # cone is small; see `optics.image.coupled` for what is left out above.
@@ -28,10 +28,10 @@ class ModeTable:
     """One mode sampled over W: V at each node, and the share of its light within a launched cone."""
 
     azimuthal: int
-    cutoff: float
+    cutoff_v_number: float
     v_number: np.ndarray
-    w: np.ndarray
-    launched: np.ndarray
+    w: AnyUnit
+    launched_fraction: np.ndarray
 
 
 def bessel_j(order: int, x: np.ndarray) -> tuple[np.ndarray, np.ndarray]:

@@ -12,22 +12,22 @@ from optics.units import Numbers
 NODES = 32  # of the Gauss-Legendre rule: exact to 1e-12 for indices 1 to 2 and any cone that passes
 
 
-def fresnel_reflectance(*, index_from: Numbers, index_to: Numbers, sine: Numbers) -> Numbers:
+def fresnel_reflectance(*, from_index: Numbers, to_index: Numbers, sine: Numbers) -> Numbers:
     """Reflectance of unpolarized light that meets a face, `sine` of the angle on its side.
 
     (R_s + R_p)/2 by Fresnel's equations; 1 beyond the critical angle. Indices above 0, sine from 0 to 1.
 
-    >>> round(float(fresnel_reflectance(index_from=1.0, index_to=1.5, sine=0.0)), 4)
+    >>> round(float(fresnel_reflectance(from_index=1.0, to_index=1.5, sine=0.0)), 4)
     0.04
     """
-    positive(index_from=index_from, index_to=index_to)
+    positive(from_index=from_index, to_index=to_index)
     within(0.0, 1.0, sine=sine)
-    refracted = np.asarray(index_from) * sine / index_to
+    refracted = np.asarray(from_index) * sine / to_index
     cosine = np.sqrt(1.0 - np.square(sine))
-    return 1.0 - _transmission(index_from, index_to, cosine, np.sqrt(np.maximum(1.0 - refracted**2, 0.0)))
+    return 1.0 - _transmission(from_index, to_index, cosine, np.sqrt(np.maximum(1.0 - refracted**2, 0.0)))
 
 
-def face_transmission_at(*, core_index: Numbers, outside_index: Numbers, ray_na: Numbers) -> Numbers:
+def ray_face_transmission(*, core_index: Numbers, outside_index: Numbers, ray_na: Numbers) -> Numbers:
     """What one face lets through of a ray of numerical aperture n sin(theta), either way.
 
     0 for a ray that the thinner side cannot take (total reflection). `ray_na` from 0 to the core index.

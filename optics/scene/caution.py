@@ -21,7 +21,7 @@ from optics.scene.limits import (
 from optics.units import mw_from_w
 
 EXCEEDS = "exceeds the screening figure; common practice, needs a rationale"
-SECOND_HAND = "IEC 62471:2006, second-hand"
+SECOND_HAND = "IEC 62471:2006, read second-hand"
 # Bands of the hazards, and the part of each that must lie in the data before "below" is said.
 BLUE, THERMAL, ACTINIC = ((300.0, 700.0), (400.0, 700.0)), ((380.0, 1400.0), (400.0, 700.0)), ((200.0, 400.0),) * 2
 UVA, INFRARED, SKIN = (
@@ -52,8 +52,9 @@ def lines(*, screening: Screening, at: int, setting: str) -> list[Line]:
     """
     found = {name: float(getattr(screening, name)[at]) for name in Screening.__slots__}
     data = (found["covered_from_nm"], found["covered_to_nm"])
+    data = (np.inf, -np.inf) if np.isnan(data).any() else data
     out = [part(found, data) for part in (_blue, _thermal, _uv_and_ir, _skin)]
-    own = _ignition(found) if setting == "industrial" else []
+    own = _ignition(found, data) if setting == "industrial" else []
     return [*(line for part in out for line in part), *_heat(found, setting), *own]
 
 
@@ -91,7 +92,7 @@ def _blue(found, data):
         what = f"a small source, a port being {mrad} wide there"
         limit = GROUP_SMALL_W_M2[1]
         out.append(_line("blue-light irradiance at 200 mm", found["blue_w_m2"], "W/m2", limit, data, BLUE, what))
-    group = int(found["risk_group"])
+    group = int(found["risk_group_index"])
     known = group == 3 or (data[0] <= BLUE[1][0] and data[1] >= BLUE[1][1])
     said = f"{GROUPS[group]} by {'irradiance' if small else 'radiance'}, a port being {mrad} wide; {CLOSE}"
     said = f"{said} ({SECOND_HAND})" if known else f"not assessed: the data leave out blue light ({SECOND_HAND})"
@@ -152,9 +153,10 @@ def _heat(found, setting):
     ]
 
 
-def _ignition(found):
+def _ignition(found, data):
     """Explosive atmospheres: below either figure. A lamp-fed guide is not exempt by itself."""
     power, density, out = found["power_w"], found["exit_w_mm2"], []
+    reach = f"light of {data[0]:g} to {data[1]:g} nm counted" if data[0] < data[1] else "no data"
     for figure in IGNITION:
         held = [(power, figure.power_w, "mW")]
         if figure.irradiance_w_mm2 is not None:
@@ -163,7 +165,9 @@ def _ignition(found):
         below = any(got < most for got, most, _ in held)
         said = f"below the screening figure for {figure.name}" if below else "exceeds the screening figure"
         basis = "from memory" if figure.basis == "remembered" else f"read in {figure.source}"
-        because = f"{said}: {against} ({basis}; IEC 60079-28). Group, class and the licensed assessor decide"
+        because = f"{said}: {against} ({basis}; IEC 60079-28; {reach}). Group, class and the licensed assessor decide"
         limit = mw_from_w(figure.power_w)
-        out.append(Line(f"optical power, {figure.name}", mw_from_w(power), "mW", limit, because))
+        value = mw_from_w(power) if data[0] < data[1] else None
+        because = because if value is not None else "not assessed: no data on the light"
+        out.append(Line(f"optical power, {figure.name}", value, "mW", limit, because))
     return out

@@ -80,7 +80,8 @@ def _weights() -> np.ndarray:
     """[wavelength, hazard] on the grid: blue, thermal in both editions, actinic, UV-A, infrared, skin, all."""
     blue = blue_light_weight(wavelength_nm=GRID_NM)
     thermal = [thermal_weight(wavelength_nm=GRID_NM, edition=edition) for edition in EDITIONS]
-    uv, infrared, skin = GRID_NM <= 400.0, GRID_NM >= 780.0, GRID_NM >= 380.0
+    # Bands: a node at the end of a band counts half.
+    uv, infrared, skin = (np.heaviside(x, 0.5) for x in (400.0 - GRID_NM, GRID_NM - 780.0, GRID_NM - 380.0))
     found = [blue, *thermal, actinic_weight(wavelength_nm=GRID_NM), uv, infrared, skin, np.ones(GRID_NM.size)]
     return np.stack(found, axis=-1) * QUADRATURE_NM[:, None]
 
@@ -101,7 +102,7 @@ class Screening:
     blue_11_mrad_w_m2_sr: np.ndarray
     blue_100_mrad_w_m2_sr: np.ndarray
     blue_w_m2: np.ndarray
-    risk_group: np.ndarray
+    risk_group_index: np.ndarray
     thermal_2006_w_m2_sr: np.ndarray
     thermal_2013_w_m2_sr: np.ndarray
     thermal_limit_w_m2_sr: np.ndarray
@@ -167,7 +168,7 @@ def screening(
         blue_11_mrad_w_m2_sr=short,
         blue_100_mrad_w_m2_sr=long,
         blue_w_m2=away[:, 0],
-        risk_group=group,
+        risk_group_index=group,
         thermal_2006_w_m2_sr=radiance[:, 1],
         thermal_2013_w_m2_sr=radiance[:, 2],
         thermal_limit_w_m2_sr=thermal_limit_w_m2_sr(source_rad=alpha, exposure_s=1000.0),

@@ -103,6 +103,8 @@ def field_irradiance(
     positive(distance_mm=z, field_radius_mm=field)
     area, width = ports_area_mm2(radius), np.diff(edges, axis=-1)
     require("the area of the ports", area, "above 0", area > 0)
+    alone = (radius >= 0).all(axis=-1) | ((radius[:, 0] > 0) & (np.count_nonzero(radius, axis=-1) == 2))
+    require("the number of discs", np.count_nonzero(radius, axis=-1), "2 where one is cut out of the first", alone)
     require("the rise of sine2_edges", width, "above 0", width > 0)
     # Ports of one size and one offset see, and are seen, alike.
     away = np.hypot(x, y)

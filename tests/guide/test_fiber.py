@@ -56,7 +56,7 @@ def test_narrow_cones_go_straight():
     assert fiber.path_stretch(na=0.0, core_index=1.5) == 1.0
     assert fiber.mean_tangent_ratio(na=0.0, core_index=1.5) == 0.0
     assert fiber.bounces_per_m(na=0.0, core_index=1.5, core_um=50.0) == 0.0
-    assert fiber.stretch_at(ray_na=0.0, core_index=1.5) == 1.0
+    assert fiber.ray_stretch(ray_na=0.0, core_index=1.5) == 1.0
 
 
 def test_small_cones_join_the_series_smoothly():
@@ -67,7 +67,7 @@ def test_small_cones_join_the_series_smoothly():
 
 def test_filled_cone_is_the_mean_of_its_rays():
     na = NA * np.sqrt((np.arange(20_000) + 0.5) / 20_000)
-    mean = fiber.stretch_at(ray_na=na, core_index=INDEX).mean()
+    mean = fiber.ray_stretch(ray_na=na, core_index=INDEX).mean()
     assert fiber.path_stretch(na=NA, core_index=INDEX) == pytest.approx(mean, abs=1e-6)
 
 
@@ -116,7 +116,7 @@ def test_scalar_equals_array_element():
         (lambda: fiber.path_stretch(na=1.5, core_index=1.5), "na is 1.5; it must be below the core index"),
         (lambda: fiber.half_angle_deg(na=1.1, outside_index=1.0), "na is 1.1; it must be at most the index outside"),
         (lambda: fiber.bounces_per_m(na=0.5, core_index=1.5, core_um=0.0), "core_um is 0; it must be above 0"),
-        (lambda: fiber.stretch_at(ray_na=-0.1, core_index=1.5), "ray_na is -0.1; it must be 0 or more"),
+        (lambda: fiber.ray_stretch(ray_na=-0.1, core_index=1.5), "ray_na is -0.1; it must be 0 or more"),
         (lambda: fiber.tilted_end_deg(core_index=1.5, tilt_deg=60.0), "tilt_deg is 60"),
         (lambda: fiber.tapered_na(na=0.2, wide_um=1.0, narrow_um=2.0), "narrow_um is 2; it must be at most"),
     ],

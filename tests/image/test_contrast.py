@@ -84,7 +84,7 @@ def test_no_aberration_changes_nothing_and_coarse_patterns_hardly_feel_any():
 
 
 def test_geometric_defocus_times_diffraction_is_cautious_and_meets_the_wave_result_for_strong_defocus():
-    """Independent route: a pupil with a quadratic phase. Up to a quarter wave the product is below it; by two waves it meets it."""
+    """Independent route: a pupil with a quadratic phase. At a quarter wave the product is cautious."""
     wavelength_um, n = 0.5, 5.0
     for waves, tolerance in ((0.25, 0.12), (2.0, 0.06)):
         # edge phase W of a defocus dz: W = dz/(8 N^2); blur disc dz/N

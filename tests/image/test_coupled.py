@@ -180,18 +180,9 @@ def test_published_magnitude_of_exchange():
 
 
 def test_cores_of_6_um_at_na_05_have_none_worth_counting():
+    glass = {"core_um": 6.0, "pitch_um": 8.0, "na": 0.5, "core_index": 1.6, "core_spread_fraction": 0.02}
     for cone in (0.1, 0.25, 0.5):
-        shares = coupled.ring_shares(
-            **{
-                **FIBER,
-                "core_um": 6.0,
-                "pitch_um": 8.0,
-                "na": 0.5,
-                "core_index": 1.6,
-                "core_spread_fraction": 0.02,
-                "cone_sine": cone,
-            }
-        )
+        shares = coupled.ring_shares(**{**FIBER, **glass, "cone_sine": cone})
         assert shares[0] > 0.995
 
 
@@ -251,7 +242,7 @@ def test_extremes_stay_finite():
 
 
 def test_refusals():
-    with pytest.raises(OutOfRange, match="na is 1.6; it must be below core_index"):
+    with pytest.raises(OutOfRange, match=r"na is 1\.6; it must be below core_index"):
         coupled.ring_shares(**{**FIBER, "na": 1.6})
     with pytest.raises(OutOfRange, match="pitch_um is 2; it must be above core_um"):
         coupled.ring_shares(**{**FIBER, "pitch_um": 2.0})

@@ -151,7 +151,7 @@ def test_coupling_rises_with_wavelength_and_falls_with_pitch_and_na():
 
 
 def test_refusals():
-    with pytest.raises(OutOfRange, match="pitch_um is 1.5; it must be above core_um"):
+    with pytest.raises(OutOfRange, match=r"pitch_um is 1\.5; it must be above core_um"):
         crosstalk.coupling_per_um(**{**FIBER, "pitch_um": 1.5})
     with pytest.raises(OutOfRange, match="it must be above the cutoff"):
         crosstalk.mode_coupling_per_um(azimuthal=4, radial=1, parity=1, **FIBER)

@@ -33,12 +33,11 @@ def test_alias_gives_the_same_samples_and_none_is_coarser(alias, rows, limit):
     rng = np.random.default_rng(11)
     frequency, turn = rng.uniform(0.0, 400.0, 300), rng.uniform(0.0, 180.0, 300)
     found = alias(frequency_lp_mm=frequency, direction_deg=turn, pitch_um=10.0)
-    wave = frequency[:, None] / 100 * np.c_[np.cos(np.deg2rad(turn)), np.sin(np.deg2rad(turn))]
-    seen = (
-        found.frequency_lp_mm[:, None]
-        / 100
-        * np.c_[np.cos(np.deg2rad(found.direction_deg)), np.sin(np.deg2rad(found.direction_deg))]
-    )
+
+    def per_pitch(size, turn_deg):
+        return size[:, None] / 100 * np.c_[np.cos(np.deg2rad(turn_deg)), np.sin(np.deg2rad(turn_deg))]
+
+    wave, seen = per_pitch(frequency, turn), per_pitch(found.frequency_lp_mm, found.direction_deg)
     places = np.array([(i, j) for i in range(-5, 6) for j in range(-5, 6)]) @ rows
     assert np.allclose(np.cos(2 * np.pi * wave @ places.T), np.cos(2 * np.pi * seen @ places.T), atol=1e-9)
     reciprocal = np.array([(i, j) for i in range(-15, 16) for j in range(-15, 16)]) @ np.linalg.inv(rows).T

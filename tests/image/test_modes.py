@@ -32,13 +32,13 @@ def test_the_list_holds_all_modes_up_to_its_end():
         modes.cutoff_v_number(azimuthal=azimuthal, radial=radial) for azimuthal in range(12) for radial in range(1, 6)
     ]
     assert sum(cutoff < end for cutoff in cutoffs) == len(modes.MODES)
-    assert all(table.cutoff < end for table in modes.mode_tables())
+    assert all(table.cutoff_v_number < end for table in modes.mode_tables())
 
 
 def test_tables_interpolate_to_a_thousandth():
     v = np.linspace(0.9, 25.0, 200)
     for (azimuthal, radial), table in zip(modes.MODES, modes.mode_tables()):
-        guided = v[v > table.cutoff + 0.02]
+        guided = v[v > table.cutoff_v_number + 0.02]
         solved = modes.outside_number(v_number=guided, azimuthal=azimuthal, radial=radial)
         assert np.allclose(np.interp(guided, table.v_number, table.w), solved, atol=1.5e-3)
 
@@ -62,15 +62,15 @@ def test_launched_share_against_a_numerical_far_field():
         for cone in (1.0, 2.5, 5.0):
             inside = q <= cone
             expected = np.trapezoid((far**2 * q)[inside], q[inside]) / total
-            got = table.launched[node, int(cone / modes.CONE_STEP)]
+            got = table.launched_fraction[node, int(cone / modes.CONE_STEP)]
             assert got == pytest.approx(expected, abs=0.01)
 
 
 def test_all_light_of_a_held_mode_lies_within_a_wide_cone():
     for table in modes.mode_tables():
         held = (table.w > 1.0) & (table.v_number < 14)
-        assert (table.launched[held, -1] > 0.97).all()
-        assert (np.diff(table.launched, axis=1) >= -1e-12).all()
+        assert (table.launched_fraction[held, -1] > 0.97).all()
+        assert (np.diff(table.launched_fraction, axis=1) >= -1e-12).all()
 
 
 def test_launched_modes_add_up_to_the_etendue_of_the_cone():
@@ -79,5 +79,5 @@ def test_launched_modes_add_up_to_the_etendue_of_the_cone():
     filled = 0.0
     for table in modes.mode_tables():
         node = np.searchsorted(table.v_number, v)
-        filled += (2 if table.azimuthal == 0 else 4) * table.launched[node, int(cone / modes.CONE_STEP)]
+        filled += (2 if table.azimuthal == 0 else 4) * table.launched_fraction[node, int(cone / modes.CONE_STEP)]
     assert filled == pytest.approx(cone**2 / 2, rel=0.1)

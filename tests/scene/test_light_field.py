@@ -161,7 +161,10 @@ def test_refusals():
         field_lighting(
             ports=PORTS["one"], cone=ExitCone.uniform(0.5), flux_lm=1.0, distance_mm=5.0, field_radius_mm=-1.0
         )
-    given, flux = _batch()
+    given, flux = _batch(ports=3)
+    cut = given["port_radius_mm"] * np.array([1.0, 1.0, -0.5])
+    with pytest.raises(OutOfRange, match="the number of discs is 3; it must be 2 where one is cut out of the first"):
+        field_irradiance(**given | {"port_radius_mm": cut})
     with pytest.raises(OutOfRange, match="flux_lm is -1"):
         field_irradiance(**given).under(-np.ones_like(flux))
 

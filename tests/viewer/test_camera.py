@@ -127,7 +127,7 @@ def test_rose_disc_against_counting_quanta():
 def test_refusals():
     with pytest.raises(OutOfRange, match="photons is -1; it must be 0 or more"):
         camera.signal_to_noise(photons=-1.0, **SENSOR)
-    with pytest.raises(OutOfRange, match="quantum_efficiency is 1.2; it must be from 0 to 1"):
+    with pytest.raises(OutOfRange, match=r"quantum_efficiency is 1\.2; it must be from 0 to 1"):
         camera.signal_to_noise(photons=1.0, **{**SENSOR, "quantum_efficiency": 1.2})
     with pytest.raises(ValueError, match="relay_na"):
         camera.Camera(
