@@ -79,11 +79,11 @@ def light(columns: Columns) -> Light:
     na = np.sqrt((edges[:, 1:] + edges[:, :-1]) / 2)
     if cable.any():
         _through_cable(columns, cable, way, na)
-    value["face_heat_w"] = value["face_heat_w"] - _first_cores_w(way, cable)
     _through_guide(columns, way, na, edges)
     before_w = (integral(way.power_w_nm) * way.share).sum(axis=1)
     _out(columns, way, na, edges)
     beam = Beam(way.power_w_nm * way.share[:, :, None], edges)
+    value["face_heat_w"] = value["face_heat_w"] * _not_taken(way, cable)
     # What the last faces throw back is counted as heat of the tip: most of it is, and the rest is on the safe side.
     value["tip_heat_w"] = np.maximum(before_w - beam.flux_w, 0.0)
     value.update(_numbers(columns, beam, way))
@@ -204,14 +204,11 @@ def _out(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray) -> None:
     way.bins("cover", faces * ray_face_transmission(core_index=glass, outside_index=medium, ray_na=na), cover)
 
 
-def _first_cores_w(way: Way, cable: np.ndarray) -> np.ndarray:
-    """Watts that got into the cores behind the first face."""
-    entered = np.where(
-        cable, way.after_lm.get("cable core share", way.after_lm["input face"]), way.after_lm["input face"]
-    )
-    lamp = way.after_lm["condenser"]
-    share = np.where(lamp > 0, entered / np.where(lamp > 0, lamp, 1.0), 0.0)
-    return share * integral(way.power_w_nm).max(axis=1)
+def _not_taken(way: Way, cable: np.ndarray) -> np.ndarray:
+    """Share of what falls on the first face that gets into no core there: it heats the face and its glue."""
+    entered = np.where(cable, way.after_lm.get("cable core share", np.nan), way.after_lm["core share"])
+    came = way.after_lm["condenser"]
+    return 1.0 - np.where(came > 0, entered / np.where(came > 0, came, 1.0), 0.0)
 
 
 def medium_index(columns: Columns) -> np.ndarray:

@@ -8,7 +8,7 @@ from optics.figures.palette import LIGHT, LINE, SMALL, TEXT, WIDTH_IN, Palette
 from optics.report.answer import Limit, Report
 
 ROW = 0.33   # inches a part
-LONGEST = 8.0   # bars longer than this many times the shortest are cut, with their number
+LONGEST = 5.0   # bars longer than this many times the shortest are cut, with their number
 
 
 def ledger(report: Report, *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) -> Figure:
@@ -25,6 +25,7 @@ def ledger(report: Report, *, palette: Palette = LIGHT, width_in: float = WIDTH_
         met = resolved >= wanted
         _mark(axes, palette, wanted, len(lines), f"{'✓' if met else '✗'} wanted {three(wanted)}", "dashed", 0.18, end)
     axes.set(xlim=(0, end), ylim=(len(lines) - 0.45, -0.55), yticks=[], xlabel="line pairs per mm, at the target")
+    axes.xaxis.set_major_formatter(lambda value, _: three(value))
     axes.spines["left"].set_visible(False)
     return figure
 

@@ -27,13 +27,10 @@ def budget(report: Report, *, palette: Palette = LIGHT, width_in: float = WIDTH_
         axes.plot([after, after], [row - 0.36, row + 1.36], color=palette.soft, linewidth=THIN)
         axes.text(-0.015 * end, row, step.name, ha="right", va="center_baseline", fontsize=TEXT, color=ink, weight=weight)
         axes.text(end * 1.02, row, lost(step.factor), ha="left", va="center_baseline", fontsize=TEXT, color=ink, weight=weight)
-    row = len(steps)
-    axes.barh(row, end - total, left=total, color=palette.light, height=0.72, linewidth=0, hatch="")
-    axes.text(-0.015 * end, row, "delivered", ha="right", va="center_baseline", fontsize=TEXT, color=palette.ink, weight="bold")
-    said = f"{three(report.light.delivered_lm)} lm"
-    inside = end - total > 0.22 * end
-    axes.text((total + end) / 2 if inside else total - 0.015 * end, row, said, ha="center" if inside else "right", va="center_baseline",
-              fontsize=TEXT, color=palette.on_light if inside else palette.ink, weight="bold")  # fmt: skip
+    row, look = len(steps), {"va": "center_baseline", "fontsize": TEXT, "color": palette.ink, "weight": "bold"}
+    axes.text(-0.015 * end, row, "delivered", ha="right", **look)
+    said, right = f"{three(report.light.delivered_lm)} lm, {three(report.light.transmission * 100)} % of the lamp", total > 0.6 * end
+    axes.text(total + (-0.02 if right else 0.02) * end, row, said, ha="right" if right else "left", **look)
     axes.set(xlim=(0, end), ylim=(row + 0.55, -0.55), yticks=[], xlabel="lost since the lamp, dB")
     axes.spines["left"].set_visible(False)
     _lumens_above(axes, palette, lamp, end)

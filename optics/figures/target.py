@@ -10,7 +10,7 @@ from optics.figures.palette import LIGHT, LINE, SMALL, TEXT, THIN, WIDTH_IN, Pal
 from optics.report.views import TargetMap
 
 # Inches: room on the right (color bar), on the left, below, above
-RIGHT, LEFT, BELOW, ABOVE = 1.02, 0.1, 0.66, 0.1
+RIGHT, LEFT, BELOW, ABOVE = 1.02, 0.1, 0.58, 0.1
 WHITE, HALO = "#ffffff", [patheffects.withStroke(linewidth=2.5, foreground="#10131a")]   # on any color of the map
 
 
@@ -21,12 +21,12 @@ def irradiance_map(view: TargetMap, *, palette: Palette = LIGHT, width_in: float
     figure, axes = chart(width_in, high + BELOW + ABOVE, palette, left=LEFT, right=RIGHT, bottom=BELOW, top=ABOVE)
     extent = (view.u_mm[0], view.u_mm[-1], view.v_mm[0], view.v_mm[-1])
     top = max(float(view.lux.max()), 1e-9)
-    image = axes.imshow(view.lux, extent=extent, origin="lower", cmap=palette.light_map, vmin=0, vmax=top, interpolation="bilinear", aspect="auto")
+    axes.imshow(view.lux, extent=extent, origin="lower", cmap=palette.light_map, vmin=0, vmax=top, interpolation="bilinear", aspect="auto")
     axes.set(xlim=extent[:2], ylim=extent[2:], xticks=[], yticks=[])
     axes.spines[:].set_visible(False)
     _field(axes, view)
     _ports(axes, view)
-    _color_bar(figure, palette, image, view, side, high)
+    _color_bar(figure, palette, view, top, LEFT + side + 0.1)
     _below(axes, palette, view, high, _need(axes, view, palette))
     return figure
 
@@ -71,27 +71,24 @@ def _need(axes: Axes, view: TargetMap, palette: Palette) -> str:
     return f"{'all above' if view.lux.min() >= wanted else 'all below'} the {three(wanted)} lx wanted"
 
 
-def _color_bar(figure: Figure, palette: Palette, image, view: TargetMap, side: float, high: float) -> None:
+def _color_bar(figure: Figure, palette: Palette, view: TargetMap, top: float, left: float) -> None:
     """The scale of the map, in lux, with the need marked."""
-    width = figure.get_size_inches()[0]
-    axes = panel(figure, palette, left=LEFT + side + 0.1, right=width - LEFT - side - 0.26, bottom=BELOW, top=ABOVE + 0.22)
-    bar = figure.colorbar(image, cax=axes)
-    bar.outline.set_visible(False)
-    top = image.norm.vmax
+    width, high = figure.get_size_inches()
+    axes = panel(figure, palette, left=left, right=width - left - 0.16, bottom=BELOW, top=ABOVE + 0.24)
+    axes.imshow(np.linspace(0, 1, 256)[:, None], extent=(0, 1, 0, top), origin="lower", cmap=palette.light_map, aspect="auto")
     if view.wanted_lux is not None and 0.02 * top < view.wanted_lux < top:
         axes.axhline(view.wanted_lux, color=WHITE, linewidth=LINE, linestyle=(0, (2, 1)), path_effects=HALO)
-    bar.locator = _ticks(top)
-    bar.update_ticks()
-    axes.set_yticklabels([three(place) for place in axes.get_yticks()])
-    axes.tick_params(colors=palette.soft, labelsize=SMALL, width=THIN, length=3)
-    figure.text((LEFT + side + 0.1) / width, 1 - ABOVE / figure.get_size_inches()[1], "lux", color=palette.ink, fontsize=TEXT, va="top")
+    axes.set(xlim=(0, 1), ylim=(0, top), xticks=[])
+    axes.spines[:].set_visible(False)
+    axes.set_yticks(_ticks(top), [three(place) for place in _ticks(top)])
+    axes.yaxis.tick_right()
+    figure.text(left / width, 1 - ABOVE / high, "lux", color=palette.ink, fontsize=TEXT, va="top")
 
 
-def _ticks(top: float):
-    from matplotlib.ticker import FixedLocator
-
+def _ticks(top: float) -> list[float]:
+    """About four places from 0 to the top."""
     step = round_length(top / 4)
-    return FixedLocator([step * count for count in range(int(top / step + 1e-9) + 1)])
+    return [step * count for count in range(int(top / step + 1e-9) + 1)]
 
 
 def _below(axes: Axes, palette: Palette, view: TargetMap, high: float, need: str) -> None:
@@ -102,14 +99,16 @@ def _below(axes: Axes, palette: Palette, view: TargetMap, high: float, need: str
     y = -0.12 / high
     axes.plot([0.0, bar / across], [y, y], color=palette.ink, linewidth=2.0, solid_capstyle="butt", **look)
     axes.text(0.0, y - 0.06 / high, f"{three(bar)} mm", color=palette.ink, fontsize=SMALL, va="top", **look)
+    if any(np.hypot(port.x_mm, port.y_mm) > 1e-6 for port in view.ports) and view.surface == "plane":
+        axes.text(0.0, y - 0.23 / high, "▲ on this side: a port", color=palette.soft, fontsize=SMALL, va="top", **look)
     where = "wall of the bore, unrolled; depth upward" if view.surface == "bore" else f"{three(view.distance_mm)} mm from the tip"
-    axes.text(1.0, y + 0.05 / high, where, color=palette.soft, fontsize=SMALL, va="top", ha="right", **look)
-    axes.text(1.0, y - 0.15 / high, need, color=palette.ink, fontsize=SMALL, va="top", ha="right", **look)
+    axes.text(1.0, y - 0.06 / high, where, color=palette.soft, fontsize=SMALL, va="top", ha="right", **look)
+    axes.text(1.0, y - 0.23 / high, need, color=palette.ink, fontsize=SMALL, va="top", ha="right", **look)
 
 
 def profile(view: TargetMap, *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) -> Figure:
     """Illuminance along one line through the center, over the field of view, against the need."""
-    figure, axes = chart(width_in, 2.9, palette, left=0.78, right=0.18, bottom=0.52, top=0.32)
+    figure, axes = chart(width_in, 2.9, palette, left=0.95, right=0.18, bottom=0.52, top=0.32)
     x, top = view.profile_mm, max(float(view.profile_lux.max()), view.wanted_lux or 0.0, 1e-9)
     if view.field_radius_mm is not None and view.surface == "plane":
         low, high = float(view.field_u_mm.min()), float(view.field_u_mm.max())
@@ -123,6 +122,5 @@ def profile(view: TargetMap, *, palette: Palette = LIGHT, width_in: float = WIDT
         axes.annotate(f"{three(view.wanted_lux)} lx wanted", (x[0], view.wanted_lux), (4, -3 if high_up else 3), textcoords="offset points",
                       color=palette.accent, fontsize=SMALL, va="top" if high_up else "bottom")  # fmt: skip
     axes.set(xlim=(x[0], x[-1]), ylim=(0, top * 1.08), xlabel="around the wall, mm" if view.surface == "bore" else "across the target, mm", ylabel="illuminance, lux")
-    axes.yaxis.set_major_locator(_ticks(top * 1.08))
-    axes.yaxis.set_major_formatter(lambda value, _: three(value))
+    axes.set_yticks(_ticks(top * 1.08), [three(place) for place in _ticks(top * 1.08)])
     return figure

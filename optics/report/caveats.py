@@ -14,6 +14,7 @@ from optics.spectrum import covered, integral, luminous_flux_lm, on_grid
 from optics.tables import Sourced
 from optics.viewer.camera import LEAST_PIXELS_PER_PITCH
 
+SEEN_LM_W = 5.0  # below this efficacy a lamp is no lamp to see by: a house choice
 CAUTIONS = {
     "industrial": (
         "Bright light at the exit face can hurt eyes and skin, the face and the cable's ends get hot, and a lamp-fed guide is not "
@@ -47,7 +48,7 @@ def caveats(
 
 
 def _lamp(scope: Fiberscope, value: Mapping[str, float]) -> Iterator[Caveat]:
-    if scope.source.lamp.flux_lm is None and value["delivered_lm"] < 0.01 * value["delivered_w"]:
+    if value["delivered_lm"] < SEEN_LM_W * value["delivered_w"]:
         yield Caveat("source.lamp", "This lamp gives almost no visible light: judge it by watts, not by lumens.")
     if scope.source.launch.form == "rated":
         yield Caveat(

@@ -15,7 +15,11 @@ from optics.viewer.detail import PARTS
 
 
 def sized(document, **changes):
-    return size(presets.resolve(presets.edited(document, {key.replace("__", "."): value for key, value in changes.items()})).fiberscope)
+    return size(
+        presets.resolve(
+            presets.edited(document, {key.replace("__", "."): value for key, value in changes.items()})
+        ).fiberscope
+    )
 
 
 def test_many_designs_equal_one_by_one(random_designs):
@@ -54,7 +58,9 @@ def test_nothing_is_brighter_than_the_lamp(random_designs):
     """Radiance per angle bin of the delivered beam, over cores alone, against the lamp's, lumens over etendue."""
     table = columns(random_designs(120))
     lit = light(table)
-    lamp = lit.after_lm["lamp"] / etendue_mm2_sr(diameter_mm=table["source.lamp.emitter_mm"], na=table["source.lamp.cone_na"])
+    lamp = lit.after_lm["lamp"] / etendue_mm2_sr(
+        diameter_mm=table["source.lamp.emitter_mm"], na=table["source.lamp.cone_na"]
+    )
     per_bin = np.pi * lit.value["core_area_mm2"][:, None] * np.diff(lit.beam.sine2_edges, axis=1)
     assert np.all(lit.beam.bin_lm / per_bin <= lamp[:, None] * (1 + 1e-9))
 
@@ -77,7 +83,10 @@ def test_halving_the_pitch_doubles_the_lattice_limit(document):
 
 @settings(max_examples=25, deadline=None)
 @given(
-    length=st.floats(0.2, 8.0), diameter=st.floats(0.5, 4.0), flux=st.floats(10.0, 3000.0), distance=st.floats(11.0, 39.0)
+    length=st.floats(0.2, 8.0),
+    diameter=st.floats(0.5, 4.0),
+    flux=st.floats(10.0, 3000.0),
+    distance=st.floats(11.0, 39.0),
 )
 def test_light_is_linear_in_the_lamp_and_falls_with_distance(length, diameter, flux, distance):
     base = presets.open("gearbox_tooth").document
@@ -89,7 +98,11 @@ def test_light_is_linear_in_the_lamp_and_falls_with_distance(length, diameter, f
         "scene.target.far_mm": 80.0,
         "scene.ports.offset_mm": 0.1,
     }
-    designs = [change, {**change, "source.lamp.flux_lm": 2 * flux}, {**change, "scene.target.distance_mm": 1.2 * distance}]
+    designs = [
+        change,
+        {**change, "source.lamp.flux_lm": 2 * flux},
+        {**change, "scene.target.distance_mm": 1.2 * distance},
+    ]
     found = evaluate(columns([presets.resolve(presets.edited(base, item)).fiberscope for item in designs]))
     lumens, lux = found["delivered_lm"], found["center_lux"]
     assert 0 < lumens[0] < flux
