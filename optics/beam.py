@@ -68,8 +68,8 @@ def bin_edges(*, inner_na: Numbers, outer_na: Numbers, inner_count: int, outer_c
     The inner run ends where the light that is filled ends, so no bin is part-filled; the outer run
     is room for what bends widen, or for what a joint will cut.
 
-    >>> bin_edges(inner_na=np.array([0.3]), outer_na=np.array([0.5]), inner_count=3, outer_count=2).round(3)
-    array([[0.  , 0.03, 0.06, 0.09, 0.17, 0.25]])
+    >>> bin_edges(inner_na=np.array([0.3]), outer_na=np.array([0.5]), inner_count=3, outer_count=2).round(3).tolist()
+    [[0.0, 0.03, 0.06, 0.09, 0.17, 0.25]]
     """
     inner = np.asarray(inner_na, float)[..., None] ** 2 * np.linspace(0.0, 1.0, inner_count + 1)
     low, high = np.asarray(inner_na, float)[..., None] ** 2, np.asarray(outer_na, float)[..., None] ** 2

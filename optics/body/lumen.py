@@ -211,16 +211,21 @@ def _closed_in(radii: np.ndarray, at_wall: np.ndarray, least: np.ndarray):
             low, high = np.where(good, low, middle), np.where(good, middle, high)
         return high
 
-    which = np.zeros(sections, int)
-    best = np.where(fits(np.arange(sections), which, least)[2], least, radii.sum(axis=1))
+    everyone, high = np.arange(sections), radii.sum(axis=1)
+    which, best = np.zeros(sections, int), high.copy()
+    for plain in (0, 1):  # by descending size: does the rest come free?
+        rows = np.flatnonzero(best > least)
+        rows = rows[fits(rows, np.full(len(rows), plain), least[rows])[2]]
+        which[rows], best[rows] = plain, least[rows]
     rows = np.flatnonzero(best > least)
+    which[rows] = 2
     below = fits(rows, which[rows], least[rows] * _FIRST)[2]
-    low, high = np.where(below, 1.0, _FIRST) * least[rows], np.where(below, _FIRST * least[rows], best[rows])
+    low, high = np.where(below, 1.0, _FIRST) * least[rows], np.where(below, _FIRST * least[rows], high[rows])
     best[rows] = halved(rows, which[rows], low, high, _COARSE)
 
-    rows, number = (a.ravel() for a in np.meshgrid(rows, np.arange(1, len(order)), indexing="ij"))
+    rows, number = (a.ravel() for a in np.meshgrid(rows, np.delete(np.arange(len(order)), 2), indexing="ij"))
     target = np.maximum(least, best * (1 - _PLAIN))
-    good = fits(rows, number, target[rows])[2] & (best > least)[rows]
+    good = fits(rows, number, target[rows])[2]
     rows, number = rows[good], number[good]
     lumen = halved(rows, number, least[rows], target[rows], _COARSE)
     for lane in np.lexsort((-number, -lumen)):  # the best last; of equal ones the earlier order
@@ -230,7 +235,7 @@ def _closed_in(radii: np.ndarray, at_wall: np.ndarray, least: np.ndarray):
     best[rows] = np.where(fits(rows, which[rows], least[rows])[2], least[rows], best[rows])
     rows = np.flatnonzero(best > least)
     best[rows] = halved(rows, which[rows], np.maximum(least, best * (1 - 2 * _PLAIN))[rows], best[rows], _FINE)
-    x, y, good = fits(np.arange(sections), which, best)
+    x, y, good = fits(everyone, which, best)
     require("diameters_mm", 2 * radii[:, 0], "in a part list that the placing rules can lay out", good)
     back = np.argsort(order[which].T, axis=0)
     return best, np.take_along_axis(x, back, axis=0), np.take_along_axis(y, back, axis=0)

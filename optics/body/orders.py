@@ -10,10 +10,10 @@ from functools import lru_cache
 import numpy as np
 
 _LISTED = {
-    4: "0123- 0213- 1230+",
-    5: "12304+ 01234- 03214- 02134-",
-    6: "130425- 012345+ 012435+ 045231+ 041325- 041235- 042315- 032514-",
-    7: ("0452136+ 0123456- 6204135+ 6204135- 1253046+ 4201356- 4015263+ 3125046- 3241056+ 3015624+ 6241350- 6103245+"),
+    4: "0213- 1230+",
+    5: "12304+ 03214- 02134-",
+    6: "130425- 012435+ 045231+ 041325- 041235- 042315- 032514-",
+    7: ("0452136+ 6204135+ 6204135- 1253046+ 4201356- 4015263+ 3125046- 3241056+ 3015624+ 6241350- 6103245+"),
     8: (
         "40135276+ 43217056+ 04251637- 02147356+ 40632715- 74150362- 52017346- 03721456+ 05312467- 25401673+ "
         "17052346- 02147356-"
@@ -34,6 +34,8 @@ _DRAWN = 32  # orders beyond 10 circles: descending size, shaken a little or who
 def orders(count: int) -> tuple[np.ndarray, np.ndarray]:
     """Orders to try for so many circles, and where ties go: [order, circle] and [order].
 
+    The first two are by descending size: they find room for small circles beside the two widest.
+
     >>> order, tie = orders(4)
     >>> order[0].tolist(), float(tie[0])
     ([0, 1, 2, 3], -1.0)
@@ -42,11 +44,14 @@ def orders(count: int) -> tuple[np.ndarray, np.ndarray]:
         words = _LISTED[count].split()
         order = np.array([[int(circle) for circle in word[:-1]] for word in words])
         tie = np.array([1.0 if word[-1] == "+" else -1.0 for word in words])
+        order, tie = np.concatenate([[range(count)] * 2, order]), np.concatenate([[-1.0, 1.0], tie])
     else:
         draw, descending = np.random.default_rng(count), np.arange(count)
         shaken = [np.argsort(descending + draw.normal(0.0, 1.5, count)) for _ in range(_DRAWN // 2)]
-        order = np.array([descending, *shaken, *(draw.permutation(count) for _ in range(_DRAWN - 1 - len(shaken)))])
-        tie = np.where(np.arange(_DRAWN) % 2, 1.0, -1.0)
+        order = np.array(
+            [descending, descending, *shaken, *(draw.permutation(count) for _ in range(_DRAWN - 2 - len(shaken)))]
+        )
+        tie = np.where(np.arange(_DRAWN) % 2, 1.0, -1.0)  # the descending one both ways
     order.setflags(write=False)
     tie.setflags(write=False)
     return order, tie

@@ -12,6 +12,7 @@ Lengths are in any one unit; arrays lie as [circle, layout].
 import numpy as np
 
 _TOUCH = 1e-9  # circles may come this much closer than touching, as a share of the lumen
+_FLAT = 1e-12  # rounding of a squared sine where centers lie in a line
 
 
 def placed(
@@ -59,7 +60,7 @@ def _at_wall(px, py, reach, sums):
     turnable = (from_center > _TOUCH * reach) & (reach > 0)
     cosine = (reach * reach + square - sums * sums) / np.where(turnable, 2 * reach * from_center, 1.0)
     sine = 1 - cosine * cosine
-    valid = turnable & (sine >= 0)
+    valid = turnable & (sine >= -_FLAT)
     scale = reach / np.where(turnable, from_center, 1.0)
     sine = np.sqrt(np.maximum(sine, 0.0)) * scale
     cosine = cosine * scale
@@ -75,7 +76,7 @@ def _between(px, py, sums):
     near = sums[first] * sums[first]
     along = (apart + near - sums[second] * sums[second]) / (2 * apart)
     aside = near / apart - along * along
-    valid = aside >= 0
+    valid = aside >= -_FLAT
     aside = np.sqrt(np.maximum(aside, 0.0))
     mx, my, bx, by = px[first] + along * dx, py[first] + along * dy, aside * dy, aside * dx
     return np.concatenate([mx - bx, mx + bx]), np.concatenate([my + by, my - by]), np.concatenate([valid, valid])

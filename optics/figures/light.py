@@ -2,13 +2,17 @@
 
 import math
 
+import numpy as np
+
 from matplotlib.figure import Figure
 
-from optics.figures.canvas import chart, lost, three
-from optics.figures.palette import LIGHT, SMALL, TEXT, THIN, WIDTH_IN, Palette
+from optics.figures.canvas import chart, lost, round_length, three, width_of
+from optics.figures.palette import LIGHT, LINE, SMALL, TEXT, THIN, WIDTH_IN, Palette
 from optics.report.answer import Report
+from optics.report.views import Spectra
 
 ROW = 0.275  # inches a step
+VISIBLE = (380.0, 780.0)
 
 
 def budget(report: Report, *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) -> Figure:
@@ -55,3 +59,51 @@ def _lumens_above(axes, palette: Palette, lamp: float, end: float) -> None:
     above.set_xlabel("light left, lm", color=palette.ink, fontsize=TEXT)
     above.tick_params(colors=palette.soft, labelsize=SMALL, width=THIN, length=3)
     above.spines["top"].set(color=palette.soft, linewidth=THIN)
+
+
+def spectra(view: Spectra, *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) -> Figure:
+    """The lamp's spectrum, and the shapes of what is delivered and of what the viewer takes, each enlarged as it says."""
+    figure, axes = chart(width_in, 3.0, palette, left=0.82, right=0.2, bottom=0.52, top=0.42)
+    x, unit, factor = view.wavelength_nm, *_watts(float(view.lamp_w_nm.max()))
+    some = np.flatnonzero(view.lamp_w_nm > 1e-3 * view.lamp_w_nm.max())
+    low, high = (x[some[0]], x[some[-1]]) if some.size else (x[0], x[-1])
+    axes.axvspan(max(low, VISIBLE[0]), min(high, VISIBLE[1]), color=palette.ghost, linewidth=0)
+    most, top = _top(view.lamp_w_nm)
+    curves = [("lamp", view.lamp_w_nm, 1.0, palette.soft, "solid")]
+    for name, power, color, style in (
+        ("out of the tip" if view.seen_w_nm.max() > 0 else "delivered", view.delivered_w_nm, palette.light, "solid"),
+        ("seen", view.seen_w_nm, palette.back, "dashed"),
+    ):
+        if power.max() > 0:
+            times = round_length(1.001 * _top(view.lamp_w_nm)[0] / power.max())
+            curves.append((name if times == 1 else f"{name} ×{_times(times)}", power, times, color, style))
+    at = 0.0
+    for name, power, times, color, style in curves:
+        axes.fill_between(x, power * factor * times, color=color, alpha=0.14, linewidth=0)
+        axes.plot(x, power * factor * times, color=color, linewidth=LINE, linestyle=style)
+        axes.plot([at, at + 0.05], [1.085, 1.085], color=color, linestyle=style, linewidth=LINE, transform=axes.transAxes, clip_on=False)
+        axes.text(at + 0.06, 1.085, name, color=palette.ink, fontsize=SMALL, va="center", transform=axes.transAxes)
+        at += 0.11 + width_of(name, SMALL) / (width_in - 1.02)
+    if most > top:   # a line that would flatten everything else
+        peak = x[int(np.argmax(view.lamp_w_nm))]
+        axes.annotate(f"line at {three(peak)} nm, up to {three(most * factor)}", (peak, top * factor), (6, -4), textcoords="offset points",
+                      color=palette.soft, fontsize=SMALL, va="top")  # fmt: skip
+    axes.set(xlim=(low, high), ylim=(0, top * factor * 1.03), xlabel="wavelength, nm", ylabel=f"power, {unit}")
+    axes.yaxis.set_major_formatter(lambda value, _: three(value))
+    return figure
+
+
+def _top(power: np.ndarray) -> tuple[float, float]:
+    """The highest value, and where the scale ends: lower, when a narrow line stands far above all the rest."""
+    most = max(float(power.max()), 1e-12)
+    broad = float(np.quantile(power[power > 1e-3 * most], 0.93)) if (power > 0).any() else most
+    return most, most if most < 3 * broad else 1.5 * broad
+
+
+def _times(value: float) -> str:
+    return three(value) if value < 1e4 else f"{value:.0e}".replace("e+0", "e").replace("e", "·10^").replace("1·", "")
+
+
+def _watts(most: float) -> tuple[str, float]:
+    """The unit of power per nm that reads best, and what to multiply by."""
+    return ("W/nm", 1.0) if most >= 0.1 else ("mW/nm", 1e3) if most >= 1e-4 else ("µW/nm", 1e6)

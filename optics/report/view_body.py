@@ -12,7 +12,7 @@ from optics.chain.target import field_of_view
 from optics.fiberscope import Fiberscope
 from optics.units import rad_from_deg
 
-LEG = 1.3  # straight legs of the bore that are shown, in bores, beyond half the longest tip
+LEG = 0.6  # straight legs of the bore that are shown, in bores, beyond the ends of the longest tip
 CORNER = np.linspace(0.0, np.pi / 2, 9)
 
 
@@ -66,7 +66,9 @@ def section_view(fiberscope: Fiberscope) -> SectionView | None:
     lumen, needed = float(body["lumen_mm"]), float(layout.lumen_mm[0])
     centers = _to_the_wall(layout.centers_mm[0], sizes[0], walled, (max(lumen, needed) - section.clearance_mm) / 2)
     axis, rest = centers[0], iter(centers[1:])
-    lit = [next(rest) for _ in light] if light else [_on_the_head(axis, head, form, ports, port) for port in ports]
+    if form == "crescent":  # its head part is the outer circle; the objective lies off the middle
+        axis = axis - np.array(ports[0][:2])
+    lit = [next(rest) for _ in light] if light else [axis + np.array(port[:2]) for port in ports]
     parts += [Part("light port" if form else "light guide", "light", *map(float, at), float(port[2])) for at, port in zip(lit, ports)]
     if np.isfinite(image_mm):
         parts += [Part("image part", "image", *map(float, axis), core), Part("image", "cores", *map(float, axis), image_mm)]
@@ -88,14 +90,6 @@ def _image_part_mm(fiberscope: Fiberscope, image_mm: float) -> float:
     if not np.isfinite(image_mm):
         return 0.0
     return float(jacketed_mm(bundle_mm=image_mm, jacket_mm=section.image_jacket_mm, barrel_mm=section.objective_barrel_mm or 0.0))
-
-
-def _on_the_head(axis: np.ndarray, head: float, form: str, ports: list, port: tuple) -> np.ndarray:
-    """Center of a port that belongs to the head part: a ring around it, a crescent's outer circle, a placed port.
-
-    The head of a crescent is its outer circle, so the objective lies off the head's center.
-    """
-    return axis + (0.0 if form == "crescent" else 1.0) * np.array(port[:2])
 
 
 def _to_the_wall(centers: np.ndarray, sizes: np.ndarray, walled: np.ndarray, reach: float) -> np.ndarray:
@@ -140,7 +134,8 @@ def passage_view(fiberscope: Fiberscope) -> PassageView | None:
     rigid, longest = (value[name] if np.isfinite(value[name]) else None for name in ("rigid_tip_mm", "longest_rigid_tip_mm"))
     turn = rad_from_deg(asked.bend_deg or 0.0) if asked.centerline_radius_mm else 0.0
     inner = (asked.centerline_radius_mm or bore) - bore / 2
-    leg = LEG * bore + max(rigid or 0.0, 0.5 * (longest or 0.0) - inner * np.sin(turn / 2), 0.0) * (1.0 if turn == 0 else 0.6)
+    reach = max(rigid or 0.0, longest or 0.0) / 2
+    leg = LEG * bore + max(reach - inner * np.tan(turn / 2) if turn < np.pi / 2 + 1e-9 else 0.0, 0.0)
     edge = min(asked.edge_radius_mm, tip / 2)
     side = inner if tip <= bore else inner + (bore - tip) / 2
     shapes = [

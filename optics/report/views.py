@@ -1,4 +1,4 @@
-"""What the pictures show, as plain arrays: target map, cross-section, passage, spectra. No drawing.
+"""What the pictures show, as plain arrays: target map and spectra here, cross-section and passage next door. No drawing.
 
 Each view is of one design and calls the chain's stages; a design that has no such part gives None.
 """
@@ -7,24 +7,27 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.body.lumen import smallest_lumens
-from optics.body.section import jacketed_mm
 from optics.chain.columns import Columns, columns
 from optics.chain.evaluate import evaluate
 from optics.chain.fit import fit
 from optics.chain.light import Light, light, medium_index
-from optics.chain.target import field_of_view, image_size_mm, pupil_depth_mm
-from optics.fiberscope import Fiberscope
+from optics.chain.target import field_of_view, port_objects, pupil_depth_mm
+from optics.fiberscope import BundleImage, Fiberscope
 from optics.image.objective import accepted_fraction, face_irradiance_factor, magnification, working_f_number
 from optics.media.face import face_transmission
 from optics.media.loss import attenuation_transmission
+from optics.report.view_body import Part, PassageView, SectionView, passage_view, section_view
 from optics.scene.exit_cone import ExitCone
 from optics.scene.irradiance import bore_irradiance_w_m2, plane_irradiance_w_m2, port_reach_mm
-from optics.scene.ports import Annulus, Crescent, Disc, PlacedPorts, Port
+from optics.scene.ports import Disc, Port
 from optics.scene.surface import seen_wall_mm
-from optics.spectrum import GRID_NM, luminous_flux_lm, on_grid, photopic_weight
-from optics.units import deg_from_rad, m2_from_mm2, mm2_from_um2, rad_from_deg
+from optics.spectrum import GRID_NM, covered, on_grid, photopic_weight
+from optics.units import deg_from_rad, m2_from_mm2, rad_from_deg
 from optics.viewer.camera import relay_fraction
+
+__all__ = [
+    "Part", "PassageView", "PortMark", "SectionView", "Spectra", "TargetMap", "passage_view", "section_view", "spectra", "target_map",
+]  # fmt: skip
 
 MARGIN = 1.25  # the map's half-width over the radius of the field
 RIM = np.linspace(0.0, 2 * np.pi, 181)
@@ -68,7 +71,7 @@ def target_map(fiberscope: Fiberscope, points: int = 121) -> TargetMap | None:
         return None
     table = columns([fiberscope])
     lit, seen = light(table), field_of_view(table)
-    ports = scene_ports(fiberscope, fit(table, seen["image_mm"])[1])
+    ports = port_objects({name: found[0] for name, found in fit(table, seen["image_mm"])[1].items()})
     lumens, cone = float(lit.value["delivered_lm"][0]), exit_cone(lit, float(medium_index(table)[0]))
     radius = float(seen["field_radius_mm"][0])
     target, needs = fiberscope.scene.target, fiberscope.needs
@@ -104,19 +107,6 @@ def exit_cone(lit: Light, index: float) -> ExitCone:
     return ExitCone(tuple(edges[np.concatenate([[True], wide])]), tuple(flux[wide] / flux[wide].sum()))
 
 
-def scene_ports(fiberscope: Fiberscope, placed: dict[str, np.ndarray]) -> tuple[Port, ...]:
-    """The first design's ports with their tilts, from where the chain places them (a negative radius is cut out)."""
-    x, y, radius = (placed[name][0] for name in ("x_mm", "y_mm", "radius_mm"))
-    if (radius < 0).any():
-        outer, inner = float(radius[0]), float(-radius[1])
-        return (Annulus(inner, outer) if x[0] == 0 else Crescent(float(x[0]), inner, outer),)
-    given = fiberscope.scene.ports
-    if isinstance(given, PlacedPorts):
-        return given.discs()
-    tilt, turn = getattr(given, "tilt_deg", 0.0), deg_from_rad(np.arctan2(y, x))
-    return tuple(Disc(*map(float, (x[i], y[i], radius[i], tilt, turn[i]))) for i in np.flatnonzero(radius > 0))
-
-
 def _lit_radius_mm(ports: tuple[Port, ...], cone: ExitCone, distance_mm: float) -> float:
     """How far from the axis light reaches on a facing plane; a very wide cone is cut at four distances."""
     sine2 = cone.lit_sine2_share[1]
@@ -137,16 +127,15 @@ def _rim(table: Columns, radius: float) -> tuple[np.ndarray, np.ndarray]:
 def _on_wall(table: Columns, shown: dict, radius: float, half: float, points: int):
     """Map of a bore's wall, unrolled: around, depth, illuminance, and the two depths between which it is seen."""
     number = {name: float(table[f"scene.target.{name}"][0]) for name in ("bore_mm", "distance_mm", "near_mm", "far_mm")}
-    far = number["distance_mm"] if np.isnan(number["far_mm"]) else number["far_mm"]
-    bore, depth = number["bore_mm"], max(far, number["distance_mm"]) * MARGIN
+    far = 2 * number["distance_mm"] if np.isnan(number["far_mm"]) else number["far_mm"]
+    bore, depth = number["bore_mm"], far * MARGIN
     u, v = np.linspace(-np.pi * bore / 2, np.pi * bore / 2, points), np.linspace(depth / points, depth, points)
     lux = bore_irradiance_w_m2(**shown, bore_mm=bore, z_mm=v[:, None], azimuth_deg=deg_from_rad(2 * u[None, :] / bore))
     if not np.isfinite(radius):
         return u, v, lux, (np.empty(0), np.empty(0))
-    near = number["near_mm"] if np.isfinite(number["near_mm"]) else 1e-9
     start, end = seen_wall_mm(
         bore_mm=bore, field_radius_mm=radius, distance_mm=number["distance_mm"], pupil_depth_mm=float(pupil_depth_mm(table)[0]),
-        near_mm=near, far_mm=far,
+        near_mm=np.nan_to_num(number["near_mm"]), far_mm=far,
     )  # fmt: skip
     return u, v, lux, (u[[0, -1]], np.array([float(start), float(end)]))
 
@@ -157,3 +146,54 @@ def _marks(ports: tuple[Port, ...]) -> tuple[PortMark, ...]:
         else PortMark(getattr(port, "x_mm", 0.0), 0.0, 2 * port.outer_radius_mm)
         for port in ports
     )  # fmt: skip
+
+
+@dataclass(frozen=True, slots=True)
+class Spectra:
+    """Spectral power on the grid: of the lamp, out of the tip, and what the viewer takes of the whole picture.
+
+    `seen_w_nm` is weighted by the camera's response (by V(lambda) for an eye); zeros without an image.
+    """
+
+    wavelength_nm: np.ndarray
+    lamp_w_nm: np.ndarray
+    delivered_w_nm: np.ndarray
+    seen_w_nm: np.ndarray
+
+
+def spectra(fiberscope: Fiberscope) -> Spectra:
+    """The color of the light: in, out, and on its way back to the viewer."""
+    table = columns([fiberscope])
+    found = evaluate(table)
+    spectrum = {name: power[0] for name, power in found.spectrum_w_nm.items()}
+    seen = np.zeros_like(GRID_NM)
+    if fiberscope.image is not None and fiberscope.scene is not None:
+        value = {name: float(number[0]) for name, number in found.value.items()}
+        seen = spectrum["target"] * _back_m2(fiberscope, value) / float(medium_index(table)[0]) ** 2
+    return Spectra(GRID_NM, spectrum["lamp"], spectrum["delivered"], seen)
+
+
+def _back_m2(fiberscope: Fiberscope, value: dict[str, float]) -> np.ndarray:
+    """What the viewer takes for each W/m2 on the target, by wavelength: the image's area times all factors on the way."""
+    scene, image, viewer = fiberscope.scene, fiberscope.image, fiberscope.viewer
+    lens, size = image.objective, magnification(focal_mm=image.objective.focal_mm, focus_mm=value["focus_from_pupil_mm"])
+    f_number = working_f_number(
+        focal_mm=lens.focal_mm, f_number=lens.f_number, magnification=size, exit_pupil_mm=lens.exit_pupil_mm or np.inf
+    )
+    tau = lens.transmission * (image.tip.transmission if image.tip else 1.0)
+    lit = face_irradiance_factor(f_number=f_number, magnification=0.0, transmission=tau) * on_grid(scene.target.reflectance) / np.pi
+    lit = lit * m2_from_mm2(np.pi / 4 * value["image_mm"] ** 2)
+    if not isinstance(image, BundleImage):
+        return lit
+    bundle, cone = image.bundle, float(min(0.5 / f_number, 1.0))
+    core = np.pi / 4 * bundle.core_um**2 / (np.sqrt(3.0) / 2 * bundle.pitch_um**2)
+    taken = accepted_fraction(core_na=bundle.na, cone_sine=cone, tilt_sine=0.0)
+    faces = face_transmission(core_index=bundle.core_index, outside_index=1.0, na=min(bundle.na, cone)) ** 2
+    loss = attenuation_transmission(loss_db_m=on_grid(bundle.attenuation), length_m=bundle.length_m, stretch=1.0)
+    lit = lit * core * taken * faces * np.where(covered(bundle.attenuation), loss, 0.0)
+    if viewer.form == "eye":
+        return lit * viewer.eye.transmission * photopic_weight()
+    camera = viewer.camera
+    response = on_grid(camera.response) if camera.response else 1.0
+    relay = relay_fraction(relay_na=camera.relay_na, cone_sine=min(cone, bundle.na)) * camera.relay_transmission
+    return lit * relay * response

@@ -113,8 +113,8 @@ def outer_radius_mm(*, area_mm2: Numbers, inner_mm: Numbers) -> np.ndarray:
 def ring_azimuths_deg(count: int) -> np.ndarray:
     """Directions of evenly spaced ports, the first on +x.
 
-    >>> ring_azimuths_deg(4)
-    array([  0.,  90., 180., 270.])
+    >>> ring_azimuths_deg(4).tolist()
+    [0.0, 90.0, 180.0, 270.0]
     """
     require("count", count, "at least 1", count >= 1)
     return 360.0 * np.arange(count) / count

@@ -68,7 +68,7 @@ def needed_contrast(*, frequency_lp_mm: Numbers, snr: Numbers, cell_um2: Numbers
     below one. With f0 = 1/(2 sqrt(cell)) this is (k/SNR) min(1, f/f0). SNR 0 needs more than any contrast.
     References: rose_1948 (threshold), EMVA 1288 (SNR of one cell).
 
-    >>> needed_contrast(frequency_lp_mm=np.array([10.0, 1000.0]), snr=50.0, cell_um2=100.0, threshold_snr=5.0).tolist()
+    >>> needed_contrast(frequency_lp_mm=np.array([10.0, 1000.0]), snr=50.0, cell_um2=100.0, threshold_snr=5.0).round(9).tolist()
     [0.02, 0.1]
     """
     not_negative(snr=snr, threshold_snr=threshold_snr)

@@ -25,7 +25,10 @@ def excess(points, bore, radius, bend):
     leg_x, leg_y = x - radius * out[0], y - radius * out[1]
     in_leg = np.hypot(leg_x * out[0] + leg_y * out[1], z)
     in_arc = np.hypot(np.hypot(x, y) - radius, z)
-    return np.where(np.arctan2(x, y) <= half, in_arc, np.where(leg_x * along[0] + leg_y * along[1] >= 0, in_leg, np.inf)) - bore / 2
+    return (
+        np.where(np.arctan2(x, y) <= half, in_arc, np.where(leg_x * along[0] + leg_y * along[1] >= 0, in_leg, np.inf))
+        - bore / 2
+    )
 
 
 def solid(length, tip, edge, angles):
@@ -36,7 +39,9 @@ def solid(length, tip, edge, angles):
     for sign in (-1, 1):
         profile += [(sign * (length / 2 - edge + edge * np.sin(t)), tip / 2 - edge + edge * np.cos(t)) for t in turn]
     u, r = np.array(profile).T
-    return np.stack([np.repeat(u, len(angles)), np.outer(r, np.cos(angles)).ravel(), np.outer(r, np.sin(angles)).ravel()], axis=1)
+    return np.stack(
+        [np.repeat(u, len(angles)), np.outer(r, np.cos(angles)).ravel(), np.outer(r, np.sin(angles)).ravel()], axis=1
+    )
 
 
 def least_excess(length, tip, edge, station, bore, radius, bend):
@@ -59,7 +64,9 @@ def least_excess(length, tip, edge, station, bore, radius, bend):
     flat = solid(length, tip, edge, np.array([0.0, np.pi]))
     shift, tilt, wide, steep = 0.0, 0.0, bore / 2, 0.6
     for _ in range(7):
-        shifts, tilts = (a.ravel() for a in np.meshgrid(shift + wide * np.linspace(-1, 1, 9), tilt + steep * np.linspace(-1, 1, 9)))
+        shifts, tilts = (
+            a.ravel() for a in np.meshgrid(shift + wide * np.linspace(-1, 1, 9), tilt + steep * np.linspace(-1, 1, 9))
+        )
         best = np.argmin(stands_out(flat, shifts, tilts))
         shift, tilt, wide, steep = shifts[best], tilts[best], wide / 3, steep / 3
     whole = solid(length, tip, edge, np.linspace(0, 2 * np.pi, 24, endpoint=False))
@@ -105,7 +112,9 @@ def test_tube_takes_the_largest_arc_that_stays_inside(seed):
     draw = np.random.default_rng(seed)
     bore, bend = draw.uniform(4, 12), np.deg2rad(draw.uniform(30, 175))
     radius, tube = bore * draw.uniform(0.6, 4), bore * draw.uniform(0.3, 0.95)
-    largest = float(tube_bend_radius_mm(bore_mm=bore, centerline_radius_mm=radius, tube_mm=tube, bend_deg=np.rad2deg(bend)))
+    largest = float(
+        tube_bend_radius_mm(bore_mm=bore, centerline_radius_mm=radius, tube_mm=tube, bend_deg=np.rad2deg(bend))
+    )
     turn = np.linspace(0, bend / 2, 400)
 
     def stands_out(arc):
@@ -124,7 +133,10 @@ def test_tube_takes_the_largest_arc_that_stays_inside(seed):
 def test_mitre_is_the_bend_with_its_inner_wall_shrunk():
     wide = longest_through_mitre_mm(bore_mm=10.0, tip_mm=8.0, bend_deg=90.0)
     assert wide == pytest.approx(2 * np.sqrt(100 - 64))
-    near = [float(longest_through_mitre_mm(bore_mm=10.0, tip_mm=10 * np.cos(np.pi / 4) + d, bend_deg=90.0)) for d in (-1e-9, 1e-9)]
+    near = [
+        float(longest_through_mitre_mm(bore_mm=10.0, tip_mm=10 * np.cos(np.pi / 4) + d, bend_deg=90.0))
+        for d in (-1e-9, 1e-9)
+    ]
     assert near[0] == pytest.approx(near[1], abs=1e-6)
 
 
@@ -153,7 +165,10 @@ def test_more_room_never_shortens_the_tip():
     assert (longest_rigid_tip_mm(bore_mm=bore, **{**case, "tip_mm": case["tip_mm"] * 0.98}) > plain).all()
     assert (longest_rigid_tip_mm(bore_mm=bore, **{**case, "bend_deg": case["bend_deg"] * 0.9}) >= plain).all()
     assert (longest_rigid_tip_mm(bore_mm=bore, **{**case, "edge_radius_mm": case["tip_mm"] * 0.1}) > plain).all()
-    assert (longest_rigid_tip_mm(bore_mm=bore, **case) >= longest_through_mitre_mm(bore_mm=bore, tip_mm=case["tip_mm"], bend_deg=case["bend_deg"])).all()
+    assert (
+        longest_rigid_tip_mm(bore_mm=bore, **case)
+        >= longest_through_mitre_mm(bore_mm=bore, tip_mm=case["tip_mm"], bend_deg=case["bend_deg"])
+    ).all()
     one = [float(longest_rigid_tip_mm(bore_mm=bore[i], **{k: v[i] for k, v in case.items()})) for i in range(20)]
     np.testing.assert_allclose(plain[:20], one, rtol=1e-12)
 
@@ -179,7 +194,9 @@ def test_push_and_steering():
     assert push_factor(friction_factor=0.0, bend_deg=720.0) == 1.0
     twice = push_factor(friction_factor=0.2, bend_deg=90.0) ** 2
     assert push_factor(friction_factor=0.2, bend_deg=180.0) == pytest.approx(float(twice))
-    height = steered_height_mm(bending_radius_mm=15.0, angle_deg=np.linspace(0, 180, 37), rigid_tip_mm=10.0, tube_mm=6.0)
+    height = steered_height_mm(
+        bending_radius_mm=15.0, angle_deg=np.linspace(0, 180, 37), rigid_tip_mm=10.0, tube_mm=6.0
+    )
     assert height[0] == pytest.approx(6.0)
     assert height[-1] == pytest.approx(36.0)
     # the outline drawn point by point: arc and tip, both sides
