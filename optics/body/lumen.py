@@ -123,7 +123,8 @@ def upright(centers: np.ndarray, radii: np.ndarray) -> np.ndarray:
     y = centers[..., 0] * ux + centers[..., 1] * uy
     aside = (np.abs(x) > 1e-6 * size) & (radii > 0)
     side = np.where(np.take_along_axis(x, aside.argmax(axis=1)[:, None], axis=1) < 0, -1.0, 1.0)
-    x = np.where(aside, x * side, 0.0)
+    x[rows, first] = 0.0
+    x = x * side
     return np.where((radii > 0)[..., None], np.stack([x, y], axis=-1), 0.0)
 
 

@@ -3,6 +3,7 @@
 import argparse
 
 from optics.commands.terminal import add_design, as_json, opened, paragraph, rounded, table
+from optics.needs import AT_MOST
 from optics.report.answer import Report
 from optics.report.reasons import limit_reason
 from optics.report.size import size
@@ -44,7 +45,7 @@ def written(report: Report) -> str:
                 line.name,
                 rounded(line.wanted),
                 rounded(line.got),
-                _margin(line.margin),
+                _margin(line.margin, line.name),
             )
             for line in report.needs
         ]
@@ -63,8 +64,13 @@ def _screening(report: Report) -> str:
     return "\n".join(said)
 
 
-def _margin(margin: float | None) -> str:
-    return "-" if margin is None else f"{margin:+.0%}"
+def _margin(margin: float | None, name: str) -> str:
+    """A relative margin in percent; as a multiple where percent stop helping."""
+    if margin is None:
+        return "-"
+    if name not in AT_MOST and margin > 2:
+        return f"{1 + margin:.{0 if margin > 9 else 1}f} times"
+    return f"{margin:+.0%}"
 
 
 def _pairs(rows) -> str:

@@ -75,7 +75,7 @@ def spectra(view: Spectra, *, palette: Palette = LIGHT, width_in: float = WIDTH_
         ("seen", view.seen_w_nm, palette.back, "dashed"),
     ):
         if power.max() > 0:
-            times = round_length(1.001 * _top(view.lamp_w_nm)[0] / power.max())
+            times = round_length(1.001 * top / _top(power)[1])
             curves.append((name if times == 1 else f"{name} ×{_times(times)}", power, times, color, style))
     at = 0.0
     for name, power, times, color, style in curves:
@@ -101,7 +101,12 @@ def _top(power: np.ndarray) -> tuple[float, float]:
 
 
 def _times(value: float) -> str:
-    return three(value) if value < 1e4 else f"{value:.0e}".replace("e+0", "e").replace("e", "·10^").replace("1·", "")
+    """A factor in print: 20, or 5·10⁶."""
+    if value < 1e4:
+        return three(value)
+    power = round(math.log10(value / float(f"{value:.0e}"[0])))
+    first = f"{value:.0e}"[0]
+    return ("" if first == "1" else f"{first}·") + "10" + str(power).translate(str.maketrans("0123456789", "⁰¹²³⁴⁵⁶⁷⁸⁹"))
 
 
 def _watts(most: float) -> tuple[str, float]:

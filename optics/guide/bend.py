@@ -12,16 +12,13 @@ import numpy as np
 
 from optics.guide import bend_kernel as table
 from optics.guide import bend_steps as steps
-from optics.spec import beyond, not_negative, positive, require
+from optics.spec import not_negative, positive, require
 from optics.units import Numbers, mm_from_um, rad_from_deg, um_from_mm
 
 # Where the kernel was compared with the trace. Its nodes reach on to Xe = 1.75.
 TESTED = {"relative_bend": (0.0, 0.75), "bend_deg": (0.0, 360.0)}
 
-WEAK_POWER = 1.4  # of the loss against Xe below the table's weakest bend
-BLOCK = 16  # designs worked on at a time: their arrays stay in the cache
 POINTS = 24  # of the average over a filled cone
-_GAUSS = np.array([0.5 - np.sqrt(1 / 12), 0.5 + np.sqrt(1 / 12)])
 _CONE = np.polynomial.legendre.leggauss(POINTS)
 
 
@@ -102,31 +99,10 @@ def bend_transmission(
     shape = x.shape
     x, share, fill, turn = (np.ravel(part) for part in (x, share, fill, rad_from_deg(bend_deg)))
     s = fill[:, None] * (_CONE[0] + 1) / 2
-    survival, _, _ = _table_columns(x, share, turn, with_scores=False)
+    survival, _, _ = table.columns(x, share, turn)
     kept = table.at_level(survival, table.level(s, np.where(x > 0, x, 1.0)[:, None], share[:, None], table.FINE))
     kept = kept * (1 - table.rank_share(1 - 1 / np.maximum(s, 1.0)))
     return np.minimum(kept @ (_CONE[1] / 2), 1.0).reshape(shape)
-
-
-def _table_columns(x, share, turn, *, with_scores=True):
-    """Survival and guided share [design, level] and the spread's scores; outside the table by the laws stated above.
-
-    Angles below the first node blend toward no bend at all; their share of the bend comes back as the
-    last column of the scores' partner.
-    """
-    found = table.kernel()
-    strength = np.maximum(x * (1 - share), 1e-12)
-    angle = np.maximum(turn * np.sqrt((1 - share) / (share * strength)), 1e-12)
-    index, weight = table.corners(strength, angle, share)
-    bent = np.minimum(angle / table.ANGLE_NODES[0], 1.0) * (x > 0)
-    weak = np.minimum(strength / table.BEND_NODES[0], 1.0) ** (WEAK_POWER - 1)
-    beyond_table = strength > table.BEND_NODES[-1]
-    survival = table.blended(found.survival, index, weight)
-    survival = 1 - (bent * weak)[:, None] * (1 - np.where(beyond_table[:, None], 0.0, survival))
-    if not with_scores:
-        return survival, bent, None
-    guided = 1 - (bent * weak)[:, None] * (1 - table.blended(found.guided, index, weight))
-    return survival * guided, bent, table.blended(found.scores, index, weight)
 
 
 def bend_matrix(
@@ -164,27 +140,9 @@ def bend_matrix(
     x, turn = (np.broadcast_to(part, shape + x.shape[-1:]).reshape(-1, x.shape[-1]) for part in (x, turn))
     edges = np.broadcast_to(edges, shape + edges.shape[-1:]).reshape(-1, edges.shape[-1])
     share = np.broadcast_to(share, shape).reshape(-1)
-    out = np.tile(np.eye(edges.shape[1] - 1), (len(edges), 1, 1))
-    acts = (x > 0) & (turn > 0)
-    count, first = acts.sum(axis=1), np.argsort(~acts, axis=1, kind="stable")
-    for bends in np.unique(count[count > 0]):
-        rows = np.flatnonzero(count == bends)
-        for start in range(0, len(rows), BLOCK):
-            some = rows[start : start + BLOCK]
-            order = first[some, :bends]
-            out[some] = _bend_row(
-                edges[some],
-                np.take_along_axis(x[some], order, 1),
-                share[some],
-                np.take_along_axis(turn[some], order, 1),
-            )
-    return out.reshape(*shape, *out.shape[1:])
+    return steps.bend_rows(edges, x, turn, share).reshape(*shape, edges.shape[1] - 1, edges.shape[1] - 1)
 
 
 def _in_order(edges, index):
     rising = np.concatenate([edges[..., :1] >= 0, np.diff(edges, axis=-1) > 0], axis=-1)
     return rising & (edges < index[..., None] ** 2)
-
-
-def _bend_row(edges, x, share, turn):
-    return steps.bend_row(edges, x, share, lambda k: _table_columns(x[:, k], share, turn[:, k]))

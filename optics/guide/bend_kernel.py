@@ -108,6 +108,7 @@ PAIRS = {
     "last": (slice(None), slice(0, 1)),
 }
 NODES = (len(BEND_NODES), len(ANGLE_NODES), len(SHARE_NODES))
+WEAK_POWER = 1.4  # of the loss against Xe below the weakest node
 VECTOR_SCALE = 4.0  # the largest entry of a singular vector that the table can hold
 
 
@@ -190,3 +191,28 @@ def at_level(columns: np.ndarray, level: np.ndarray) -> np.ndarray:
     part = flat - low
     found = np.take_along_axis(columns, low, 1) * (1 - part) + np.take_along_axis(columns, low + 1, 1) * part
     return found.reshape(level.shape)
+
+
+def columns(x, share, turn):
+    """Survival [design, level], the share of it that a straight fiber guides, and (how much of the bend acts, scores).
+
+    The edges of the table: angles below the first node blend toward no bend at all; weaker bends lose as
+    Xe^1.4; beyond the sharpest nothing survives (the mode-count bound, X above 1); longer bends stay at
+    the last angle.
+    """
+    found = kernel()
+    strength = np.maximum(x * (1 - share), 1e-12)
+    angle = np.maximum(turn * np.sqrt((1 - share) / (share * strength)), 1e-12)
+    index, weight = corners(strength, angle, share)
+    acts = np.minimum(angle / ANGLE_NODES[0], 1.0) * (x > 0)
+    loses = acts * np.minimum(strength / BEND_NODES[0], 1.0) ** (WEAK_POWER - 1)
+    inside = (strength <= BEND_NODES[-1])[:, None]
+    survival = 1 - loses[:, None] * (1 - inside * blended(found.survival, index, weight))
+    return survival, (index, weight, loses), acts
+
+
+def guided_columns(place):
+    """Of what survives, the share that the straight fiber guides [design, level]; and the spread's scores."""
+    index, weight, loses = place
+    found = kernel()
+    return 1 - loses[:, None] * (1 - blended(found.guided, index, weight)), blended(found.scores, index, weight)

@@ -10,24 +10,43 @@ import numpy as np
 
 from optics.guide import bend_kernel as table
 
+BLOCK = 16  # designs worked on at a time: their arrays stay in the cache
 _GAUSS = np.array([0.5 - np.sqrt(1 / 12), 0.5 + np.sqrt(1 / 12)])
 
 
-def bend_row(edges, x, share, columns):
-    """Matrix [design, bin in, bin out] of a row of bends that all act: columns(k) gives the table's part for bend k.
+def bend_rows(edges, x, turn, share):
+    """Matrix [design, bin in, bin out] of each design's row of separate bends.
 
-    edges [design, bin + 1] in s; x [design, k]; share [design].
+    edges [design, bin + 1] in s; x, turn (in radians) [design, k]; share [design]. Designs with equally many
+    bends that act go together, BLOCK at a time, each by the same operations as if it were alone.
     """
-    count = x.shape[1]
+    out = np.tile(np.eye(edges.shape[1] - 1), (len(edges), 1, 1))
+    acts = (x > 0) & (turn > 0)
+    design, bend = np.nonzero(acts)
+    survival, place, partly = table.columns(x[design, bend], share[design], turn[design, bend])
+    guided, scores = table.guided_columns(place)
+    kept = survival * guided
+    count = acts.sum(axis=1)
+    first = np.cumsum(count) - count
+    for bends in np.unique(count[count > 0]):
+        rows = np.flatnonzero(count == bends)
+        for some in np.split(rows, np.arange(BLOCK, len(rows), BLOCK)):
+            parts = (first[some] + k for k in range(bends))
+            ones = ((x[design[at], bend[at]], kept[at], partly[at], scores[at]) for at in parts)
+            out[some] = _row(edges[some], share[some], ones, bends)
+    return out
+
+
+def _row(edges, share, ones, count):
     state = None
-    for k in range(count):
+    for k, (x, kept, partly, scores) in enumerate(ones):
         kind = "only" if count == 1 else "first" if k == 0 else "last" if k == count - 1 else "middle"
-        one = _one_bend(edges, x[:, k], share, *columns(k), kind)
+        one = _one_bend(edges, x, share, kept, partly, scores, kind)
         state = one[:, :, 0] if k == 0 else _followed(state, one)
     return _not_below_zero(state[:, :, 0])
 
 
-def _one_bend(edges, x, share, survival, bent, scores, kind):
+def _one_bend(edges, x, share, survival, acts, scores, kind):
     """[design, bin in, moment in, moment out, bin out] of one bend."""
     designs, bins = len(edges), edges.shape[1] - 1
     vectors = table.kernel().vectors[kind]
@@ -44,12 +63,12 @@ def _one_bend(edges, x, share, survival, bent, scores, kind):
     one = kept @ _landings(scaled, powers) / np.diff(scaled)[:, :, None, None]
     into, out = (len(range(table.MOMENTS)[part]) for part in table.PAIRS[kind])
     one = one.reshape(designs, bins, into, out, bins)
-    partly = bent < 1
+    partly = acts < 1
     if partly.any():
         stays = np.zeros((bins, into, out, bins))
         stays[np.arange(bins), :, :, np.arange(bins)] = np.eye(into, out)
-        stay = (1 - bent[partly])[:, None, None, None, None] * keeps[partly].sum(-1)[:, :, None, None, None] * stays
-        one[partly] = bent[partly][:, None, None, None, None] * one[partly] + stay
+        stay = (1 - acts[partly])[:, None, None, None, None] * keeps[partly].sum(-1)[:, :, None, None, None] * stays
+        one[partly] = acts[partly][:, None, None, None, None] * one[partly] + stay
     return one
 
 

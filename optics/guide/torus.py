@@ -11,6 +11,7 @@ import numpy as np
 
 CHUNK = 16_000  # rays worked on at a time
 CREEP = 1e-3  # least normal component of a reflection, over the limit
+MOST_HITS = 20_000  # of one ray: the few that creep along the wall or hardly advance are left at that
 
 
 def _first_chord(b, a, u, y, dy):
@@ -61,40 +62,49 @@ def through(state, radius, limit, bend_rad):
     """Trace [5, ray] of (u, y, u', y', z') through bend_rad; the exit state, nan where the ray is lost.
 
     New rays join whenever half of the working set has ended, so that the few rays with very many hits
-    do not make the rest wait.
+    do not make the rest wait. A ray with more than MOST_HITS counts as kept, in its state of then.
     """
     out = np.full_like(state, np.nan)
-    work, live, left = state[:, :0], np.arange(0), np.zeros(0)
-    waiting = 0
-
-    def advance(work, live, left, chord):
-        u, y, du, dy, dz = work
-        b = du + (u * du + y * dy) / radius
-        t = chord(b, 0.5 / radius, u, y, dy)
-        at, along = radius + u + du * t, dz * t
-        turned = np.arctan2(along, at)
-        ends = turned >= left
-        if ends.any():
-            out[:, live[ends]] = _cut(work[:, ends], radius, left[ends])
-        rho = np.hypot(at, along)
-        du, dz = (du * at + dz * along) / rho, dz * (radius + u) / rho
-        u, y = rho - radius, y + dy * t
-        size = np.hypot(u, y)
-        u, y = u / size, y / size
-        normal = du * u + dy * y
-        back = normal + np.maximum(normal, CREEP * limit)
-        stay = (normal <= limit) & ~ends
-        work, left = np.stack([u, y, du - back * u, dy - back * y, dz]), left - turned
-        return (work, live, left) if stay.all() else (work[:, stay], live[stay], left[stay])
-
-    while live.size or waiting < state.shape[1]:
-        if live.size < CHUNK // 2 and waiting < state.shape[1]:
-            fresh = np.arange(waiting, min(waiting + CHUNK - live.size, state.shape[1]))
+    work, live, left = state[:, :0], np.arange(0), np.zeros((2, 0))
+    waiting, count = 0, state.shape[1]
+    while live.size or waiting < count:
+        if live.size < CHUNK // 2 and waiting < count:
+            fresh = np.arange(waiting, min(waiting + CHUNK - live.size, count))
             waiting = fresh[-1] + 1
-            joined = advance(state[:, fresh], fresh, np.full(fresh.size, float(bend_rad)), _first_chord)
+            budget = np.stack([np.full(fresh.size, float(bend_rad)), np.full(fresh.size, float(MOST_HITS))])
+            joined = _hit(out, state[:, fresh], fresh, budget, radius, limit, _first_chord)
             work, live, left = (np.concatenate(pair, axis=-1) for pair in zip((work, live, left), joined))
-        work, live, left = advance(work, live, left, _next_chord)
+        work, live, left = _hit(out, work, live, left, radius, limit, _next_chord)
     return out
+
+
+def _hit(out, work, live, left, radius, limit, chord):
+    """Every ray on to its next hit of the wall and reflected there; those that end go to `out` or are dropped.
+
+    left: the angle and the hits that each ray still has.
+    """
+    u, y, du, dy, dz = work
+    b = du + (u * du + y * dy) / radius
+    t = chord(b, 0.5 / radius, u, y, dy)
+    at, along = radius + u + du * t, dz * t
+    turned = np.arctan2(along, at)
+    ends = turned >= left[0]
+    if ends.any():
+        out[:, live[ends]] = _cut(work[:, ends], radius, left[0, ends])
+    rho = np.hypot(at, along)
+    du, dz = (du * at + dz * along) / rho, dz * (radius + u) / rho
+    u, y = rho - radius, y + dy * t
+    size = np.hypot(u, y)
+    u, y = u / size, y / size
+    normal = du * u + dy * y
+    back = normal + np.maximum(normal, CREEP * limit)
+    stay = (normal <= limit) & ~ends
+    work, left = np.stack([u, y, du - back * u, dy - back * y, dz]), left - np.stack([turned, np.ones_like(turned)])
+    tired = stay & (left[1] <= 0)
+    if tired.any():
+        out[:, live[tired]] = work[:, tired]
+        stay &= ~tired
+    return (work, live, left) if stay.all() else (work[:, stay], live[stay], left[:, stay])
 
 
 def _cut(state, radius, left):

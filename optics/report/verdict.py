@@ -43,10 +43,10 @@ def _distance(line: NeedLine) -> float:
 
 def _told(line: NeedLine) -> str:
     unit = UNITS.get(unit_of(line.name) or "", "")
-    wanted = f"{'at most' if line.name in AT_MOST else 'at least'} {line.wanted:.4g} {unit}".strip()
+    wanted = f"{'at most' if line.name in AT_MOST else 'at least'} {line.wanted:.3g} {unit}".strip()
     if line.got is None:
         return f"{NAMES[line.name]}: nothing reached, {wanted} wanted"
-    return f"{NAMES[line.name]}: {line.got:.4g} {unit}".rstrip() + f", {wanted} wanted"
+    return f"{NAMES[line.name]}: {line.got:.3g} {unit}".rstrip() + f", {wanted} wanted"
 
 
 def _limit(report: Report) -> str:
