@@ -198,6 +198,11 @@ RULES = (
         for field, other, comparison, said in fiber.RULES
     ),
     Rule(
+        ("guide.bundle.exit_mm", "guide.bundle.diameter_mm", "guide.fiber.na"),
+        lambda face, bundle, na: na * bundle <= 0.97 * np.asarray(face),
+        "such a taper would need an exit NA above 0.97, which etendue forbids in air: widen the exit face",
+    ),
+    Rule(
         ("guide.bundle.diameter_mm", "guide.fiber.fiber_um"),
         lambda bundle, fiber_um: um_from_mm(bundle) >= fiber_um,
         "the bundle must hold at least one fiber",
@@ -243,6 +248,10 @@ def broken_tables(fiberscope: Fiberscope) -> Iterator[str]:
         yield "source.launch.form is 'rated', which needs source.lamp.flux_lm"
     if (guide.cable is None) != (guide.joint is None):
         yield f"guide.{'joint' if guide.cable else 'cable'} is missing; a cable and the joint to it come together"
+    if guide.bundle.exit_tilt_deg > 0 and fiberscope.scene is not None:
+        ports = fiberscope.scene.ports
+        if ports.form not in ("round", "placed") or getattr(ports, "tilt_deg", 0.0) > 0:
+            yield "guide.bundle.exit_tilt_deg is given; it needs round ports without a tilt of their own"
     if fiberscope.image is not None and fiberscope.scene is None:
         yield "scene is missing; an image needs a target to look at"
     if fiberscope.image is not None and fiberscope.image.form == "bundle" and fiberscope.viewer is None:

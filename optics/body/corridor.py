@@ -10,12 +10,14 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optics.body.passage import longest_rigid_tip_mm
 from optics.spec import not_negative, positive, require
 from optics.units import rad_from_deg
 
 TESTED = {"bend_deg": (10.0, 180.0), "tip_over_bore": (0.2, 0.95), "centerline_over_bore": (0.5, 5.0)}
 
-_STEPS, _HALVINGS = 40, 16  # along a tip's edge to the wall, then toward the crossing
+_ENDS = 1e-9  # mm by which pieces overlap at their joints
+_STEPS, _HALVINGS = 160, 10  # along a tip's edge to the wall, then toward the crossing
 _GRID, _ZOOMS, _NARROWER = 11, 6, 2.5  # places and slants tried, and how they close in
 
 
@@ -30,10 +32,11 @@ class Bend:
 def longest_through_two_bends_mm(
     *, bore_mm: float, tip_mm: float, first: Bend, second: Bend, straight_mm: float
 ) -> float:
-    """Longest rigid tip that passes two bends in one plane with a straight piece between; about a second.
+    """Longest rigid tip that passes two bends in one plane with a straight piece between; half a second.
 
-    To about 0.1 %. Never more than either bend alone lets through. Raises OutOfRange for a tip
-    wider than the bore, and a center-line radius below half the bore.
+    To about 0.1 %. Raises OutOfRange for a tip as wide as the bore, and a center-line radius below
+    half the bore. Infinite where a tip of four times what one bend allows still passes (two slight
+    bends that undo each other leave a straight way).
     References: closed_form (one bend; two like ones in a row are one), independent search otherwise.
     """
     positive(bore_mm=bore_mm, tip_mm=tip_mm)
@@ -44,18 +47,28 @@ def longest_through_two_bends_mm(
         require("bend_deg", abs(bend.bend_deg), "from above 0 to 180", 0 < abs(bend.bend_deg) <= 180)
     pieces = _pieces(first, second, straight_mm)
     start, end = pieces[1].at, pieces[-1].at
-    reach = 4 * (first.radius_mm + second.radius_mm + bore_mm + straight_mm)
+    alone = max(
+        float(
+            longest_rigid_tip_mm(
+                bore_mm=bore_mm,
+                centerline_radius_mm=bend.radius_mm,
+                tip_mm=tip_mm,
+                bend_deg=abs(bend.bend_deg),
+                edge_radius_mm=0.0,
+            )
+        )
+        for bend in (first, second)
+    )
+    reach = 2 * alone + straight_mm
 
-    def lengths(stations, zooms):
-        return np.array([2 * _longest_at(pieces, s, bore_mm, tip_mm, reach, zooms) for s in stations])
-
-    stations = np.linspace(start, end, 33)
-    longest = lengths(stations, 4)
-    for _ in range(3):  # close in on the narrowest cross-section
+    stations = np.linspace(start, end, 41)
+    longest = _longest_at(pieces, stations, bore_mm, tip_mm, reach, 4)
+    for _ in range(2):  # close in on the narrowest cross-section
         k = int(np.argmin(longest))
-        stations = np.linspace(stations[max(k - 1, 0)], stations[min(k + 1, len(stations) - 1)], 7)
-        longest = lengths(stations, _ZOOMS)
-    return float(longest.min())
+        stations = np.linspace(stations[max(k - 1, 0)], stations[min(k + 1, len(stations) - 1)], 9)
+        longest = _longest_at(pieces, stations, bore_mm, tip_mm, reach, _ZOOMS)
+    found = float(longest.min())
+    return found if found < 1.99 * reach else np.inf
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +82,10 @@ class _Piece:
     length: float
     curvature: float
 
+    def point_at(self, station):
+        """The same, after so much of the whole center line."""
+        return self.point(station - self.at)
+
     def point(self, along):
         """Place and heading after so much of the piece."""
         turn = self.curvature * along
@@ -80,16 +97,15 @@ class _Piece:
 
     def distance(self, x, y):
         """Distance of points from the piece, infinite where they lie beyond its ends."""
+        c, s = np.cos(self.heading), np.sin(self.heading)
         dx, dy = x - self.x, y - self.y
-        ahead = dx * np.cos(self.heading) + dy * np.sin(self.heading)
-        left = dy * np.cos(self.heading) - dx * np.sin(self.heading)
+        ahead, left = dx * c + dy * s, dy * c - dx * s
         if self.curvature == 0:
-            return np.where((ahead >= -1e-9) & (ahead <= self.length + 1e-9), np.abs(left), np.inf)
-        r = 1 / abs(self.curvature)
-        left = left * np.sign(self.curvature)
-        turn = np.arctan2(ahead, r - left)
-        inside = (turn >= -1e-9) & (turn <= self.length / r + 1e-9)
-        return np.where(inside, np.abs(np.hypot(ahead, r - left) - r), np.inf)
+            return np.where((ahead >= -_ENDS) & (ahead <= self.length + _ENDS), np.abs(left), np.inf)
+        r, turn = 1 / abs(self.curvature), self.length * abs(self.curvature)
+        out = r - left if self.curvature > 0 else r + left  # from the arc's center, along its first radius
+        inside = (ahead >= -_ENDS) & (ahead * np.cos(turn) - out * np.sin(turn) <= _ENDS)
+        return np.where(inside, np.abs(np.sqrt(ahead * ahead + out * out) - r), np.inf)
 
 
 def _pieces(first: Bend, second: Bend, straight_mm: float) -> list[_Piece]:
@@ -107,28 +123,30 @@ def _pieces(first: Bend, second: Bend, straight_mm: float) -> list[_Piece]:
     return pieces
 
 
-def _longest_at(pieces, station, bore, tip, reach, zooms) -> float:
-    """Half the longest tip whose middle lies on one cross-section, over its places and slants."""
-    piece = next(p for p in reversed(pieces) if station >= p.at - 1e-12)
-    x, y, heading = piece.point(station - piece.at)
-    place, slant, wide, steep, best = 0.0, 0.0, (bore - tip) / 2, 0.7, 0.0
-    spread = np.linspace(-1, 1, _GRID)
+def _longest_at(pieces, stations, bore, tip, reach, zooms) -> np.ndarray:
+    """The longest tip whose middle lies on each cross-section, over its places and slants."""
+    at = [next(p for p in reversed(pieces) if station >= p.at - _ENDS).point_at(station) for station in stations]
+    x, y, heading = (column[:, None] for column in np.array(at).T)
+    place, slant, best = np.zeros_like(x), np.zeros_like(x), np.zeros(len(stations))
+    wide, steep = (bore - tip) / 2, 0.7
+    spread, rows = np.linspace(-1, 1, _GRID), np.arange(len(stations))
+    across, turned = (a.ravel() for a in np.meshgrid(spread, spread))
     for _ in range(zooms):
-        places, slants = (a.ravel() for a in np.meshgrid(place + wide * spread, slant + steep * spread))
+        places, slants = place + wide * across, slant + steep * turned
         px, py = x - places * np.sin(heading), y + places * np.cos(heading)
         ahead, behind = (_room(pieces, px, py, heading + slants, way, bore, tip, reach) for way in (1, -1))
         room = np.minimum(ahead, behind)
-        k = int(np.argmax(room))
-        place, slant, best = places[k], slants[k], max(best, float(room[k]))
+        k = room.argmax(axis=1)
+        place, slant, best = places[rows, k, None], slants[rows, k, None], np.maximum(best, room[rows, k])
         wide, steep = wide / _NARROWER, steep / _NARROWER
-    return best
+    return 2 * best
 
 
 def _room(pieces, x, y, heading, way, bore, tip, reach):
     """How far both edges of a tip run inside the bore, forward (way 1) or backward (-1) from its middle."""
     c, s = np.cos(heading), np.sin(heading)
 
-    def inside(far):
+    def inside(far, c, s, x, y):
         good = True
         for side in (-tip / 2, tip / 2):
             ex, ey = x + way * far * c - side * s, y + way * far * s + side * c
@@ -136,13 +154,17 @@ def _room(pieces, x, y, heading, way, bore, tip, reach):
             good = good & (nearest <= bore / 2 * (1 + 1e-12))
         return good
 
-    low, high, going = np.zeros_like(x), np.full_like(x, reach), np.ones(x.shape, bool)
-    for far in reach * (np.arange(_STEPS) / (_STEPS - 1)) ** 2:
-        good = inside(np.full_like(x, far))
-        high = np.where(going & ~good, far, high)
-        low, going = np.where(going & good, far, low), going & good
+    low, high = np.zeros(x.shape), np.full(x.shape, float(reach))
+    going = np.arange(x.size)
+    for far in reach * np.linspace(0, 1, _STEPS):
+        if going.size == 0:
+            break
+        good = inside(far, *(a.ravel()[going] for a in (c, s, x, y)))
+        high.ravel()[going[~good]] = far
+        going = going[good]
+        low.ravel()[going] = far
     for _ in range(_HALVINGS):
         middle = (low + high) / 2
-        good = inside(middle)
+        good = inside(middle, c, s, x, y)
         low, high = np.where(good, middle, low), np.where(good, high, middle)
     return low

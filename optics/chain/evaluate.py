@@ -55,6 +55,7 @@ STEPS = (
     "core share",
     "broken fibers",
     "attenuation",
+    "wall reflections",
     "bends",
     "exit face",
     "spreading",

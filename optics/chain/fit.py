@@ -7,10 +7,22 @@ from optics.body.lumen import smallest_lumens
 from optics.body.passage import longest_rigid_tip_mm, tube_bend_radius_mm
 from optics.body.section import jacketed_mm, outer_diameter_mm
 from optics.chain.columns import Columns, distinct_rows, written_out
+from optics.chain.light import exit_mm, medium_index
 from optics.guide.bundle import fiber_area_mm2
+from optics.guide.ends import tilt_deviation_deg
 from optics.units import um_from_mm
 
-TABLES = ("guide.bundle.diameter_mm", "image.bundle.diameter_mm", "image.chip", "scene.ports", "body.section")
+TABLES = (
+    "guide.bundle.diameter_mm",
+    "guide.bundle.exit_mm",
+    "guide.bundle.exit_tilt_deg",
+    "guide.fiber.core_index",
+    "scene.target.medium",
+    "image.bundle.diameter_mm",
+    "image.chip",
+    "scene.ports",
+    "body.section",
+)
 
 
 def fit(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarray], dict[str, np.ndarray]]:
@@ -84,7 +96,7 @@ def _ports(columns: Columns, core_mm: np.ndarray):
 
     A ring or a crescent lies around the image part: the head part is then as wide as its outer circle.
     """
-    area_mm = columns["guide.bundle.diameter_mm"]
+    area_mm = exit_mm(columns)
     most = int(
         max(
             np.nan_to_num(columns["scene.ports.count"]).max(initial=1),
@@ -146,6 +158,11 @@ def _placed(columns: Columns, ports, centers_mm: np.ndarray, count: int) -> dict
     x, y = np.where(free, from_axis[..., 0], x), np.where(free, from_axis[..., 1], y)
     outward = (columns.texts("scene.ports.form") == "round")[:, None]
     azimuth = np.where(outward, np.degrees(np.arctan2(y, x)), azimuth)
+    ground = columns.get("guide.bundle.exit_tilt_deg", 0.0)
+    turned = tilt_deviation_deg(
+        core_index=columns["guide.fiber.core_index"], outside_index=medium_index(columns), tilt_deg=ground
+    )[:, None]
+    tilt, azimuth = np.where(turned > 0, turned, tilt), np.where(turned > 0, 0.0, azimuth)
     return {"x_mm": x, "y_mm": y, "radius_mm": radius, "tilt_deg": tilt, "azimuth_deg": azimuth}
 
 

@@ -11,8 +11,9 @@ import numpy as np
 from optics.beam import Beam, bin_edges
 from optics.chain.columns import Columns, written_out
 from optics.chain.launch import filled_na, lamp_spectrum, launch
-from optics.guide.bend import bend_matrix
+from optics.guide.bend import bend_matrix, relative_bend_ratio
 from optics.guide.bundle import fiber_area_mm2
+from optics.guide.ends import reflection_transmission, tapered_na
 from optics.guide.fiber import ray_stretch
 from optics.guide.joint import joint_share
 from optics.guide.packing import core_share
@@ -24,7 +25,11 @@ from optics.scene.exit_cone import cone_na_holding
 from optics.spectrum import GRID_NM, color_rendering_index, color_temperature_k, duv, integral, luminous_flux_lm
 
 INNER_BINS, OUTER_BINS = 20, 12
-WIDENED = 1.2  # bends leave light up to this multiple of NA^2 (leaky skew rays beyond the guide's own cone)
+# Room beyond NA^2 for what bends widen: 2.5 X, at least a little, at most what the bend table knows.
+BEND_SPREAD, LEAST_ROOM, MOST_ROOM = 2.5, 1.02, 2.0
+LARGEST_NA = 0.9999  # of light that is followed: a grazing ray gets through no face
+# Where a taper would push bins beyond that, they are left thin and dark instead.
+_LAST_EDGES = LARGEST_NA**2 + 1e-9 * np.arange(INNER_BINS + OUTER_BINS + 1)
 EXIT_SHARE = 0.95  # exit_na holds this share of the lumens
 
 
@@ -76,12 +81,13 @@ def light(columns: Columns) -> Light:
     spectrum = lamp_spectrum(columns)
     cable = columns.has("guide.cable.length_m")
     edges, way, value = _onto_the_face(columns, cable, spectrum)
-    na = np.sqrt((edges[:, 1:] + edges[:, :-1]) / 2)
     if cable.any():
-        _through_cable(columns, cable, way, na)
-    _through_guide(columns, way, na, edges)
+        _through_cable(columns, cable, way, edges)
+    edges = edges * _taper(columns, "entry_mm")[:, None]
+    _through_guide(columns, way, edges)
+    edges = np.minimum(edges / _taper(columns, "exit_mm")[:, None], _LAST_EDGES)
     before_w = (integral(way.power_w_nm) * way.share).sum(axis=1)
-    _out(columns, way, na, edges)
+    _out(columns, way, edges)
     beam = Beam(way.power_w_nm * way.share[:, :, None], edges)
     value["face_heat_w"] = value["face_heat_w"] * _not_taken(way, cable)
     # What the last faces throw back is counted as heat of the tip: most of it is, and the rest is on the safe side.
@@ -100,10 +106,11 @@ def _onto_the_face(columns: Columns, cable: np.ndarray, spectrum: np.ndarray):
         name: np.where(cable, columns[f"guide.cable.fiber.{name}"], columns[f"guide.fiber.{name}"])
         for name in ("na", "core_index")
     }
-    face_mm = np.where(cable, columns["guide.cable.diameter_mm"], columns["guide.bundle.diameter_mm"])
+    face["na"] = np.where(cable, face["na"], guide_face_na(columns))
+    face_mm = np.where(cable, columns["guide.cable.diameter_mm"], guide_face_mm(columns))
     fill_na = filled_na(columns, face_mm=face_mm, face_na=face["na"])
     edges = _edges(columns, fill_na, face["na"])
-    na = np.sqrt((edges[:, 1:] + edges[:, :-1]) / 2)
+    na = bin_na(edges)
     launched = launch(columns, edges, fill_na, face_mm=face_mm, face_na=face["na"])
 
     flux = luminous_flux_lm(lamp)
@@ -127,8 +134,9 @@ def _onto_the_face(columns: Columns, cable: np.ndarray, spectrum: np.ndarray):
     return edges, way, value
 
 
-def _through_cable(columns: Columns, cable: np.ndarray, way: Way, na: np.ndarray) -> None:
+def _through_cable(columns: Columns, cable: np.ndarray, way: Way, edges: np.ndarray) -> None:
     """A separate cable before the scope: its face, its length, and the joint."""
+    na = bin_na(edges)
     fiber, index = "guide.cable.fiber", columns.get("guide.joint.index", 1.0)[:, None]
     way.bins("cable packing", columns.get("guide.cable.packing_fraction", 1.0)[:, None], cable)
     way.bins("cable core share", _core_share(columns, fiber)[:, None], cable)
@@ -139,43 +147,41 @@ def _through_cable(columns: Columns, cable: np.ndarray, way: Way, na: np.ndarray
     way.bins("cable exit face", leave, cable)
     crosses = joint_share(
         from_mm=columns.get("guide.cable.diameter_mm", 1.0)[:, None],
-        to_mm=columns["guide.bundle.diameter_mm"][:, None],
+        to_mm=guide_face_mm(columns)[:, None],
         gap_mm=columns.get("guide.joint.gap_mm", 0.0)[:, None],
         offset_mm=columns.get("guide.joint.offset_mm", 0.0)[:, None],
         gap_index=index,
         na=na,
     )
-    way.bins("joint", crosses * (na <= columns["guide.fiber.na"][:, None]), cable)
+    way.bins("joint", crosses * (na <= guide_face_na(columns)[:, None]), cable)
     enter = ray_face_transmission(core_index=columns["guide.fiber.core_index"][:, None], outside_index=index, ray_na=na)
     way.bins("guide input face", enter, cable)
 
 
-def _through_guide(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray) -> None:
-    """The scope's own guide: fibers and cores, broken ones, length, bends."""
+def _through_guide(columns: Columns, way: Way, edges: np.ndarray) -> None:
+    """The scope's own guide: fibers and cores, broken ones, length, reflections at the wall, bends."""
+    na, bounce = bin_na(edges), columns.get("guide.bundle.bounce_loss_fraction", 0.0)
     whole = 1.0 - columns.get("guide.bundle.broken_fraction", 0.0)
     way.bins("packing", columns["guide.bundle.packing_fraction"][:, None])
     way.bins("core share", _core_share(columns, "guide.fiber")[:, None])
     if (whole < 1).any():
         way.bins("broken fibers", whole[:, None], whole < 1)
     way.colors("attenuation", _attenuated(columns, "guide.fiber", columns["guide.bundle.length_m"], na))
+    if (bounce > 0).any():
+        kept = reflection_transmission(
+            loss_fraction=bounce[:, None],
+            length_m=columns["guide.bundle.length_m"][:, None],
+            core_um=columns["guide.fiber.core_um"][:, None],
+            core_index=columns["guide.fiber.core_index"][:, None],
+            ray_na=na,
+        )
+        way.bins("wall reflections", kept, bounce > 0)
     radius = columns.items("guide.bundle.bends.radius_mm", np.inf)
     angle = columns.items("guide.bundle.bends.angle_deg", 0.0)
     rows = np.flatnonzero((angle > 0).any(axis=1))
     if rows.size:
         repeats = columns.items("guide.bundle.bends.repeats", 0.0).astype(int)
-        from optics.tables import PRESETS  # TEMPORARY until the table lands
-
-        bent = (
-            bend_matrix
-            if (PRESETS / "tables/bend_kernel.toml").exists()
-            else (
-                lambda **k: np.broadcast_to(
-                    np.eye(k["sine2_edges"].shape[-1] - 1) * 0.9,
-                    (len(k["na"]), k["sine2_edges"].shape[-1] - 1, k["sine2_edges"].shape[-1] - 1),
-                )
-            )
-        )
-        matrix = bent(
+        matrix = bend_matrix(
             sine2_edges=edges[rows],
             na=columns["guide.fiber.na"][rows],
             core_index=columns["guide.fiber.core_index"][rows],
@@ -186,8 +192,9 @@ def _through_guide(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray
         way.mixed("bends", matrix, rows)
 
 
-def _out(columns: Columns, way: Way, na: np.ndarray, edges: np.ndarray) -> None:
+def _out(columns: Columns, way: Way, edges: np.ndarray) -> None:
     """The exit face, and a cover over it: clear or spreading."""
+    na = bin_na(edges)
     medium, cover = medium_index(columns)[:, None], columns.has("scene.cover.index")
     before = np.where(cover[:, None], 1.0, medium)  # a cover stands in air before the exit face
     core = columns["guide.fiber.core_index"][:, None]
@@ -211,6 +218,38 @@ def _not_taken(way: Way, cable: np.ndarray) -> np.ndarray:
     return 1.0 - np.where(came > 0, entered / np.where(came > 0, came, 1.0), 0.0)
 
 
+def bin_na(edges: np.ndarray) -> np.ndarray:
+    """NA of the middle, in sin^2, of each bin [design, bin]."""
+    return np.sqrt((edges[:, 1:] + edges[:, :-1]) / 2)
+
+
+def guide_face_mm(columns: Columns) -> np.ndarray:
+    """Diameter of the guide's input face, wider than the bundle where it is tapered [design]."""
+    return np.where(
+        columns.has("guide.bundle.entry_mm"), columns["guide.bundle.entry_mm"], columns["guide.bundle.diameter_mm"]
+    )
+
+
+def guide_face_na(columns: Columns) -> np.ndarray:
+    """NA that the guide's input face takes: its fibers' own, or less at a face that tapers down [design]."""
+    bundle = columns["guide.bundle.diameter_mm"]
+    tapered = tapered_na(na=columns["guide.fiber.na"], from_mm=bundle, to_mm=guide_face_mm(columns))
+    return np.minimum(tapered, LARGEST_NA)
+
+
+def exit_mm(columns: Columns) -> np.ndarray:
+    """Diameter of a round face with the area of all exit faces [design]."""
+    return np.where(
+        columns.has("guide.bundle.exit_mm"), columns["guide.bundle.exit_mm"], columns["guide.bundle.diameter_mm"]
+    )
+
+
+def _taper(columns: Columns, end: str) -> np.ndarray:
+    """(end diameter over bundle diameter)^2 [design]; 1 without a taper."""
+    bundle = columns["guide.bundle.diameter_mm"]
+    return (np.where(columns.has(f"guide.bundle.{end}"), columns[f"guide.bundle.{end}"], bundle) / bundle) ** 2
+
+
 def medium_index(columns: Columns) -> np.ndarray:
     """Refractive index of what stands in front of the tip, at the d line [design]; 1 in air and without a target."""
     found = np.ones(columns.count)
@@ -222,14 +261,20 @@ def medium_index(columns: Columns) -> np.ndarray:
 
 def _edges(columns: Columns, fill_na: np.ndarray, face_na: np.ndarray) -> np.ndarray:
     """Inner bins up to where the light ends in every guide; outer bins for what bends, a joint or a cover may need."""
-    first, guide = np.minimum(fill_na, face_na), columns["guide.fiber.na"]
-    widest = np.maximum(first, guide) * np.sqrt(WIDENED) + columns.get("scene.cover.spread_na", 0.0)
-    return bin_edges(
-        inner_na=np.minimum(first, guide),
-        outer_na=np.minimum(widest, 0.9999),
-        inner_count=INNER_BINS,
-        outer_count=OUTER_BINS,
-    )
+    first, guide = np.minimum(fill_na, face_na), guide_face_na(columns)
+    widest = np.maximum(first, guide) * np.sqrt(_widening(columns)) + columns.get("scene.cover.spread_na", 0.0)
+    outer = np.minimum(widest, LARGEST_NA)
+    return bin_edges(inner_na=np.minimum(first, guide), outer_na=outer, inner_count=INNER_BINS, outer_count=OUTER_BINS)
+
+
+def _widening(columns: Columns) -> np.ndarray:
+    """How far in sin^2 the sharpest bend spreads light, over NA^2 [design]: bends leave skew rays beyond the guide's cone."""
+    radius = columns.items("guide.bundle.bends.radius_mm", np.inf)
+    if radius.shape[1] == 0:
+        return np.full(columns.count, LEAST_ROOM)
+    fiber = {name: columns[f"guide.fiber.{name}"][:, None] for name in ("core_index", "na", "core_um")}
+    sharpest = relative_bend_ratio(**fiber, bend_radius_mm=radius).max(axis=1)
+    return np.clip(1 + BEND_SPREAD * sharpest, LEAST_ROOM, MOST_ROOM)
 
 
 def _core_share(columns: Columns, table: str) -> np.ndarray:
@@ -248,9 +293,7 @@ def _attenuated(columns: Columns, table: str, length_m: np.ndarray, na: np.ndarr
 
 def _numbers(columns: Columns, beam: Beam, way: Way) -> dict[str, np.ndarray]:
     spectrum, delivered, lamp = beam.spectrum_w_nm, way.bin_lm.sum(axis=1), way.after_lm["lamp"]
-    fibers = fiber_area_mm2(
-        diameter_mm=columns["guide.bundle.diameter_mm"], packing_fraction=columns["guide.bundle.packing_fraction"]
-    )
+    fibers = fiber_area_mm2(diameter_mm=exit_mm(columns), packing_fraction=columns["guide.bundle.packing_fraction"])
     return {
         "delivered_lm": delivered,
         "delivered_w": integral(spectrum),

@@ -5,7 +5,7 @@ import dataclasses
 import numpy as np
 
 from optics.chain.columns import Columns
-from optics.chain.light import Light
+from optics.chain.light import Light, exit_mm
 from optics.chain.target import Lit
 from optics.scene.exposure import Screening, peak_factor, screening
 
@@ -17,7 +17,7 @@ def screen(columns: Columns, lit: Light, landed: Lit, body: dict[str, np.ndarray
     """Weighted quantities of the delivered light [design], by name with the prefix `screen.`."""
     flux = lit.beam.bin_w
     exit_na = lit.value["exit_na"]
-    area_mm2 = np.pi / 4 * columns["guide.bundle.diameter_mm"] ** 2
+    area_mm2 = np.pi / 4 * exit_mm(columns) ** 2
     # Several round ports are narrower than their common area; a ring is taken as wide as a disc of its area.
     count = np.where(columns.texts("scene.ports.form") == "round", columns.get("scene.ports.count", 1.0), 1.0)
     wide = np.where(np.isnan(body["outer_diameter_mm"]), columns["guide.bundle.diameter_mm"], body["outer_diameter_mm"])
@@ -30,7 +30,7 @@ def screen(columns: Columns, lit: Light, landed: Lit, body: dict[str, np.ndarray
         exit_na=exit_na,
         peak_factor=np.maximum(peak_factor(sine2_edges=lit.beam.sine2_edges, flux=flux, na=exit_na), 1e-9),
         port_area_mm2=area_mm2,
-        port_mm=columns["guide.bundle.diameter_mm"] / np.sqrt(count),
+        port_mm=exit_mm(columns) / np.sqrt(count),
         tip_heat_w=lit.value["tip_heat_w"],
         tip_surface_mm2=np.pi * wide * long + np.pi / 4 * wide**2,
         face_heat_w=lit.value["face_heat_w"],

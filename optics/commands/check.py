@@ -1,18 +1,43 @@
-"""`check`: every published value against the formula that must give it."""
+"""`check`: every published value against the formula that must give it; or one design against single rays."""
 
 import argparse
+import sys
 from collections import Counter
 
-from optics.commands.terminal import as_json, paragraph, table
+from optics.commands.terminal import as_json, opened, paragraph, table
 from optics.published import Checked, check, rows
+from optics.spec import OutOfRange
+
+RAYS, SEED = 200_000, 1
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("--all", action="store_true", help="show every row, not only those that differ")
+    parser.add_argument(
+        "design",
+        nargs="?",
+        metavar="FILE_OR_NAME",
+        help="a design to trace ray by ray and to hold against `size`; absent: the published values",
+    )
+    parser.add_argument("--rays", metavar="N", help=f"how many rays the lamp sends out ({RAYS:,})")
+    parser.add_argument("--seed", metavar="S", help=f"of the random numbers, a whole number ({SEED})")
+    parser.add_argument(
+        "--set",
+        dest="settings",
+        action="append",
+        default=[],
+        metavar="PATH=VALUE",
+        help="change one value of the design, as in guide.bundle.length_m=3; may be repeated",
+    )
+    parser.add_argument("--all", action="store_true", help="show every published row, not only those that differ")
     parser.add_argument("--json", action="store_true", help="as JSON")
 
 
 def run(options: argparse.Namespace) -> int:
+    if options.design is not None:
+        return _run_rays(options)
+    for name, given in (("--rays", options.rays), ("--seed", options.seed), ("--set", options.settings)):
+        if given:
+            raise OutOfRange(f"{name} is given without a design; name the design to trace, as in `check gearbox_tooth`.")
     checked = [check(row) for row in rows()]
     wrong = [item for item in checked if not item.met and not item.row.differs]
     if options.json:
@@ -33,6 +58,28 @@ def run(options: argparse.Namespace) -> int:
         )
     )
     return 1 if wrong else 0
+
+
+def _run_rays(options: argparse.Namespace) -> int:
+    """The design traced ray by ray, each number beside that of `size`; status 1 and a sentence where they disagree."""
+    from optics.commands.check_rays import against_rays
+
+    rays = _whole("--rays", options.rays, RAYS)
+    seed = _whole("--seed", options.seed, SEED)
+    found = against_rays(opened(options).fiberscope, rays=rays, seed=seed)
+    print(as_json(found.as_dict()) if options.json else found.written())
+    if found.wrong:
+        print(found.disagreement(), file=sys.stderr)
+    return 1 if found.wrong else 0
+
+
+def _whole(name: str, text: str | None, otherwise: int) -> int:
+    if text is None:
+        return otherwise
+    try:
+        return int(text)
+    except ValueError:
+        raise OutOfRange(f"{name} is {text!r}; it must be a whole number.") from None
 
 
 def _line(item: Checked) -> tuple[str, ...]:

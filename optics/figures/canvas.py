@@ -14,6 +14,7 @@ from matplotlib.textpath import text_to_path
 from optics.figures.palette import SMALL, TEXT, THIN, Palette
 
 POINTS_IN = 72.0
+ROUNDED_UP = 1.035
 
 
 def sheet(width_in: float, height_in: float, palette: Palette) -> tuple[Figure, Axes]:
@@ -108,9 +109,15 @@ def lost(factor: float) -> str:
 
 @lru_cache(maxsize=4096)
 def width_of(text: str, size: float, bold: bool = False) -> float:
-    """Width of the longest line of a text, inches."""
+    """Width of the longest line of a text, inches; a little more than on paper, since screens round letters up."""
     font = FontProperties(size=size, weight="bold" if bold else "normal")
-    return max((text_to_path.get_text_width_height_descent(line, font, False)[0] for line in text.split("\n")), default=0.0) / POINTS_IN
+    return (
+        max(
+            (text_to_path.get_text_width_height_descent(line, font, False)[0] for line in text.split("\n")), default=0.0
+        )
+        / POINTS_IN
+        * ROUNDED_UP
+    )
 
 
 def wrapped(text: str, size: float, room_in: float) -> str:
@@ -131,7 +138,7 @@ def spread(wanted: Sequence[float], gap: float, low: float, high: float) -> list
     [0.8, 1.3, 3.0]
     """
     order = sorted(range(len(wanted)), key=lambda at: wanted[at])
-    blocks: list[list[Any]] = []   # [first place, members]
+    blocks: list[list[Any]] = []  # [first place, members]
     for at in order:
         blocks.append([wanted[at], [at]])
         while True:

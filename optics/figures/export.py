@@ -9,7 +9,7 @@ DPI = 100
 
 
 def png(figure: Figure, dpi: float = DPI) -> bytes:
-    return _saved(figure, "png", dpi=dpi, metadata={"Software": None})
+    return _saved(figure, "png", dpi=dpi, metadata={"Software": None}, pil_kwargs={"compress_level": 3})
 
 
 def svg(figure: Figure) -> bytes:
@@ -33,6 +33,8 @@ def _saved(figure: Figure, kind: str, **options) -> bytes:
 def _numbered(text: bytes) -> bytes:
     """The same SVG with its random names numbered in the order in which they appear."""
     names: dict[bytes, bytes] = {}
-    for name in re.findall(rb'id="([a-z][0-9a-f]{10})"', text):
+    for name in re.findall(rb'id="([A-Za-z][A-Za-z0-9_]*[0-9a-f]{10})"', text):
         names.setdefault(name, b"n%d" % len(names))
-    return re.sub(rb"\b[a-z][0-9a-f]{10}\b", lambda found: names.get(found.group(), found.group()), text)
+    return re.sub(
+        rb"\b[A-Za-z][A-Za-z0-9_]*[0-9a-f]{10}\b", lambda found: names.get(found.group(), found.group()), text
+    )

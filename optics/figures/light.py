@@ -3,7 +3,6 @@
 import math
 
 import numpy as np
-
 from matplotlib.figure import Figure
 
 from optics.figures.canvas import chart, lost, round_length, three, width_of
@@ -21,19 +20,35 @@ def budget(report: Report, *, palette: Palette = LIGHT, width_in: float = WIDTH_
     lit = [(step, _db(step.before_lm, lamp), _db(step.after_lm, lamp)) for step in steps]
     total = max((after for _, _, after in lit), default=0.0)
     end = max(total, 1.0) * 1.02
-    figure, axes = chart(width_in, ROW * (len(steps) + 1) + 1.12, palette, left=1.28, right=0.72, bottom=0.52, top=0.6)
+    figure, axes = chart(width_in, ROW * (len(steps) + 1) + 1.12, palette, left=1.38, right=0.72, bottom=0.52, top=0.6)
     worst = max((after - before for _, before, after in lit), default=0.0)
     for row, (step, before, after) in enumerate(lit):
         marked = after - before == worst > 0.005
-        ink, weight = (palette.accent, "bold") if marked else (palette.ink if after - before > 0.005 else palette.soft, "normal")
+        ink, weight = (
+            (palette.accent, "bold") if marked else (palette.ink if after - before > 0.005 else palette.soft, "normal")
+        )
         axes.barh(row, end, color=palette.ghost, height=0.72, linewidth=0)
-        axes.barh(row, after - before, left=before, color=palette.accent if marked else palette.light, height=0.72, linewidth=0)
+        axes.barh(
+            row,
+            after - before,
+            left=before,
+            color=palette.accent if marked else palette.light,
+            height=0.72,
+            linewidth=0,
+        )
         axes.plot([after, after], [row - 0.36, row + 1.36], color=palette.soft, linewidth=THIN)
-        axes.text(-0.015 * end, row, step.name, ha="right", va="center_baseline", fontsize=TEXT, color=ink, weight=weight)
-        axes.text(end * 1.02, row, lost(step.factor), ha="left", va="center_baseline", fontsize=TEXT, color=ink, weight=weight)
+        axes.text(
+            -0.015 * end, row, step.name, ha="right", va="center_baseline", fontsize=TEXT, color=ink, weight=weight
+        )
+        axes.text(
+            end * 1.02, row, lost(step.factor), ha="left", va="center_baseline", fontsize=TEXT, color=ink, weight=weight
+        )
     row, look = len(steps), {"va": "center_baseline", "fontsize": TEXT, "color": palette.ink, "weight": "bold"}
     axes.text(-0.015 * end, row, "delivered", ha="right", **look)
-    said, right = f"{three(report.light.delivered_lm)} lm, {three(report.light.transmission * 100)} % of the lamp", total > 0.6 * end
+    said, right = (
+        f"{three(report.light.delivered_lm)} lm, {three(report.light.transmission * 100)} % of the lamp",
+        total > 0.6 * end,
+    )
     axes.text(total + (-0.02 if right else 0.02) * end, row, said, ha="right" if right else "left", **look)
     axes.set(xlim=(0, end), ylim=(row + 0.55, -0.55), yticks=[], xlabel="lost since the lamp, dB")
     axes.spines["left"].set_visible(False)
@@ -48,7 +63,11 @@ def _db(lumens: float, lamp: float) -> float:
 def _lumens_above(axes, palette: Palette, lamp: float, end: float) -> None:
     """The same scale in lumens."""
     above = axes.secondary_xaxis("top")
-    shares = [share for share in (1.0, 0.8, 0.6, 0.5, 0.4, 0.3, 0.2, 0.1, 0.05, 0.02, 0.01, 1e-3, 1e-4, 1e-5) if -10 * math.log10(share) <= end]
+    shares = [
+        share
+        for share in (1.0, 0.8, 0.6, 0.5, 0.4, 0.3, 0.2, 0.1, 0.05, 0.02, 0.01, 1e-3, 1e-4, 1e-5)
+        if -10 * math.log10(share) <= end
+    ]
     places, last = [], -1.0
     for share in shares:
         at = -10 * math.log10(share) / end
@@ -81,13 +100,28 @@ def spectra(view: Spectra, *, palette: Palette = LIGHT, width_in: float = WIDTH_
     for name, power, times, color, style in curves:
         axes.fill_between(x, power * factor * times, color=color, alpha=0.14, linewidth=0)
         axes.plot(x, power * factor * times, color=color, linewidth=LINE, linestyle=style)
-        axes.plot([at, at + 0.05], [1.085, 1.085], color=color, linestyle=style, linewidth=LINE, transform=axes.transAxes, clip_on=False)
+        axes.plot(
+            [at, at + 0.05],
+            [1.085, 1.085],
+            color=color,
+            linestyle=style,
+            linewidth=LINE,
+            transform=axes.transAxes,
+            clip_on=False,
+        )
         axes.text(at + 0.06, 1.085, name, color=palette.ink, fontsize=SMALL, va="center", transform=axes.transAxes)
         at += 0.11 + width_of(name, SMALL) / (width_in - 1.02)
-    if most > top:   # a line that would flatten everything else
+    if most > top:  # a line that would flatten everything else
         peak = x[int(np.argmax(view.lamp_w_nm))]
-        axes.annotate(f"line at {three(peak)} nm, up to {three(most * factor)}", (peak, top * factor), (6, -4), textcoords="offset points",
-                      color=palette.soft, fontsize=SMALL, va="top")  # fmt: skip
+        axes.annotate(
+            f"line at {three(peak)} nm, up to {three(most * factor)}",
+            (peak, top * factor),
+            (6, -4),
+            textcoords="offset points",
+            color=palette.soft,
+            fontsize=SMALL,
+            va="top",
+        )
     axes.set(xlim=(low, high), ylim=(0, top * factor * 1.03), xlabel="wavelength, nm", ylabel=f"power, {unit}")
     axes.yaxis.set_major_formatter(lambda value, _: three(value))
     return figure
@@ -106,7 +140,9 @@ def _times(value: float) -> str:
         return three(value)
     power = round(math.log10(value / float(f"{value:.0e}"[0])))
     first = f"{value:.0e}"[0]
-    return ("" if first == "1" else f"{first}·") + "10" + str(power).translate(str.maketrans("0123456789", "⁰¹²³⁴⁵⁶⁷⁸⁹"))
+    return (
+        ("" if first == "1" else f"{first}·") + "10" + str(power).translate(str.maketrans("0123456789", "⁰¹²³⁴⁵⁶⁷⁸⁹"))
+    )
 
 
 def _watts(most: float) -> tuple[str, float]:

@@ -23,7 +23,10 @@ BLUE, VERMILION, PURPLE = "#0072B2", "#D55E00", "#CC79A7"
 
 @dataclass(frozen=True, slots=True)
 class Palette:
-    """What a picture is drawn in. `light` is the way there, `back` the way back, `accent` what limits or falls short; `on_...` words upon them."""
+    """What a picture is drawn in.
+
+    `light` is the way there, `back` the way back, `accent` what limits or falls short; `on_...` are words upon them.
+    """
 
     name: str
     paper: str
@@ -46,11 +49,11 @@ class Palette:
 
 LIGHT = Palette(
     "light", paper="#ffffff", ink="#1f2430", soft="#5b6270", grid="#d9dce2", ghost="#f1f2f5",
-    accent=VERMILION, light=ORANGE, back=BLUE, series=(BLUE, VERMILION, GREEN, ORANGE, PURPLE, SKY),
+    accent="#B34700", light=ORANGE, back=BLUE, series=(BLUE, VERMILION, GREEN, ORANGE, PURPLE, SKY),
 )  # fmt: skip
 DARK = Palette(
     "dark", paper="#0e1117", ink="#f2f3f5", soft="#a4abb8", grid="#343a46", ghost="#1b202a",
-    accent="#FF7F2A", light=ORANGE, back=SKY, series=(SKY, "#FF7F2A", "#2BC49A", ORANGE, PURPLE, YELLOW),
+    accent="#FF9A4D", light=ORANGE, back=SKY, series=(SKY, "#FF7F2A", "#2BC49A", ORANGE, PURPLE, YELLOW),
     on_back="#04141f",
 )  # fmt: skip
 
@@ -62,7 +65,9 @@ def lamplight() -> ListedColormap:
     at = np.linspace(0.0, 1.0, 256)
     hue = np.deg2rad(np.interp(at, (0.0, 0.25, 0.5, 0.75, 1.0), (290.0, 330.0, 405.0, 436.0, 455.0)))
     chroma = np.interp(at, (0.0, 0.15, 0.4, 0.7, 0.9, 1.0), (18.0, 34.0, 52.0, 62.0, 50.0, 22.0))
-    return ListedColormap(np.clip(_srgb(lightness, chroma * np.cos(hue), chroma * np.sin(hue)), 0.0, 1.0), name="lamplight")
+    return ListedColormap(
+        np.clip(_srgb(lightness, chroma * np.cos(hue), chroma * np.sin(hue)), 0.0, 1.0), name="lamplight"
+    )
 
 
 def _srgb(lightness: np.ndarray, a: np.ndarray, b: np.ndarray) -> np.ndarray:

@@ -11,20 +11,37 @@ from optics.figures.strip import EASE, LINE_IN, thickness
 from optics.figures.strip_words import Leg, Station
 from optics.report.answer import Report
 
-AXIS, THICK, THIN_BACK = 0.62, 0.84, 0.56    # inches: the ribbon's axis from the left, its thickness at both starts
-WORDS, EDGE, ROW = 1.22, 0.12, 0.25       # where words begin; margin on the right; height of a leg
-CONE, GAP = 0.12, 0.08    # from the words of the tip down to the target; before the words of a station
+AXIS, THICK, THIN_BACK = 0.62, 0.84, 0.56  # inches: the ribbon's axis from the left, its thickness at both starts
+WORDS, EDGE, ROW = 1.22, 0.12, 0.25  # where words begin; margin on the right; height of a leg
+CONE, GAP = 0.12, 0.08  # from the words of the tip down to the target; before the words of a station
 
 
 def narrow_strip(report: Report, *, palette: Palette, width_in: float) -> Figure:
     """The strip from top to bottom; its height follows from its legs and words."""
     there, back = words.outward(report), words.backward(report)
-    stations = [words.lamp_station(report), words.exit_station(report), words.target_station(report), words.viewer_station(report)]
+    stations = [
+        words.lamp_station(report),
+        words.exit_station(report),
+        words.target_station(report),
+        words.viewer_station(report),
+    ]
     heights = [_height(station) for station in stations]
     room = width_in - 2 * EDGE
-    notes = [wrapped(text, SMALL, room) for text in (words.largest_loss(report), words.what_limits(report), words.scale_sentence(report)) if text]
+    notes = [
+        wrapped(text, SMALL, room)
+        for text in (words.largest_loss(report), words.what_limits(report), words.scale_sentence(report))
+        if text
+    ]
     feet = sum(LINE_IN * (1 + note.count("\n")) + 0.09 for note in notes)
-    high = 0.1 + sum(heights) + ROW * (len(there) + len(back)) + (CONE if report.target else 0.0) + (0.22 if back else 0.0) + 2 * GAP + feet
+    high = (
+        0.1
+        + sum(heights)
+        + ROW * (len(there) + len(back))
+        + (CONE if report.target else 0.0)
+        + (0.22 if back else 0.0)
+        + 2 * GAP
+        + feet
+    )
     figure, axes = sheet(width_in, high, palette)
     y = high - 0.1
     y = _station(axes, palette, stations[0], y, heights[0])
@@ -47,7 +64,9 @@ def narrow_strip(report: Report, *, palette: Palette, width_in: float) -> Figure
     y -= 0.0 if back else GAP
     for note in notes:
         said = note is notes[-1]
-        axes.text(EDGE, y, note, color=palette.soft if said else palette.ink, fontsize=SMALL, va="top", linespacing=1.15)
+        axes.text(
+            EDGE, y, note, color=palette.soft if said else palette.ink, fontsize=SMALL, va="top", linespacing=1.15
+        )
         y -= LINE_IN * (1 + note.count("\n")) + 0.09
     return figure
 
@@ -61,26 +80,53 @@ def _station(axes: Axes, palette: Palette, station: Station, y: float, height: f
     axes.text(WORDS, y - 0.16, station.number, color=palette.ink, fontsize=LARGE, weight="bold", va="top")
     for row, (text, met) in enumerate(station.lines):
         ink = palette.accent if met is False else palette.ink if met else palette.soft
-        axes.text(WORDS, y - 0.43 - row * LINE_IN, text, color=ink, fontsize=SMALL, va="top", weight="bold" if met is False else "normal")
+        axes.text(
+            WORDS,
+            y - 0.43 - row * LINE_IN,
+            text,
+            color=ink,
+            fontsize=SMALL,
+            va="top",
+            weight="bold" if met is False else "normal",
+        )
     return y - height
 
 
-def _ribbon(axes: Axes, palette: Palette, color: str, legs: list[Leg], begin: float, y: float, full_in: float, width_in: float):
+def _ribbon(
+    axes: Axes, palette: Palette, color: str, legs: list[Leg], begin: float, y: float, full_in: float, width_in: float
+):
     """A ribbon downward over its legs; where it ends and how thick it is there, inches."""
     scale_db = words.full_scale_db(legs)
     along, thick, before = [begin, y], [1.0, 1.0], 1.0
-    axes.fill_betweenx([begin, y - ROW * len(legs)], AXIS - full_in / 2, AXIS + full_in / 2, color=palette.ghost, linewidth=0)
+    axes.fill_betweenx(
+        [begin, y - ROW * len(legs)], AXIS - full_in / 2, AXIS + full_in / 2, color=palette.ghost, linewidth=0
+    )
     for leg in legs:
         after = float(thickness(leg.left, scale_db))
         along.extend(y - ROW * (0.2 + 0.6 * np.linspace(0, 1, len(EASE))))
         thick.extend(before + (after - before) * EASE)
-        ink, weight = (palette.accent, "bold") if leg.marked else (palette.soft if leg.loss in ("0", "1") else palette.ink, "normal")
+        ink, weight = (
+            (palette.accent, "bold")
+            if leg.marked
+            else (palette.soft if leg.loss in ("0", "1") else palette.ink, "normal")
+        )
         middle = y - ROW / 2
         limit = leg.note if leg.limit else ""
         axes.text(WORDS, middle, leg.name, color=ink, fontsize=TEXT, weight=weight, va="center_baseline")
-        axes.text(width_in - EDGE, middle, leg.loss, color=ink, fontsize=TEXT, weight=weight, va="center_baseline", ha="right")
+        axes.text(
+            width_in - EDGE, middle, leg.loss, color=ink, fontsize=TEXT, weight=weight, va="center_baseline", ha="right"
+        )
         if limit:
-            axes.text(width_in - EDGE - 0.62, middle, limit, color=ink, fontsize=TEXT, weight=weight, va="center_baseline", ha="right")
+            axes.text(
+                width_in - EDGE - 0.62,
+                middle,
+                limit,
+                color=ink,
+                fontsize=TEXT,
+                weight=weight,
+                va="center_baseline",
+                ha="right",
+            )
         y, before = y - ROW, after
     half = np.array([*thick, before]) * full_in / 2
     axes.fill_betweenx([*along, y], AXIS - half, AXIS + half, color=color, linewidth=0)
@@ -90,6 +136,21 @@ def _ribbon(axes: Axes, palette: Palette, color: str, legs: list[Leg], begin: fl
 def _cone(axes: Axes, palette: Palette, tip: float, plate: float, thick_in: float) -> None:
     """The light from the tip down to the target, and the target."""
     far = 1.15 * THICK / 2
-    axes.fill([AXIS - thick_in / 2, AXIS + thick_in / 2, AXIS + far, AXIS - far], [tip, tip, plate, plate], color=palette.light, alpha=0.28, linewidth=0)
-    axes.plot([AXIS - thick_in / 2, AXIS + thick_in / 2], [tip, tip], color=palette.ink, linewidth=LINE, solid_capstyle="butt")
-    axes.plot([AXIS - far, AXIS + far], [plate, plate], color=palette.ink, linewidth=2.5 * LINE, solid_capstyle="butt", zorder=3)
+    axes.fill(
+        [AXIS - thick_in / 2, AXIS + thick_in / 2, AXIS + far, AXIS - far],
+        [tip, tip, plate, plate],
+        color=palette.light,
+        alpha=0.28,
+        linewidth=0,
+    )
+    axes.plot(
+        [AXIS - thick_in / 2, AXIS + thick_in / 2], [tip, tip], color=palette.ink, linewidth=LINE, solid_capstyle="butt"
+    )
+    axes.plot(
+        [AXIS - far, AXIS + far],
+        [plate, plate],
+        color=palette.ink,
+        linewidth=2.5 * LINE,
+        solid_capstyle="butt",
+        zorder=3,
+    )

@@ -10,11 +10,23 @@ from optics.report.reasons import limit_reason
 
 # Long names in two lines, broken where people would break them.
 SPLIT = {
-    "attenuation": "attenu-\nation", "condenser": "con-\ndenser", "input face": "input\nface", "exit face": "exit\nface",
-    "core share": "core\nshare", "broken fibers": "broken\nfibers", "cable packing": "cable\npacking",
-    "cable core share": "cable\ncores", "cable attenuation": "cable\nlength", "cable exit face": "cable\nend",
-    "guide input face": "guide\nface", "crosstalk": "cross-\ntalk", "objective": "objec-\ntive",
-}  # fmt: skip
+    "attenuation": "attenu-\nation",
+    "condenser": "con-\ndenser",
+    "input face": "input\nface",
+    "exit face": "exit\nface",
+    "core share": "core\nshare",
+    "broken fibers": "broken\nfibers",
+    "cable packing": "cable\npacking",
+    "cable core share": "cable\ncores",
+    "cable attenuation": "cable\nlength",
+    "cable exit face": "cable\nend",
+    "guide input face": "guide\nface",
+    "crosstalk": "cross-\ntalk",
+    "objective": "objec-\ntive",
+}
+
+
+DIM_LM_W = 10.0  # below, a lamp is judged by its watts
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,7 +47,13 @@ class Leg:
     @property
     def limit(self) -> str:
         """What the part alone allows, lp/mm; empty on the way there."""
-        return "no\nlimit" if self.note == "no limit" else self.note.removesuffix(" lp/mm") if self.note.endswith(" lp/mm") else ""
+        return (
+            "no\nlimit"
+            if self.note == "no limit"
+            else self.note.removesuffix(" lp/mm")
+            if self.note.endswith(" lp/mm")
+            else ""
+        )
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,22 +70,42 @@ def outward(report: Report) -> list[Leg]:
     steps, lamp = report.light.steps[1:], report.light.steps[0].after_lm
     worst = min((step.factor for step in steps), default=1.0)
     return [
-        Leg(step.name, step.factor, step.after_lm / lamp if lamp > 0 else 0.0, lost(step.factor), step.because, step.factor == worst < 0.999)
+        Leg(
+            step.name,
+            step.factor,
+            step.after_lm / lamp if lamp > 0 else 0.0,
+            lost(step.factor),
+            step.because,
+            step.factor == worst < 0.999,
+        )
         for step in steps
-    ]  # fmt: skip
+    ]
 
 
 def backward(report: Report) -> list[Leg]:
     """The parts of the way back in the order in which the picture meets them; the one that limits is marked."""
     if report.detail is None:
         return []
-    legs, left = [], 1.0
+    legs, left, seen = [], 1.0, bool(report.summary.resolved_lp_mm)
     for line in sorted(report.detail.ledger, key=lambda line: line.name == "light"):
         left *= line.contrast
         note = "no limit" if line.limit_lp_mm is None else f"{three(line.limit_lp_mm)} lp/mm"
-        shown = "1" if line.contrast > 0.9995 else f"×{line.contrast:.2f}" if line.contrast >= 0.01 else f"×{line.contrast:.1g}"
+        shown = (
+            "–"
+            if not seen
+            else "1"
+            if line.contrast >= 0.995
+            else f"×{line.contrast:.2f}"
+            if line.contrast >= 0.01
+            else f"×{line.contrast:.1g}"
+        )
         legs.append(Leg(line.name, line.contrast, left, shown, note, line.name == report.summary.limited_by))
     return legs
+
+
+def back_title(report: Report) -> str:
+    """What the thickness of the way back is."""
+    return "contrast left" if report.summary.resolved_lp_mm else "nothing resolved"
 
 
 def lamp_station(report: Report) -> Station:
@@ -77,9 +115,17 @@ def lamp_station(report: Report) -> Station:
 
 def exit_station(report: Report) -> Station:
     light = report.light
-    color = f"{three(light.color_temperature_k)} K, Ra {light.color_rendering_index:.0f}" if light.color_temperature_k > 0 else "no visible color"
-    lines = [(f"{three(light.transmission * 100)} % of the lamp", None), (f"95 % within NA {light.exit_na:.3f}", None), (color, None)]
-    return Station("out of the tip" if report.target else "out of the guide", f"{three(light.delivered_lm)} lm", tuple(lines))
+    visible = light.delivered_lm > DIM_LM_W * light.delivered_w
+    color = (
+        f"{three(light.color_temperature_k)} K, Ra {light.color_rendering_index:.0f}"
+        if visible
+        else "hardly any visible light"
+    )
+    share = f"{three(light.delivered_w)} W, {three(light.transmission * 100)} % of the lamp"
+    lines = [(share, None), (f"95 % within NA {light.exit_na:.3f}", None), (color, None)]
+    return Station(
+        "out of the tip" if report.target else "out of the guide", f"{three(light.delivered_lm)} lm", tuple(lines)
+    )
 
 
 def target_station(report: Report) -> Station | None:
@@ -142,7 +188,8 @@ def full_scale_db(legs: list[Leg]) -> float:
 
 def scale_sentence(report: Report) -> str:
     """What the thickness stands for."""
-    lamp = report.light.steps[0].after_lm
-    half = 10 ** (-full_scale_db(outward(report)) / 20)
-    said = f"Thickness: light left on a log scale, {three(lamp)} lm full, {three(lamp * half)} lm half, {three(lamp * half**2)} lm none"
-    return said + (f"; on the way back contrast left, 1 full, {10 ** (-full_scale_db(backward(report)) / 20):.2g} half." if report.detail else ".")
+    full = report.light.steps[0].after_lm
+    half, back = (10 ** (-full_scale_db(legs) / 20) for legs in (outward(report), backward(report)))
+    marks = f"{three(full)} lm full, {three(full * half)} lm half, {three(full * half**2)} lm none"
+    said = f"Thickness: light left on a log scale, {marks}"
+    return said + (f"; on the way back contrast left, 1 full, {back:.2g} half." if report.detail else ".")

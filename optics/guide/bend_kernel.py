@@ -18,8 +18,10 @@ from functools import lru_cache
 import numpy as np
 
 from optics import tables
+from optics.units import AnyUnit
 
 # Nodes of the table: relative bend Xe = X (1 - m), angle tau/sqrt(Xe) with tau = phi sqrt((1 - m)/m), and m.
+# Dense around Xe 0.45, where long bends turn from keeping to losing their middle angles.
 BEND_NODES = np.array(
     [0.02, 0.035, 0.055, 0.08, 0.115, 0.16, 0.21, 0.27, 0.34, 0.41, 0.49, 0.58, 0.7, 0.85, 1.05, 1.35, 1.75]
 )
@@ -49,6 +51,11 @@ def span(x, m):
     return radius * np.log((radius + 1) / (radius - 1))
 
 
+def safe_level(x, m):
+    """s below which no ray can reach the limit in the bend: zeta(s) = zeta(1) - SPAN (negative if there is none)."""
+    return -np.expm1(np.log1p(-m) + x * m * span(x, m)) / m
+
+
 def level(s, x, m, intervals):
     """Where s lies on the level axis of a table, in node numbers from 0 (far above the limit) up.
 
@@ -73,10 +80,10 @@ def rank_share(ratio):
     return 2 / np.pi * (np.arcsin(y) + y * np.sqrt(1 - y * y))
 
 
-def guided_rank(s, l):
-    """Rank of the skewness l among the guided rays of the same s (above the limit only l >= s - 1 is guided)."""
+def guided_rank(s, skew):
+    """Rank of a skewness l among the guided rays of the same s (above the limit only l >= s - 1 is guided)."""
     least = rank_share(1 - 1 / np.maximum(s, 1.0))
-    return np.clip((rank_share(l / np.maximum(s, 1e-300)) - least) / (1 - least), 0.0, 1.0)
+    return np.clip((rank_share(skew / np.maximum(s, 1e-300)) - least) / (1 - least), 0.0, 1.0)
 
 
 def legendre(x, count):
@@ -95,10 +102,10 @@ class Kernel:
     step's twice-integrated density; its last power is the straight line beyond the longest step.
     """
 
-    survival: np.ndarray
-    guided: np.ndarray
-    scores: np.ndarray
-    vectors: dict[str, np.ndarray]
+    survival: AnyUnit
+    guided: AnyUnit
+    scores: AnyUnit
+    vectors: dict[str, AnyUnit]
 
 
 PAIRS = {
@@ -130,6 +137,7 @@ def unpacked(flat: np.ndarray) -> Kernel:
     rank = (flat.size - 2 * count * fine - int(np.prod(shape))) // (count + int(np.prod(shape)))
     survival, guided, scores, vectors = np.split(flat, np.cumsum([count * fine, count * fine, count * rank]))
     vectors = VECTOR_SCALE * vectors.reshape(rank + 1, *shape)
+    vectors[:, :, 0, 0, 0] = np.arange(rank + 1)[:, None] == rank  # the density of what is left adds up to 1
     powers = vectors @ _step_powers()
     by_kind = {}
     for kind, (into, out) in PAIRS.items():
@@ -137,6 +145,13 @@ def unpacked(flat: np.ndarray) -> Kernel:
         by_kind[kind] = np.ascontiguousarray(part.reshape(rank + 1, coarse, -1, powers.shape[-1]))
     scores = np.concatenate([scores.reshape(count, rank), np.ones((count, 1))], axis=1)
     return Kernel(survival.reshape(count, fine), guided.reshape(count, fine), scores, by_kind)
+
+
+def step_moments(scores: AnyUnit) -> np.ndarray:
+    """[design, level, moment in, moment out, degree]: the Legendre moments of the step that these scores stand for."""
+    powers = np.linalg.pinv(_step_powers())
+    flat = scores @ kernel().vectors["middle"].reshape(scores.shape[-1], -1)
+    return flat.reshape(len(scores), level_count(COARSE), MOMENTS, MOMENTS, -1) @ powers
 
 
 def _step_powers() -> np.ndarray:

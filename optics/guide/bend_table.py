@@ -4,7 +4,7 @@
 
 For every (bend, angle, share) node, rays that fill the fiber at each level s are traced through the
 bend and counted: how many come out of it, how many of these the straight fiber guides, and the moments
-of their step in zeta and of their skewness. Takes about ten minutes on two cores.
+of their step in zeta and of their skewness. Takes about a quarter of an hour on two cores.
 """
 
 import sys
@@ -15,11 +15,11 @@ from optics import tables
 from optics.guide import bend_kernel as kernel
 from optics.guide import raytrace
 
-RAYS = 160_000  # a pair of bend and share; all angles are stops on the way of the same rays
+RAYS = 120_000  # a pair of bend and share; all angles are stops on the way of the same rays
 SEED = 20_261_201
 HIGHEST = 2.6  # s up to which rays are launched
 RANK = 28  # singular vectors kept of the spread
-SMOOTHING = 1e-4  # weight of the first differences in a fit, which also fills levels that no ray has
+SMOOTHING = 1e-3  # weight of the first differences in a fit
 
 
 def last_angle(bend: float) -> float:
@@ -93,7 +93,21 @@ def node(*, bend: float, share: float, rays: int, seed: int, angles: np.ndarray 
         spread = coarse(left, products.reshape(len(left), -1)) / total[:, None]
         rows.append((survive, np.clip(guided / np.maximum(survive, 1e-6), 0.0, 1.0), spread))
     survive, guided, spread = (np.stack(part) for part in zip(*rows))
-    return survive, guided, spread.reshape(*spread.shape[:2], kernel.MOMENTS, kernel.MOMENTS, kernel.DEGREES)
+    spread = spread.reshape(*spread.shape[:2], kernel.MOMENTS, kernel.MOMENTS, kernel.DEGREES)
+    bound = (2 * np.arange(kernel.MOMENTS) + 1.0)[:, None]
+    spread = np.clip(spread, -bound, bound)
+    spread[:, :, 0, 0, 0] = 1.0
+    return tuple(
+        _below_filled(part, x, share, axis)
+        for part, axis in zip((survive, guided, spread), (kernel.FINE, kernel.FINE, kernel.COARSE))
+    )
+
+
+def _below_filled(rows, x, share, axis):
+    """Levels below s = 0 (where a sharp bend reaches past it) repeat the last that rays have."""
+    last = int(np.floor(kernel.level(0.0, x, share, axis) + 0.3))
+    rows[:, last + 1 :] = rows[:, last : last + 1]
+    return rows
 
 
 def _skew_moments(s, rays, share):
@@ -120,3 +134,33 @@ def all_nodes(rays: int = RAYS, seed: int = SEED):
     shape = (len(kernel.BEND_NODES), len(kernel.SHARE_NODES))
     stacked = (np.stack([one[k] for one in found]) for k in range(3))
     return tuple(np.moveaxis(part.reshape(*shape, *part.shape[1:]), 2, 1) for part in stacked)
+
+
+def table_values(survival: np.ndarray, guided: np.ndarray, spread: np.ndarray, rank: int = RANK) -> np.ndarray:
+    """The flat array of the table: the spread by its mean and its first singular vectors over the nodes."""
+    rows = spread.reshape(int(np.prod(kernel.NODES)), -1)
+    mean = rows.mean(axis=0)
+    left, size, right = np.linalg.svd(rows - mean, full_matrices=False)
+    scores = left[:, :rank] * size[:rank]
+    most = np.abs(scores).max(axis=0)
+    vectors = np.concatenate([right[:rank] * most[:, None], mean[None]])
+    return kernel.packed_parts(survival, guided, scores / most, vectors)
+
+
+def document(values: np.ndarray) -> str:
+    """The text of presets/tables/bend_kernel.toml."""
+    held = tables.pack(values, -1.0, 1.0)
+    return f"""source = "independent_trace"
+at = "made by optics/guide/bend_table.py with seed {SEED}, {RAYS} rays a node; checked against the source's values"
+basis = "derived"
+note = "survival and spread of light in bends, see optics/guide/bend_kernel.py"
+shape = {held["shape"]}
+low = {held["low"]}
+high = {held["high"]}
+dtype = "{held["dtype"]}"
+bytes = '{held["bytes"]}'
+"""
+
+
+if __name__ == "__main__":
+    print(document(table_values(*all_nodes())), end="")

@@ -31,6 +31,32 @@ class GuideBundle(Spec):
     broken_fraction: float = quantity(
         "share of the fibers that are broken", default=0.0, source="assumed", ge=0, lt=1, usual=(0.0, 0.2)
     )
+    bounce_loss_fraction: float = quantity(
+        "share of the light lost at each reflection at the core's wall",
+        default=0.0,
+        source="assumed",
+        ge=0,
+        le=0.01,
+        usual=(0.0, 1e-4),
+    )
+    entry_mm: float | None = quantity(
+        "diameter of a tapered input face; absent: as wide as the bundle", default=None, gt=0, le=50, usual=(0.5, 8.0)
+    )
+    exit_mm: float | None = quantity(
+        "diameter of a tapered exit face, all branches together by area; absent: as wide as the bundle",
+        default=None,
+        gt=0,
+        le=50,
+        usual=(0.3, 8.0),
+    )
+    exit_tilt_deg: float = quantity(
+        "angle at which the exit face is ground off; it turns the light of every port the same way, toward +x",
+        default=0.0,
+        source="assumed",
+        ge=0,
+        le=45,
+        usual=(0.0, 30.0),
+    )
     bends: tuple[Bend, ...] = Field(
         default=(), strict=False, max_length=12, description="separate bends, from the lamp on"
     )

@@ -97,14 +97,22 @@ def _full_rings(inner: float, outer: float) -> int:
 
 
 def _nested_rings(inner: float, outer: float) -> int:
-    """Rings of equal number, each turned by half a step into the gaps of the one outside it."""
-    most = 0
-    for number in range(_on_ring(outer), 2, -1):
-        half_step, rings, radii = np.pi / number, 0, [outer]
-        while radii[-1] >= inner - _ROUND and 2 * radii[-1] * np.sin(half_step) >= 1 - _ROUND:
-            rings += 1
-            aside = 1 - (radii[-1] * np.sin(half_step)) ** 2
-            nested = radii[-1] * np.cos(half_step) - np.sqrt(max(aside, 0.0))
-            radii.append(nested if len(radii) < 2 else min(nested, radii[-2] - 1))
-        most = max(most, rings * number)
-    return most
+    """Rings of equal number, each turned by half a step into the gaps of the one outside it: the best number."""
+    return max(
+        (number * len(nested_radii(inner, outer, number)) for number in range(_on_ring(outer), 2, -1)), default=0
+    )
+
+
+def nested_radii(inner: float, outer: float, number: int) -> list[float]:
+    """Radii of nested rings of so many points each, from the outer wall inward, all distances 1 or more.
+
+    A ring touches the one outside it, unless the ring two steps out, with points at the same
+    angles, is less than 1 away.
+    """
+    half_step, radii, radius = np.pi / number, [], outer
+    while radius >= inner - _ROUND and 2 * radius * np.sin(half_step) >= 1 - _ROUND:
+        radii.append(radius)
+        aside = 1 - (radius * np.sin(half_step)) ** 2
+        nested = radius * np.cos(half_step) - np.sqrt(max(aside, 0.0))
+        radius = nested if len(radii) < 2 else min(nested, radii[-2] - 1)
+    return radii

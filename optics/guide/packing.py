@@ -101,7 +101,7 @@ def circle_ratio(*, count: Numbers) -> Numbers:
 
     Proved best for 1-14 and 19, best known otherwise. For more, count by `disc_count`.
     Raises OutOfRange unless count is whole and from 1 to 61.
-    References: graham_1998 (table), fodor_1999 (19), lubachevsky_1997 (7, 19, 37, 61).
+    References: graham_1998 (table; proofs by others, 19 by Fodor 1999), lubachevsky_1997 (7, 19, 37, 61).
 
     >>> circle_ratio(count=7)
     3.0

@@ -10,11 +10,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.guide.torus import through
+from optics.guide.torus import MOST_HITS, through
 from optics.spec import not_negative, positive, require
 from optics.units import mm_from_um, rad_from_deg
 
 BATCH = 16_000
+STEEP_HITS = 4_000  # of an isotropic source's rays, of which under 1 % run almost across the fiber
 CONE_SHARE = 0.95
 
 
@@ -94,17 +95,20 @@ def after_straight_run(rays: Rays, *, random: np.random.Generator) -> Rays:
     return Rays(along * c + caustic * s, along * s - caustic * c, sine * c, sine * s)
 
 
-def through_bend(rays: Rays, *, radius_ratio: float, limit_sine: float, bend_rad: float) -> tuple[Rays, np.ndarray]:
+def through_bend(
+    rays: Rays, *, radius_ratio: float, limit_sine: float, bend_rad: float, most_hits: int = MOST_HITS
+) -> tuple[Rays, np.ndarray]:
     """Rays at the end of a bend toward -x, and which of those sent in they are.
 
     radius_ratio: axis radius over core radius, above 1; limit_sine = NA/n1. A ray that leaves the bend in
-    the chord after its last hit is kept even where a straight fiber would lose it: see `guided`.
+    the chord after its last hit is kept even where a straight fiber would lose it: see `guided`. So is
+    one that hits the wall more than most_hits times, as it is then: it creeps along, or hardly advances.
     """
     if bend_rad == 0 or not len(rays):
         return rays, np.ones(len(rays), bool)
     parts = [rays.x_ratio, rays.y_ratio, rays.x_sine, rays.y_sine]
     state = np.stack([*parts, np.sqrt(np.maximum(1 - parts[2] ** 2 - parts[3] ** 2, 0.0))])
-    out = through(state, radius_ratio, limit_sine, bend_rad)
+    out = through(state, radius_ratio, limit_sine, bend_rad, most_hits)
     alive = ~np.isnan(out[0])
     return Rays(*out[:4, alive]), alive
 
@@ -177,7 +181,7 @@ def trace_isotropic(
     """
     fiber = _Fiber.of(core_index, clad_index, core_um)
     start = isotropic_rays(limit_sine=fiber.limit, rays=_count(rays), random=np.random.default_rng(seed))
-    left, _ = through_bend(start, **fiber.bend(bend_radius_mm, bend_deg))
+    left, _ = through_bend(start, **fiber.bend(bend_radius_mm, bend_deg), most_hits=STEEP_HITS)
     return _counted(left, rays, core_index)
 
 

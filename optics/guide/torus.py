@@ -15,21 +15,32 @@ MOST_HITS = 20_000  # of one ray: the few that creep along the wall or hardly ad
 
 
 def _first_chord(b, a, u, y, dy):
-    """Length of the chord from a point inside to the wall, A t = tau; the quartic's least positive root.
+    """Length of the chord from a point inside to the wall: the quartic's least positive root.
 
     g = h^2 + y^2 - 1 is below 0 inside and its second derivative there at most M, so that the positive
-    root of g + g' s + M s^2/2 never passes the wall; the steps converge as Newton's do.
+    root of g + g' s + M s^2/2 never passes the wall; the steps converge as Newton's do. The few rays that
+    nearly graze the wall on their way take more of them.
     """
     h = u + (u * u + y * y - 1) * a
-    most = 2 * (b * b + 4 * a * (1 - h)) + 4 * a + 2 * dy * dy
+    given = (b, h, y, dy, 2 * (b * b + 4 * a * (1 - h)) + 4 * a + 2 * dy * dy)
     t = np.zeros_like(u)
-    for _ in range(14):
-        ht, yt, slope_h = h + t * (b + a * t), y + dy * t, b + 2 * a * t
-        g = np.minimum(ht * ht + yt * yt - 1, 0.0)
-        slope = 2 * (ht * slope_h + yt * dy)
-        root = np.sqrt(slope * slope - 2 * most * g)
-        t = t + np.where(slope > 0, -2 * g / np.maximum(slope + root, 1e-300), (root - slope) / most)
+    todo = slice(None)
+    for _ in range(60):
+        for _ in range(7):
+            t[todo], ends = _toward_wall(t[todo], a, *(part[todo] for part in given))
+        todo = np.arange(u.size)[todo][ends < -1e-13]
+        if not todo.size:
+            break
     return t
+
+
+def _toward_wall(t, a, b, h, y, dy, most):
+    slope_h, yt = b + 2 * a * t, y + dy * t
+    ht = h + t * (b + a * t)
+    g = np.minimum(ht * ht + yt * yt - 1, 0.0)
+    slope = 2 * (ht * slope_h + yt * dy)
+    root = np.sqrt(slope * slope - 2 * most * g)
+    return t + np.where(slope > 0, -2 * g / np.maximum(slope + root, 1e-300), (root - slope) / most), g
 
 
 def _next_chord(b, a, u, y, dy):
@@ -58,11 +69,11 @@ def _next_chord(b, a, u, y, dy):
     return tau / a
 
 
-def through(state, radius, limit, bend_rad):
+def through(state, radius, limit, bend_rad, most_hits=MOST_HITS):
     """Trace [5, ray] of (u, y, u', y', z') through bend_rad; the exit state, nan where the ray is lost.
 
     New rays join whenever half of the working set has ended, so that the few rays with very many hits
-    do not make the rest wait. A ray with more than MOST_HITS counts as kept, in its state of then.
+    do not make the rest wait. A ray with more than most_hits counts as kept, in its state of then.
     """
     out = np.full_like(state, np.nan)
     work, live, left = state[:, :0], np.arange(0), np.zeros((2, 0))
@@ -71,7 +82,7 @@ def through(state, radius, limit, bend_rad):
         if live.size < CHUNK // 2 and waiting < count:
             fresh = np.arange(waiting, min(waiting + CHUNK - live.size, count))
             waiting = fresh[-1] + 1
-            budget = np.stack([np.full(fresh.size, float(bend_rad)), np.full(fresh.size, float(MOST_HITS))])
+            budget = np.stack([np.full(fresh.size, float(bend_rad)), np.full(fresh.size, float(most_hits))])
             joined = _hit(out, state[:, fresh], fresh, budget, radius, limit, _first_chord)
             work, live, left = (np.concatenate(pair, axis=-1) for pair in zip((work, live, left), joined))
         work, live, left = _hit(out, work, live, left, radius, limit, _next_chord)
@@ -97,9 +108,13 @@ def _hit(out, work, live, left, radius, limit, chord):
     size = np.hypot(u, y)
     u, y = u / size, y / size
     normal = du * u + dy * y
-    back = normal + np.maximum(normal, CREEP * limit)
     stay = (normal <= limit) & ~ends
+    back = normal + np.maximum(normal, CREEP * limit)
     work, left = np.stack([u, y, du - back * u, dy - back * y, dz]), left - np.stack([turned, np.ones_like(turned)])
+    creeps = normal < CREEP * limit
+    if creeps.any():  # lifted off the wall, not sped up
+        sine2 = work[2, creeps] ** 2 + work[3, creeps] ** 2
+        work[2:4, creeps] *= np.sqrt((1 - dz[creeps] ** 2) / sine2)
     tired = stay & (left[1] <= 0)
     if tired.any():
         out[:, live[tired]] = work[:, tired]

@@ -99,6 +99,9 @@ REASONS: dict[str, Callable[[Fiberscope, Mapping[str, float]], str]] = {
     "core share": lambda scope, value: _share(scope, False),
     "broken fibers": lambda scope, value: f"{scope.guide.bundle.broken_fraction:.3g} of the fibers are broken",
     "attenuation": _guide_loss,
+    "wall reflections": lambda scope, value: (
+        f"each reflection at the wall loses {scope.guide.bundle.bounce_loss_fraction:.2g} of its light"
+    ),
     "bends": _bends,
     "exit face": lambda scope, value: (
         f"reflection where the guide ends; the light leaves within NA {value['exit_na']:.3g}"

@@ -50,7 +50,10 @@ def section_view(fiberscope: Fiberscope) -> SectionView | None:
     section, parts = fiberscope.body.section, []
     core = _image_part_mm(fiberscope, image_mm)
     form = getattr(fiberscope.scene and fiberscope.scene.ports, "form", "")
-    ports = [(placed["x_mm"][i], placed["y_mm"][i], 2 * placed["radius_mm"][i]) for i in np.flatnonzero(placed["radius_mm"] > 0)]
+    ports = [
+        (placed["x_mm"][i], placed["y_mm"][i], 2 * placed["radius_mm"][i])
+        for i in np.flatnonzero(placed["radius_mm"] > 0)
+    ]
     head = core
     if form in ("annulus", "crescent"):
         head = max(core, ports[0][2])
@@ -58,26 +61,43 @@ def section_view(fiberscope: Fiberscope) -> SectionView | None:
         head = max(core, *(2 * np.hypot(x, y) + diameter for x, y, diameter in ports))
     light = [diameter for *_, diameter in ports] if form in ("round", "") else []
     outer = [channel.inner_mm + 2 * channel.wall_mm for channel in section.channels]
-    wires, at_wall = (written_out(np.array([[getattr(wire, name) for wire in section.wires]], float), _counts(section), 0.0)[0]
-                      for name in ("diameter_mm", "at_wall"))  # fmt: skip
+    wires, at_wall = (
+        written_out(np.array([[getattr(wire, name) for wire in section.wires]], float), _counts(section), 0.0)[0]
+        for name in ("diameter_mm", "at_wall")
+    )
     sizes = np.array([[head, *light, *outer, *wires]])
     walled = np.concatenate([np.zeros(1 + len(light) + len(outer), bool), at_wall > 0])
     layout = smallest_lumens(diameters_mm=sizes, clearance_mm=section.clearance_mm, at_wall=walled[None])
     lumen, needed = float(body["lumen_mm"]), float(layout.lumen_mm[0])
-    centers = _to_the_wall(layout.centers_mm[0], sizes[0], walled, (max(lumen, needed) - section.clearance_mm) / 2)
+    centers = _to_the_wall(layout.centers_mm[0], sizes[0], walled, max(lumen, needed) / 2 - section.clearance_mm)
     axis, rest = centers[0], iter(centers[1:])
     if form == "crescent":  # its head part is the outer circle; the objective lies off the middle
         axis = axis - np.array(ports[0][:2])
     lit = [next(rest) for _ in light] if light else [axis + np.array(port[:2]) for port in ports]
-    parts += [Part("light port" if form else "light guide", "light", *map(float, at), float(port[2])) for at, port in zip(lit, ports)]
+    parts += [
+        Part("light port" if form else "light guide", "light", *map(float, at), float(port[2]))
+        for at, port in zip(lit, ports)
+    ]
     if np.isfinite(image_mm):
-        parts += [Part("image part", "image", *map(float, axis), core), Part("image", "cores", *map(float, axis), image_mm)]
+        parts += [
+            Part("image part", "image", *map(float, axis), core),
+            Part("image", "cores", *map(float, axis), image_mm),
+        ]
     for channel, wide in zip(section.channels, outer):
         at = next(rest)
-        parts += [Part("channel", "channel", *map(float, at), wide), Part("opening", "opening", *map(float, at), channel.inner_mm)]
+        parts += [
+            Part("channel", "channel", *map(float, at), wide),
+            Part("opening", "opening", *map(float, at), channel.inner_mm),
+        ]
     parts += [Part("wire", "wire", *map(float, at), float(wide)) for at, wide in zip(rest, wires)]
     return SectionView(
-        tuple(parts), lumen, needed, float(body["outer_diameter_mm"]), float(body["free_area_mm2"]), section.clearance_mm, bool(body["fits"] > 0)
+        tuple(parts),
+        lumen,
+        needed,
+        float(body["outer_diameter_mm"]),
+        float(body["free_area_mm2"]),
+        section.clearance_mm,
+        bool(body["fits"] > 0),
     )
 
 
@@ -89,7 +109,9 @@ def _image_part_mm(fiberscope: Fiberscope, image_mm: float) -> float:
     section = fiberscope.body.section
     if not np.isfinite(image_mm):
         return 0.0
-    return float(jacketed_mm(bundle_mm=image_mm, jacket_mm=section.image_jacket_mm, barrel_mm=section.objective_barrel_mm or 0.0))
+    return float(
+        jacketed_mm(bundle_mm=image_mm, jacket_mm=section.image_jacket_mm, barrel_mm=section.objective_barrel_mm or 0.0)
+    )
 
 
 def _to_the_wall(centers: np.ndarray, sizes: np.ndarray, walled: np.ndarray, reach: float) -> np.ndarray:
@@ -131,7 +153,9 @@ def passage_view(fiberscope: Fiberscope) -> PassageView | None:
     table = columns([fiberscope])
     value = {name: float(found[0]) for name, found in fit(table, field_of_view(table)["image_mm"])[0].items()}
     bore, tip = asked.bore_mm, value["outer_diameter_mm"]
-    rigid, longest = (value[name] if np.isfinite(value[name]) else None for name in ("rigid_tip_mm", "longest_rigid_tip_mm"))
+    rigid, longest = (
+        value[name] if np.isfinite(value[name]) else None for name in ("rigid_tip_mm", "longest_rigid_tip_mm")
+    )
     turn = rad_from_deg(asked.bend_deg or 0.0) if asked.centerline_radius_mm else 0.0
     inner = (asked.centerline_radius_mm or bore) - bore / 2
     reach = max(rigid or 0.0, longest or 0.0) / 2
@@ -139,13 +163,21 @@ def passage_view(fiberscope: Fiberscope) -> PassageView | None:
     edge = min(asked.edge_radius_mm, tip / 2)
     side = inner if tip <= bore else inner + (bore - tip) / 2
     shapes = [
-        _wall(inner, turn, leg), _wall(inner + bore, turn, leg),
-        _tip(rigid, tip, side, edge), _tip(longest, tip, side, edge),
-    ]  # fmt: skip
+        _wall(inner, turn, leg),
+        _wall(inner + bore, turn, leg),
+        _tip(rigid, tip, side, edge),
+        _tip(longest, tip, side, edge),
+    ]
     return PassageView(
-        *(coordinate for shape in shapes for coordinate in _turned(shape, turn / 2)), bore, tip, rigid, longest,
-        value["bend_radius_mm"], value["passable_radius_mm"] if np.isfinite(value["passable_radius_mm"]) else None, value["passes"] > 0,
-    )  # fmt: skip
+        *(coordinate for shape in shapes for coordinate in _turned(shape, turn / 2)),
+        bore,
+        tip,
+        rigid,
+        longest,
+        value["bend_radius_mm"],
+        value["passable_radius_mm"] if np.isfinite(value["passable_radius_mm"]) else None,
+        value["passes"] > 0,
+    )
 
 
 def _wall(radius: float, turn: float, leg: float) -> np.ndarray:
@@ -162,7 +194,10 @@ def _tip(length: float | None, diameter: float, side: float, edge: float) -> np.
         return np.empty((2, 0))
     x, y = length / 2 - edge, diameter / 2 - edge
     corners = [(x, y, 0.0), (-x, y, 0.5), (-x, -y, 1.0), (x, -y, 1.5)]
-    rim = [np.stack([cx + edge * np.cos(CORNER + at * np.pi), cy + edge * np.sin(CORNER + at * np.pi)]) for cx, cy, at in corners]
+    rim = [
+        np.stack([cx + edge * np.cos(CORNER + at * np.pi), cy + edge * np.sin(CORNER + at * np.pi)])
+        for cx, cy, at in corners
+    ]
     outline = np.concatenate([*rim, rim[0][:, :1]], axis=1)
     return outline + np.array([[0.0], [side + diameter / 2]])
 

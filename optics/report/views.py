@@ -26,8 +26,17 @@ from optics.units import deg_from_rad, m2_from_mm2, rad_from_deg
 from optics.viewer.camera import relay_fraction
 
 __all__ = [
-    "Part", "PassageView", "PortMark", "SectionView", "Spectra", "TargetMap", "passage_view", "section_view", "spectra", "target_map",
-]  # fmt: skip
+    "Part",
+    "PassageView",
+    "PortMark",
+    "SectionView",
+    "Spectra",
+    "TargetMap",
+    "passage_view",
+    "section_view",
+    "spectra",
+    "target_map",
+]
 
 MARGIN = 1.25  # the map's half-width over the radius of the field
 RIM = np.linspace(0.0, 2 * np.pi, 181)
@@ -62,6 +71,7 @@ class TargetMap:
     field_v_mm: np.ndarray
     wanted_lux: float | None
     distance_mm: float
+    tilt_deg: float
     ports: tuple[PortMark, ...]
 
 
@@ -81,13 +91,27 @@ def target_map(fiberscope: Fiberscope, points: int = 121) -> TargetMap | None:
         u, v, lux, rim = _on_wall(table, shown, radius, half, points)
         profile, along, center = u, lux_at(shown, target, u, 0.0), float(np.mean(lux_at(shown, target, u, 0.0)))
     else:
-        u, v = np.linspace(-half, half, points), np.linspace(-half, half, points)
-        lux, profile, rim = lux_at(shown, target, u[None, :], v[:, None]), np.linspace(-half, half, 4 * points + 1), _rim(table, radius)
+        rim, middle = _rim(table, radius), 0.0
+        if rim[0].size:  # a tilted field is an ellipse off the center
+            middle, half = (rim[0].min() + rim[0].max()) / 2, MARGIN * max(np.ptp(rim[0]), np.ptp(rim[1])) / 2
+        u, v = np.linspace(middle - half, middle + half, points), np.linspace(-half, half, points)
+        lux, profile = lux_at(shown, target, u[None, :], v[:, None]), np.linspace(u[0], u[-1], 4 * points + 1)
         along, center = lux_at(shown, target, profile, 0.0), float(lux_at(shown, target, 0.0, 0.0))
     return TargetMap(
-        target.form, u, v, lux, center, profile, along, radius if np.isfinite(radius) else None, *rim,
-        needs.target_min_lux or needs.target_center_lux, target.distance_mm, _marks(ports),
-    )  # fmt: skip
+        target.form,
+        u,
+        v,
+        lux,
+        center,
+        profile,
+        along,
+        radius if np.isfinite(radius) else None,
+        *rim,
+        needs.target_min_lux or needs.target_center_lux,
+        target.distance_mm,
+        target.tilt_deg,
+        _marks(ports),
+    )
 
 
 def lux_at(shown: dict, target, u_mm, v_mm) -> np.ndarray:
@@ -95,7 +119,9 @@ def lux_at(shown: dict, target, u_mm, v_mm) -> np.ndarray:
     if target.form == "bore":
         turn = deg_from_rad(2 * np.asarray(u_mm) / target.bore_mm)
         return bore_irradiance_w_m2(**shown, bore_mm=target.bore_mm, z_mm=target.distance_mm, azimuth_deg=turn)
-    return plane_irradiance_w_m2(**shown, distance_mm=target.distance_mm, tilt_deg=target.tilt_deg, u_mm=u_mm, v_mm=v_mm)
+    return plane_irradiance_w_m2(
+        **shown, distance_mm=target.distance_mm, tilt_deg=target.tilt_deg, u_mm=u_mm, v_mm=v_mm
+    )
 
 
 def exit_cone(lit: Light, index: float) -> ExitCone:
@@ -134,18 +160,23 @@ def _on_wall(table: Columns, shown: dict, radius: float, half: float, points: in
     if not np.isfinite(radius):
         return u, v, lux, (np.empty(0), np.empty(0))
     start, end = seen_wall_mm(
-        bore_mm=bore, field_radius_mm=radius, distance_mm=number["distance_mm"], pupil_depth_mm=float(pupil_depth_mm(table)[0]),
-        near_mm=np.nan_to_num(number["near_mm"]), far_mm=far,
-    )  # fmt: skip
+        bore_mm=bore,
+        field_radius_mm=radius,
+        distance_mm=number["distance_mm"],
+        pupil_depth_mm=float(pupil_depth_mm(table)[0]),
+        near_mm=np.nan_to_num(number["near_mm"]),
+        far_mm=far,
+    )
     return u, v, lux, (u[[0, -1]], np.array([float(start), float(end)]))
 
 
 def _marks(ports: tuple[Port, ...]) -> tuple[PortMark, ...]:
     return tuple(
-        PortMark(port.x_mm, port.y_mm, 2 * port.radius_mm) if isinstance(port, Disc)
+        PortMark(port.x_mm, port.y_mm, 2 * port.radius_mm)
+        if isinstance(port, Disc)
         else PortMark(getattr(port, "x_mm", 0.0), 0.0, 2 * port.outer_radius_mm)
         for port in ports
-    )  # fmt: skip
+    )
 
 
 @dataclass(frozen=True, slots=True)
@@ -176,12 +207,19 @@ def spectra(fiberscope: Fiberscope) -> Spectra:
 def _back_m2(fiberscope: Fiberscope, value: dict[str, float]) -> np.ndarray:
     """What the viewer takes for each W/m2 on the target, by wavelength: the image's area times all factors on the way."""
     scene, image, viewer = fiberscope.scene, fiberscope.image, fiberscope.viewer
-    lens, size = image.objective, magnification(focal_mm=image.objective.focal_mm, focus_mm=value["focus_from_pupil_mm"])
+    lens, size = (
+        image.objective,
+        magnification(focal_mm=image.objective.focal_mm, focus_mm=value["focus_from_pupil_mm"]),
+    )
     f_number = working_f_number(
         focal_mm=lens.focal_mm, f_number=lens.f_number, magnification=size, exit_pupil_mm=lens.exit_pupil_mm or np.inf
     )
     tau = lens.transmission * (image.tip.transmission if image.tip else 1.0)
-    lit = face_irradiance_factor(f_number=f_number, magnification=0.0, transmission=tau) * on_grid(scene.target.reflectance) / np.pi
+    lit = (
+        face_irradiance_factor(f_number=f_number, magnification=0.0, transmission=tau)
+        * on_grid(scene.target.reflectance)
+        / np.pi
+    )
     lit = lit * m2_from_mm2(np.pi / 4 * value["image_mm"] ** 2)
     if not isinstance(image, BundleImage):
         return lit

@@ -97,15 +97,14 @@ def at_distances(table: Columns, distance_mm: np.ndarray) -> Figures:
 
 
 def _distances(near: float, far: float, count: int) -> np.ndarray:
-    if far > WIDE * near:
-        steps = np.geomspace(near, far, count)
-    else:
-        steps = np.linspace(near, far, count)
+    steps = np.geomspace(near, far, count) if far > WIDE * near else np.linspace(near, far, count)
     steps[0], steps[-1] = near, far
     return steps
 
 
-def _fails(table, distance, value, needs: dict[str, float], working: float) -> tuple[tuple[str, float | None, str], ...]:
+def _fails(
+    table, distance, value, needs: dict[str, float], working: float
+) -> tuple[tuple[str, float | None, str], ...]:
     """Both ends of the stretch in which each need is met: the stretch around, or nearest to, the working distance."""
     found: list[tuple[str, float | None, str]] = []
     edges: list[tuple[int, float, float]] = []  # (place in found, a distance where it is met, one where it is not)
@@ -124,7 +123,9 @@ def _fails(table, distance, value, needs: dict[str, float], working: float) -> t
             if 0 <= beyond < len(distance):
                 edges.append((len(found), float(distance[at]), float(distance[beyond])))
             found.append((name, None, side))
-    for (place, *_), at in zip(edges, _edges(table, needs, [(found[place][0], good, bad) for place, good, bad in edges])):
+    for (place, *_), at in zip(
+        edges, _edges(table, needs, [(found[place][0], good, bad) for place, good, bad in edges])
+    ):
         found[place] = (found[place][0], at, found[place][2])
     return tuple(found)
 
@@ -141,7 +142,9 @@ def _edges(table: Columns, needs: dict[str, float], brackets: list[tuple[str, fl
         figures = at_distances(table, steps[:, 1:-1].ravel()).value
         value = np.array([figures[ALONG[name]].reshape(-1, BETWEEN)[row] for row, name in enumerate(names)])
         wanted = [np.float64(needs[name]) for name in names]
-        met = np.array([need_margin(name=name, wanted=want, got=row) >= 0 for name, want, row in zip(names, wanted, value)])
+        met = np.array(
+            [need_margin(name=name, wanted=want, got=row) >= 0 for name, want, row in zip(names, wanted, value)]
+        )
         last = np.where(met.all(axis=1), BETWEEN, np.argmin(met, axis=1))[:, None]
         good, bad = (np.take_along_axis(steps, last + ahead, axis=1) for ahead in (0, 1))
     return [float(at) for at in good[:, 0]]

@@ -7,6 +7,7 @@ from optics import presets
 from optics.media.face import face_transmission
 from optics.report.size import size
 from optics.source.lamp import etendue_mm2_sr
+from optics.spec import OutOfRange
 
 BARE = {"scene": None, "image": None, "viewer": None, "body": None, "needs": None, "guide.bundle.bends": []}
 
@@ -198,3 +199,42 @@ def test_guides_color_the_light_as_published_curves_say(document):
     report, _ = answered(document, {**BARE, **narrow, "guide.fiber.preset": "pmma_250um"})
     assert report.light.color_temperature_k == pytest.approx(4380, abs=15)
     assert report.light.color_rendering_index == pytest.approx(80.7, abs=0.5)
+
+
+def test_a_taper_trades_area_for_cone(document):
+    """Exit face 1.4 times as wide: the cone narrows to NA/1.4 and the flux stays; entry 2 times: takes NA/2."""
+    base = {**BARE, "source.launch.form": "butt", "source.launch.gap_mm": 0.0, "source.lamp.emitter_mm": 1.0}
+    plain, _ = answered(document, base)
+    wide, _ = answered(document, {**base, "guide.bundle.exit_mm": 2.8})
+    assert wide.light.exit_na == pytest.approx(plain.light.exit_na / 1.4, rel=1e-3)
+    assert wide.light.delivered_lm == pytest.approx(plain.light.delivered_lm, rel=0.02)  # only Fresnel at other angles
+    _, entry = answered(document, {**base, "guide.bundle.entry_mm": 4.0})
+    assert entry["cone"].factor == pytest.approx((0.57 / 2) ** 2, rel=1e-9)
+
+
+def test_a_lossy_wall_costs_light_and_steep_rays_most(document):
+    base = {**BARE, "source.launch.form": "matched"}
+    plain, _ = answered(document, base)
+    lossy, steps = answered(document, {**base, "guide.bundle.bounce_loss_fraction": 1e-5})
+    # about (4/pi) <tan> L/d = 10,700 reflections on average at 1.8 m and 46 um
+    assert steps["wall reflections"].factor == pytest.approx(0.9, abs=0.02)
+    assert lossy.light.exit_na < plain.light.exit_na
+
+
+def test_a_tilted_exit_face_moves_the_brightest_point(document):
+    straight, _ = answered(document, {"guide.bundle.bends": []})
+    tilted, _ = answered(document, {"guide.bundle.bends": [], "guide.bundle.exit_tilt_deg": 15.0})
+    assert tilted.target.center_lux < straight.target.center_lux
+    assert tilted.light.delivered_lm == pytest.approx(straight.light.delivered_lm)
+
+
+@pytest.mark.parametrize(
+    ("settings", "said"),
+    [
+        ({"guide.bundle.exit_mm": 1.0}, "such a taper would need an exit NA above 0.97, which etendue forbids"),
+        ({"guide.bundle.exit_tilt_deg": 10.0, "scene.ports.form": "annulus"}, "needs round ports without a tilt"),
+    ],
+)
+def test_impossible_ends_are_refused(document, settings, said):
+    with pytest.raises(OutOfRange, match=said):
+        presets.resolve(presets.edited(document, settings))

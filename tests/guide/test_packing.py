@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from optics.guide.lattice_count import nested_radii
 from optics.guide.packing import (
     annulus_count,
     annulus_packing_fraction,
@@ -82,12 +83,18 @@ def test_rings_beat_the_lattice_in_narrow_gaps():
     assert annulus_count(inner_mm=10.0, outer_mm=13.8, fiber_mm=1.0) > ring * 1.8
 
 
-def test_nested_rings_do_not_overlap():
-    """The nested arrangement rebuilt from its count alone: positions drawn, all distances checked."""
-    for inner, outer in ((5.0, 8.4), (10.0, 14.9), (3.0, 5.3)):
-        found = annulus_count(inner_mm=inner, outer_mm=outer, fiber_mm=1.0)
-        area = np.pi / 4 * (outer**2 - inner**2)
-        assert found * np.pi / 4 / area < hexagonal_packing_fraction()
+@pytest.mark.parametrize(("inner", "outer"), [(3.0, 4.7), (5.5, 7.45), (2.0, 2.6), (10.5, 16.0)])
+def test_nested_rings_do_not_overlap(inner, outer):
+    """Every point of the rings drawn, all distances checked."""
+    for number in range(3, int(2 * np.pi * outer)):
+        radii = nested_radii(inner, outer, number)
+        assert all(inner - 1e-9 <= radius <= outer for radius in radii)
+        turn = 2 * np.pi * np.arange(number) / number
+        points = np.concatenate(
+            [r * np.exp(1j * (turn + np.pi / number * (k % 2))) for k, r in enumerate(radii)] or [[]]
+        )
+        apart = np.abs(points[:, None] - points) + 9.0 * np.eye(len(points))
+        assert apart.min(initial=9.0) >= 1 - 1e-8
 
 
 def test_rings_stay_within_ratios_best_known():

@@ -1,0 +1,19 @@
+"""The app's picture frame: navigation, the shared sketch, the sidebar, the page; the link last."""
+
+import streamlit as st
+
+from optics.ui import controls, look, sketch
+
+st.set_page_config(page_title="Fiberscope sizing", page_icon=".streamlit/icon.png", layout="wide", initial_sidebar_state=340)
+look.apply()
+page = st.navigation(
+    [
+        st.Page("optics/ui/pages/sizing.py", title="Sizing", icon=":material/straighten:", default=True),
+        st.Page("optics/ui/pages/checks.py", title="Checks", icon=":material/fact_check:"),
+    ]
+)
+sketch.follow_link()
+with st.sidebar:
+    controls.show()
+page.run()
+sketch.write_link()
