@@ -24,7 +24,7 @@ from optics.scene.cover import spread_share
 from optics.scene.exit_cone import cone_na_holding
 from optics.spectrum import GRID_NM, color_rendering_index, color_temperature_k, duv, integral, luminous_flux_lm
 
-INNER_BINS, OUTER_BINS = 20, 12
+INNER_BINS, OUTER_BINS = 16, 8
 # Room beyond NA^2 for what bends widen: 2.5 X, at least a little, at most what the bend table knows.
 BEND_SPREAD, LEAST_ROOM, MOST_ROOM = 2.5, 1.02, 2.0
 LARGEST_NA = 0.9999  # of light that is followed: a grazing ray gets through no face

@@ -16,7 +16,7 @@ FEWEST, MOST = 100, 100_000_000
 BATCHES = 32
 AT_ONCE = 200_000  # rays sent out together
 ROUNDING = 1e-12
-FLIGHTS = 2  # rays that fly to the target for each one that the lamp sends out
+FLIGHTS = 5  # rays that fly to the target for each one that the lamp sends out
 
 
 @dataclass(frozen=True, slots=True)
