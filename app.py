@@ -4,7 +4,9 @@ import streamlit as st
 
 from optics.ui import controls, look, sketch
 
-st.set_page_config(page_title="Fiberscope sizing", page_icon=".streamlit/icon.png", layout="wide", initial_sidebar_state=340)
+st.set_page_config(
+    page_title="Fiberscope sizing", page_icon=".streamlit/icon.png", layout="wide", initial_sidebar_state=340
+)
 look.apply()
 page = st.navigation(
     [

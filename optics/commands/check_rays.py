@@ -99,7 +99,7 @@ class Compared:
             if lines:
                 unit = UNITS[lines[0].unit]
                 titles = ("", f"size, {unit}", f"rays, {unit}", "+- std error", "difference", "")
-                parts += [head, table([titles, *map(_cells, lines)], right=(1, 2, 3, 4)), ""]
+                parts += [head, table([titles, *map(_cells, lines)], right=(1, 2, 3, 4), wrap=False), ""]
         bends = max((line.bends for line in self.steps), default=0)
         said = "Every number agrees" if not self.wrong else f"{len(self.wrong)} numbers DISAGREE"
         told = (
@@ -182,6 +182,8 @@ def _seen(fiberscope: Fiberscope) -> tuple[Place, str] | None:
     seen, depth = field_of_view(table_of), float(pupil_depth_mm(table_of)[0])
     ports = {name: found[0] for name, found in fit(table_of, seen["image_mm"])[1].items()}
     ports = {f"port_{name}": found[ports["radius_mm"] != 0] for name, found in ports.items()}
+    if fiberscope.guide.bundle.exit_tilt_deg > 0:  # there the chain turns the ports; the rays refract at the ground face
+        ports["port_tilt_deg"] = np.zeros_like(ports["port_tilt_deg"])
     radius, start, end = float(seen["field_radius_mm"][0]), 0.0, 0.0
     region = "mean over the field"
     if not np.isfinite(radius):

@@ -95,16 +95,15 @@ def seconds(value_s: float | None) -> str:
 def lost(factor: float) -> str:
     """What a factor takes away, as a share of what came: tiny rests are told as the rest.
 
-    >>> lost(0.694), lost(1.0), lost(0.18), lost(0.0004), lost(1.02), lost(0.9996)
-    ('−31 %', '0', '−82 %', '×0.0004', '+2 %', '−0.04 %')
+    >>> lost(0.694), lost(1.0), lost(0.18), lost(0.0004), lost(1.02), lost(0.9996), lost(0.998)
+    ('−31 %', '0', '−82 %', '×0.0004', '+2 %', '0', '−0.2 %')
     """
-    if abs(factor - 1) < 5e-5:
+    if abs(factor - 1) < 5e-4:
         return "0"
     if factor < 0.01:
         return f"×{factor:.1g}"
     share = (factor - 1) * 100
-    digits = 0 if abs(share) >= 1.5 else 1 if abs(share) >= 0.15 else 2
-    return f"{'+' if share > 0 else '−'}{abs(share):.{digits}f} %"
+    return f"{'+' if share > 0 else '−'}{abs(share):.{0 if abs(share) >= 1.5 else 1}f} %"
 
 
 @lru_cache(maxsize=4096)

@@ -23,7 +23,7 @@ HIGH, MIDDLE = 4.05, 1.95  # the sheet; the ribbon's axis
 THICK, THIN_BACK = 1.05, 0.7  # of the ribbon at the lamp, and of the way back at the target
 EDGE, LAMP, CONE = 0.3, 0.66, 0.95  # margin; where the first leg begins; from tip to target
 LOSSES, NAMES, LIMITS = 2.56, 1.24, 0.89  # base lines of the losses, of the names, of what each part allows
-PAD, CROWDED = 0.1, 0.32  # beside each name; how far every other name steps down when they crowd
+PAD, CROWDED = 0.07, 0.32  # beside each name; how far every other name steps down when they crowd
 
 
 def light_strip(
@@ -41,7 +41,7 @@ def light_strip(
     last = viewer or landed
     end = width_in - EDGE - (_block_width(last) + (0.12 if viewer else 0.6) if last else 0.1)
     room = end - LAMP - (CONE if landed else 0.0)
-    returning = [wide + 1.6 * PAD for wide in _needs_in(back)]
+    returning = [wide + 2.3 * PAD for wide in _needs_in(back)]
     outgoing, crowded = _slots(there, room - sum(returning))
     tip = _ribbon(axes, palette, "light left", palette.light, there, outgoing, EDGE, LAMP, THICK, crowded)
     _station(axes, palette, words.lamp_station(report), EDGE, EDGE)

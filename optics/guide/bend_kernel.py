@@ -108,12 +108,7 @@ class Kernel:
     vectors: dict[str, AnyUnit]
 
 
-PAIRS = {
-    "only": (slice(0, 1), slice(0, 1)),
-    "first": (slice(0, 1), slice(None)),
-    "middle": (slice(None), slice(None)),
-    "last": (slice(None), slice(0, 1)),
-}
+PAIRS = {"only": (1, 1), "all": (MOMENTS, MOMENTS)}  # moments in and out: of a bend alone, of one of several
 NODES = (len(BEND_NODES), len(ANGLE_NODES), len(SHARE_NODES))
 WEAK_POWER = 1.4  # of the loss against Xe below the weakest node
 VECTOR_SCALE = 4.0  # the largest entry of a singular vector that the table can hold
@@ -141,7 +136,7 @@ def unpacked(flat: np.ndarray) -> Kernel:
     powers = vectors @ _step_powers()
     by_kind = {}
     for kind, (into, out) in PAIRS.items():
-        part = powers[:, :, into, out, :]
+        part = powers[:, :, :into, :out, :]
         by_kind[kind] = np.ascontiguousarray(part.reshape(rank + 1, coarse, -1, powers.shape[-1]))
     scores = np.concatenate([scores.reshape(count, rank), np.ones((count, 1))], axis=1)
     return Kernel(survival.reshape(count, fine), guided.reshape(count, fine), scores, by_kind)
@@ -150,7 +145,7 @@ def unpacked(flat: np.ndarray) -> Kernel:
 def step_moments(scores: AnyUnit) -> np.ndarray:
     """[design, level, moment in, moment out, degree]: the Legendre moments of the step that these scores stand for."""
     powers = np.linalg.pinv(_step_powers())
-    flat = scores @ kernel().vectors["middle"].reshape(scores.shape[-1], -1)
+    flat = scores @ kernel().vectors["all"].reshape(scores.shape[-1], -1)
     return flat.reshape(len(scores), level_count(COARSE), MOMENTS, MOMENTS, -1) @ powers
 
 

@@ -4,14 +4,17 @@ The step that a bend makes in zeta has, for each level s and each pair of skewne
 is a polynomial on [-1, 1] (in units of the longest step). Light enters evenly over a bin, so the share
 that lands in another bin is a second difference of the twice-integrated density over the four edges: no
 bin is ever narrower or wider than it says, and a bend of no strength is the unit matrix exactly.
+
+What a polynomial blurs is mended by reciprocity: a bend run backward is the same bend, so that from equal
+shares of phase space as much goes from bin i to bin j as back. That keeps the radiance of a filled cone.
 """
 
 import numpy as np
 
 from optics.guide import bend_kernel as table
 
-SCALINGS = 8  # of rows and columns, to a few parts in a thousand
 BLOCK = 16  # designs worked on at a time: their arrays stay in the cache
+SCALINGS = 4  # of rows and columns together; the last errors go to the rows
 _GAUSS = np.array([0.5 - np.sqrt(1 / 12), 0.5 + np.sqrt(1 / 12)])
 
 
@@ -34,98 +37,100 @@ def bend_rows(edges, x, turn, share):
         for some in np.split(rows, np.arange(BLOCK, len(rows), BLOCK)):
             parts = (first[some] + k for k in range(bends))
             ones = ((x[design[at], bend[at]], kept[at], partly[at], scores[at]) for at in parts)
-            out[some] = _row(edges[some], share[some], ones, bends)
-    return _even_within_the_cone(out, edges)
+            out[some] = _row(edges[some], share[some, None], ones, "only" if bends == 1 else "all")
+    return out
 
 
-def _even_within_the_cone(matrix, edges):
-    """The matrix with the light that lands within the guide's own cone spread as radiance wants it.
+def _row(edges, share, ones, kind):
+    """The matrix of one row of bends for a block of designs: the light's state [design, bin in, moment, bin]."""
+    state = scaled = landings = before = None
+    points = edges[:, :-1, None] + np.diff(edges)[:, :, None] * _GAUSS
+    room = np.diff(edges) * (1 - table.rank_share(1 - 1 / np.maximum(points, 1.0))).mean(axis=2)
+    for x, kept, acts, scores in ones:
+        if before is None or not np.array_equal(x, before):  # the same bend again lands the same way
+            scaled = table.zeta(edges, x[:, None], share) / table.span(x[:, None], share)
+            landings, before = _landings(scaled, table.kernel().vectors[kind].shape[-1]), x
+        into, total = _into(points, x[:, None, None], share[:, :, None], kept, scores, kind)
+        one = (into @ landings) / np.diff(scaled)[:, :, None, None]
+        one = _reciprocal(one.reshape(*one.shape[:2], *table.PAIRS[kind], one.shape[-1]), total, room)
+        one = _partly(one, total, acts)
+        after = one[:, :, 0] if state is None else _followed(state, one)
+        state = after if state is None else _not_above(after, state)
+    return _not_below_zero(state[:, :, 0])
 
-    A ray that leaves in bin j came, traced back, from somewhere with the same radiance or was lost on the way,
-    and a row of bends loses as much backward as forward. So light that fills all bins evenly leaves bin j with
-    its survival: there column sums of width x matrix go as those of its rows (Liouville; reciprocity). A few
-    steps of Sinkhorn and Knopp's scaling mend what polynomial densities blur near the axis; what each row
-    sends there as a whole stays.
+
+def _into(points, x, share, kept, scores, kind):
+    """Of light entering each bin: [design, bin, pair, power] of its step, and the share [design, bin] that stays."""
+    vectors = table.kernel().vectors[kind]
+    rank, levels, pairs, powers = vectors.shape
+    spread = (scores[:, None, :] @ vectors.reshape(rank, -1)).reshape(len(scores), levels, pairs * powers)
+    keeps = table.at_level(kept, table.level(points, x, share, table.FINE)) / 2
+    at = table.level(points, x, share, table.COARSE)
+    weight = keeps[..., None] * np.maximum(1 - np.abs(at[..., None] - np.arange(levels)), 0.0)
+    weight = weight[:, :, 0] + weight[:, :, 1]
+    return (weight @ spread).reshape(*points.shape[:2], pairs, powers), keeps.sum(axis=2)
+
+
+def _landings(scaled, powers):
+    """Second differences [design, bin in, power, bin out] of t^p, t the step between edges held in [-1, 1].
+
+    Light that would land below the first edge counts into the first bin, above the last into the last.
     """
-    cone = edges[:, 1:] <= 1.0 + 1e-9
-    flow = matrix * np.diff(edges)[:, :, None]
-    sends, survives = (flow * cone[:, None, :]).sum(axis=2), np.where(cone, flow.sum(axis=2), 0.0)
-    low = flow * cone[:, None, :]
-    lands = survives * _ratio(sends.sum(axis=1), survives.sum(axis=1))[:, None]
+    designs, edges = scaled.shape
+    step = scaled[:, None, :] - scaled[:, :, None]
+    held = np.clip(step, -1.0, 1.0)
+    held[:, :, 0], held[:, :, -1] = -1.0, 1.0
+    beyond = np.maximum(step - 1.0, 0.0)
+    beyond[:, :, 0] = 0.0
+    beyond[:, :, -1] = scaled[:, -1:] - scaled  # the last edge stands for infinity: only the starts differ
+    out = np.empty((designs, edges - 1, powers, edges - 1))
+    along, power = np.empty((designs, edges, edges - 1)), held.copy()
+    for p in range(powers):
+        values = power if p < powers - 1 else beyond
+        np.subtract(values[:, :, 1:], values[:, :, :-1], out=along)
+        np.subtract(along[:, :-1], along[:, 1:], out=out[:, :, p])
+        np.multiply(power, held, out=power)
+    return out
+
+
+def _reciprocal(one, total, room):
+    """One bend [design, bin in, moment in, moment out, bin out] made the same backward, each row's sum kept.
+
+    room: what the guided rays of each bin take of phase space; moments weigh 1/(2 k + 1) going out. The
+    outermost bin also holds all light beyond it and is left as it is.
+    """
+    weigh = 1.0 / (2 * np.arange(one.shape[3]) + 1)
+    flow = one * room[:, :, None, None, None] * weigh[:, None]
+    inner = flow[:, :-1, :, :, :-1]
+    flow[:, :-1, :, :, :-1] = (inner + inner.transpose(0, 4, 3, 2, 1)) / 2
+    flow[:, :, 0, 0] = np.maximum(flow[:, :, 0, 0], 0.0)
+    plain, wanted = flow[:, :, 0, 0].copy(), total * room
+    scale = np.ones_like(room)
     for _ in range(SCALINGS):
-        low = low * _ratio(lands, low.sum(axis=1))[:, None, :]
-        low = low * _ratio(sends, low.sum(axis=2))[:, :, None]
-    return np.where(cone[:, None, :], low, flow) / np.diff(edges)[:, :, None]
+        inside = plain[:, :-1, :-1].sum(axis=2)
+        part = np.sqrt(_ratio(np.maximum(wanted[:, :-1] - plain[:, :-1, -1], 0.0), inside))
+        plain[:, :-1, :-1] *= part[:, :, None] * part[:, None, :]
+        scale[:, :-1] *= part
+    rows = _ratio(wanted, plain.sum(axis=2))
+    flow[:, :, :, :, :-1] *= scale[:, None, None, None, :-1]
+    flow[:, :, :, :, :-1] *= scale[:, :, None, None, None]
+    return flow * (rows / room)[:, :, None, None, None] / weigh[:, None]
 
 
 def _ratio(over, under):
     return np.where(under > 0, over / np.where(under > 0, under, 1.0), 1.0)
 
 
-def _row(edges, share, ones, count):
-    state = None
-    for k, (x, kept, partly, scores) in enumerate(ones):
-        kind = "only" if count == 1 else "first" if k == 0 else "last" if k == count - 1 else "middle"
-        one = _one_bend(edges, x, share, kept, partly, scores, kind)
-        after = one[:, :, 0] if k == 0 else _followed(state, one)
-        state = after if k == 0 else _not_above(after, state)
-    return _not_below_zero(state[:, :, 0])
-
-
-def _one_bend(edges, x, share, survival, acts, scores, kind):
-    """[design, bin in, moment in, moment out, bin out] of one bend."""
-    designs, bins = len(edges), edges.shape[1] - 1
-    vectors = table.kernel().vectors[kind]
-    rank, levels, pairs, powers = vectors.shape
-    spread = (scores[:, None, :] @ vectors.reshape(rank, -1)).reshape(designs, levels, pairs * powers)
-    s = edges[:, :-1, None] + np.diff(edges)[:, :, None] * _GAUSS
-    x, share = x[:, None], share[:, None]
-    keeps = table.at_level(survival, table.level(s, x[..., None], share[..., None], table.FINE)) / 2
-    at = table.level(s, x[..., None], share[..., None], table.COARSE)
-    weight = keeps[..., None] * np.maximum(1 - np.abs(at[..., None] - np.arange(levels)), 0.0)
-    weight = weight[:, :, 0] + weight[:, :, 1]
-    kept = (weight @ spread).reshape(designs, bins, pairs, powers)
-    scaled = table.zeta(edges, x, share) / table.span(x, share)
-    one = kept @ _landings(scaled, powers) / np.diff(scaled)[:, :, None, None]
-    into, out = (len(range(table.MOMENTS)[part]) for part in table.PAIRS[kind])
-    one = one.reshape(designs, bins, into, out, bins)
-    partly = acts < 1
-    if partly.any():
+def _partly(one, total, acts):
+    """Blended with no bend at all where the bend is shorter than the table's first angle."""
+    short = np.flatnonzero(acts < 1)
+    if short.size:
+        bins, into, out = one.shape[1:4]
         stays = np.zeros((bins, into, out, bins))
         stays[np.arange(bins), :, :, np.arange(bins)] = np.eye(into, out)
-        stay = (1 - acts[partly])[:, None, None, None, None] * keeps[partly].sum(-1)[:, :, None, None, None] * stays
-        one[partly] = acts[partly][:, None, None, None, None] * one[partly] + stay
+        part = acts[short, None, None, None, None]
+        one[short] = part * one[short] + (1 - part) * total[short, :, None, None, None] * stays
     return one
-
-
-def _landings(scaled, powers):
-    """Second differences [design, bin in, power, bin out] of t^p, t the step between edges held in [-1, 1].
-
-    Light that would land below the first edge is mirrored there: an even cone stays even around its axis,
-    as the conservation of radiance wants. What would land above the last edge counts into the last bin.
-    """
-    designs, edges = scaled.shape
-    step = scaled[:, None, :] - scaled[:, :, None]
-    mirrored = np.clip(2 * scaled[:, :1, None] - scaled[:, None, :] - scaled[:, :, None], -1.0, 1.0)
-    held = np.clip(step, -1.0, 1.0)
-    held[:, :, -1], mirrored[:, :, -1] = 1.0, -1.0
-    out = np.empty((designs, edges - 1, powers, edges - 1))
-    power, back = held, mirrored
-    for p in range(powers - 1):
-        if p:
-            power, back = power * held, back * mirrored
-        out[:, :, p] = _second_difference(power - back)
-    beyond = np.maximum(step - 1.0, 0.0)
-    beyond[:, :, 0] = 0.0
-    # the last edge stands for infinity: there the straight line is (edge - start), of which starts differ
-    beyond[:, :, -1] = scaled[:, -1:] - scaled
-    out[:, :, -1] = _second_difference(beyond)
-    return out
-
-
-def _second_difference(values):
-    along = values[:, :, 1:] - values[:, :, :-1]
-    return along[:, :-1] - along[:, 1:]
 
 
 def _followed(state, one):
@@ -142,7 +147,7 @@ def _not_above(after, before):
 
 
 def _not_below_zero(matrix):
-    """The polynomial densities dip below 0 by up to about 0.01 of a row; the row's sum is kept."""
+    """What dips below 0 by the blur of the moments (some thousandths of a row) goes; the row's sum is kept."""
     kept = np.maximum(matrix, 0.0)
     total = matrix.sum(axis=-1, keepdims=True)
     return kept * (np.maximum(total, 0.0) / np.maximum(kept.sum(axis=-1, keepdims=True), 1e-300))

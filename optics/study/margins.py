@@ -20,6 +20,7 @@ from optics.viewer.detail import PARTS
 SAMPLES, SEED = 2000, 0
 FEWEST, MOST = 100, 100_000
 AT_ONCE = 2048  # samples whose spectra are held at a time
+LEAST_SPREAD = 1e-9  # relative; less is rounding
 QUANTILES = (0.05, 0.25, 0.5, 0.75, 0.95)
 NUMBERS = {  # headline numbers, in the order of the light, and the chain's name of each
     "delivered_lm": "delivered_lm",
@@ -116,7 +117,7 @@ def _distribution(name: str, nominal: float, found: np.ndarray) -> Distribution:
     whole = not missing.any()
     marks = np.quantile(ranked, QUANTILES, method="inverted_cdf")
     low, high = np.quantile(found[~missing], (0.005, 0.995), method="inverted_cdf")
-    counts = np.histogram(found[~missing], bins=16, range=(low, high))[0] if high > low else []
+    counts = np.histogram(found[~missing], bins=16, range=(low, high))[0] if high - low > LEAST_SPREAD * abs(high) else []
     return Distribution(
         name,
         _finite(nominal),
@@ -198,7 +199,7 @@ def _tighten(nominal, ranges, values, numbers, needs: Needs) -> tuple[Tightened 
 
 def _varies(found: np.ndarray) -> bool:
     present = found[~np.isnan(found)]
-    return bool(present.size > 0 and (present.size < found.size or np.ptp(present) > 1e-12 * np.abs(present).max()))
+    return bool(present.size > 0 and (present.size < found.size or np.ptp(present) > LEAST_SPREAD * np.abs(present).max()))
 
 
 def _finite(value: float) -> float | None:

@@ -39,7 +39,7 @@ def variance_shares(*, ranges: tuple[Tolerance, ...], values: AnyUnit, result: A
     """
     spread, count = np.ptp(result), len(result)
     degree = next((k for k in DEGREES if count >= SAMPLES_A_TERM * (1 + k * len(ranges))), None)
-    if degree is None or spread <= 1e-12 * np.abs(result).max():
+    if degree is None or spread <= 1e-9 * np.abs(result).max():
         return None
     basis = np.array([orthonormal(tolerance, values[:, row], degree) for row, tolerance in enumerate(ranges)])
     flat = basis.transpose(1, 0, 2).reshape(count, -1)

@@ -8,7 +8,16 @@ from optics.fiberscope import Fiberscope
 from optics.media.index import D_LINE_NM, refractive_index
 from optics.spec import not_negative, within
 from optics.study.rays import Flock, from_lamp, passed, redrawn
-from optics.study.rays_guide import HITS_A_RAY, along, around_bends, into_fibers, onto_face, through_joint
+from optics.study.rays_guide import (
+    HITS_A_RAY,
+    along,
+    along_wall,
+    around_bends,
+    into_fibers,
+    onto_face,
+    tapered,
+    through_joint,
+)
 from optics.study.rays_target import PARTS, Place, landing, out_of_guide, part_areas_mm2
 from optics.units import AnyUnit, lux_from_lm_mm2
 
@@ -111,8 +120,10 @@ def _through_guide(fiberscope: Fiberscope, flock: Flock, tally: Tally, random) -
     guide, note = fiberscope.guide, tally.note
     note("lamp", flock)
     sent, cable, fiber, bundle = len(flock), guide.cable, guide.fiber, guide.bundle
-    first, first_mm = (cable.fiber, cable.diameter_mm) if cable else (fiber, bundle.diameter_mm)
-    flock = onto_face(fiberscope.source, flock, face_mm=first_mm, face_na=first.na, note=note, random=random)
+    face_mm, end_mm = bundle.entry_mm or bundle.diameter_mm, bundle.exit_mm or bundle.diameter_mm
+    face_na = min(fiber.na * bundle.diameter_mm / face_mm, 1.0)  # steeper rays the taper would push out of the fibers
+    first, first_mm, first_na = (cable.fiber, cable.diameter_mm, cable.fiber.na) if cable else (fiber, face_mm, face_na)
+    flock = onto_face(fiberscope.source, flock, face_mm=first_mm, face_na=first_na, note=note, random=random)
     flock = flock.times(passed(na=flock.na, from_index=1.0, to_index=first.core_index))
     note("input face", flock)
     if cable:
@@ -120,18 +131,24 @@ def _through_guide(fiberscope: Fiberscope, flock: Flock, tally: Tally, random) -
         flock = into_fibers(flock, first, cable.packing_fraction, names, note, random)
         flock = along(flock, first, cable.length_m)
         note("cable attenuation", flock)
-        flock = through_joint(flock, guide.joint, first_mm, bundle.diameter_mm, first, fiber, note, random)
+        flock = through_joint(flock, guide.joint, first_mm, face_mm, face_na, first, fiber, note, random)
+    flock = tapered(flock, face_mm, bundle.diameter_mm)
     flock = into_fibers(flock, fiber, bundle.packing_fraction, ("packing", "core share"), note, random)
     if bundle.broken_fraction > 0:
         flock = flock.times(1 - bundle.broken_fraction)
         note("broken fibers", flock)
     flock = along(flock, fiber, bundle.length_m)
     note("attenuation", flock)
+    if bundle.bounce_loss_fraction > 0:
+        flock = along_wall(flock, fiber, bundle)
+        note("wall reflections", flock)
     if any(bend.angle_deg > 0 for bend in bundle.bends):
         flock = around_bends(flock, fiber, bundle, HITS_A_RAY * sent, random)
         note("bends", flock)
     cover = fiberscope.scene.cover if fiberscope.scene else None
-    return out_of_guide(flock, fiber.core_index, cover, _medium_index(fiberscope), note, random)
+    flock = tapered(flock, bundle.diameter_mm, end_mm)
+    leaning = {"core_index": fiber.core_index, "tilt_deg": bundle.exit_tilt_deg}
+    return out_of_guide(flock, **leaning, cover=cover, medium_index=_medium_index(fiberscope), note=note, random=random)
 
 
 def _on_target(fiberscope: Fiberscope, place: Place, flock: Flock, tally: Tally, random) -> None:

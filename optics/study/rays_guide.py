@@ -1,4 +1,4 @@
-"""Rays from the lamp onto the first face and through the guide to the last one: launch, cable, joint, fibers, bends."""
+"""Rays from the lamp onto the first face and through the guide: launch, cable, joint, fibers, walls, bends, tapers."""
 
 from dataclasses import replace
 
@@ -7,7 +7,7 @@ import numpy as np
 from optics.fiberscope import Butt, Fiber, GuideBundle, Joint, Lamp, Matched, Rated, Source, Spot
 from optics.guide.raytrace import Rays, after_straight_run, guided, through_bend
 from optics.study.rays import Flock, Note, evenly, on_disc, passed, redrawn, value_at
-from optics.units import mm_from_um, rad_from_deg, transmission_from_db
+from optics.units import mm_from_m, mm_from_um, rad_from_deg, transmission_from_db
 
 # Bends cost time by the hits on the wall: so many for each ray sent out by the lamp are afforded, and at least so many rays.
 HITS_A_RAY, LEAST_BENT = 100.0, 4000
@@ -80,8 +80,7 @@ def into_fibers(flock: Flock, fiber: Fiber, packing: float, names: tuple[str, st
     """From the face into the cores: fibers or the gaps between them, core or cladding by where a ray hits its fiber."""
     flock = flock.times(packing)
     note(names[0], flock)
-    x, y = on_disc(flock.batch, mm_from_um(fiber.fiber_um) / 2, random)
-    flock = flock.at(x, y).within(mm_from_um(fiber.core_um))
+    flock = _anywhere(flock, mm_from_um(fiber.fiber_um), random).within(mm_from_um(fiber.core_um))
     note(names[1], flock)
     return flock
 
@@ -93,10 +92,27 @@ def along(flock: Flock, fiber: Fiber, length_m: float) -> Flock:
     return flock.times(transmission_from_db(loss_db_m * path_m))
 
 
+def along_wall(flock: Flock, fiber: Fiber, bundle: GuideBundle) -> Flock:
+    """What the reflections at the wall leave: as many as chords, as each ray has it in its core, make up the length.
+
+    Seen along the fiber all chords of a ray are alike, by how far from the axis it passes.
+    """
+    radius_mm, sine = mm_from_um(fiber.core_um) / 2, flock.na / fiber.core_index
+    off = flock.x_mm * np.sin(flock.azimuth_rad) - flock.y_mm * np.cos(flock.azimuth_rad)
+    chord_mm = 2 * np.sqrt(np.maximum(radius_mm**2 - off**2, 1e-300))
+    reflections = mm_from_m(bundle.length_m) * sine / np.sqrt(1 - sine**2) / chord_mm
+    return flock.times((1 - bundle.bounce_loss_fraction) ** reflections)
+
+
+def tapered(flock: Flock, from_mm: float, to_mm: float) -> Flock:
+    """After a long taper: what a ray loses in height it gains in sine."""
+    return replace(flock, na=flock.na * from_mm / to_mm)
+
+
 def through_joint(
-    flock: Flock, joint: Joint, from_mm: float, to_mm: float, from_fiber: Fiber, fiber: Fiber, note: Note, random
+    flock: Flock, joint: Joint, from_mm: float, to_mm: float, to_na: float, from_fiber: Fiber, fiber: Fiber, note: Note, random
 ) -> Flock:
-    """Out of the cable's face, across the gap, into the guide's face.
+    """Out of the cable's face, across the gap, into the guide's face and the cone that it takes.
 
     Straight fibers keep the angle and scramble the azimuth; a fiber's place on the last face is random. Where the guide
     is the narrower, several copies of each ray try, from places of their own.
@@ -106,7 +122,7 @@ def through_joint(
     flock = redrawn(flock, round(len(flock) * np.clip((from_mm / to_mm) ** 2, 1, MOST_COPIES)), random)
     flock = _anywhere(flock, from_mm, random).across(joint.gap_mm, joint.index)
     flock = flock.at(flock.x_mm - joint.offset_mm, flock.y_mm).within(to_mm)
-    flock = flock.rows(flock.na <= fiber.na)
+    flock = flock.rows(flock.na <= to_na)
     note("joint", flock)
     flock = flock.times(passed(na=flock.na, from_index=joint.index, to_index=fiber.core_index))
     note("guide input face", flock)
@@ -125,7 +141,7 @@ def around_bends(flock: Flock, fiber: Fiber, bundle: GuideBundle, afforded_hits:
         hits = length_mm / core_mm * np.mean(np.tan(np.arcsin(flock.na / fiber.core_index))) * 4 / np.pi
         afforded = max(afforded_hits / max(hits, 1e-9), LEAST_BENT)
         flock = redrawn(flock, int(afforded), random) if afforded < len(flock) else flock
-    sine, turn = flock.na / fiber.core_index, 2 * np.pi * evenly(flock.batch, random)
+    sine, turn = flock.na / fiber.core_index, flock.azimuth_rad
     now = Rays(flock.x_mm * 2 / core_mm, flock.y_mm * 2 / core_mm, sine * np.cos(turn), sine * np.sin(turn))
     left = np.arange(len(flock))
     for bend in bends:

@@ -32,12 +32,19 @@ class Place:
 
 
 def out_of_guide(
-    flock: Flock, core_index: float, cover: Cover | None, medium_index: float, note: Note, random
+    flock: Flock,
+    *,
+    core_index: float,
+    tilt_deg: float,
+    cover: Cover | None,
+    medium_index: float,
+    note: Note,
+    random: np.random.Generator,
 ) -> Flock:
-    """Through the exit face, and through a cover with air behind it, spread or clear; the azimuth is any."""
+    """Through the exit face, upright or ground at an angle, and a cover with air behind it, spread or clear."""
     behind = medium_index if cover is None else 1.0
-    flock = flock.times(passed(na=flock.na, from_index=core_index, to_index=behind))
-    flock = flock.toward(flock.na, 2 * np.pi * evenly(flock.batch, random))
+    flock = flock.toward(flock.na, 2 * np.pi * evenly(flock.batch, random)).rows(flock.na < core_index)
+    flock = _refracted(flock, core_index, behind, float(rad_from_deg(tilt_deg)))
     note("exit face", flock)
     if cover is None:
         return flock
@@ -50,6 +57,22 @@ def out_of_guide(
     flock = flock.times(passed(na=flock.na, from_index=cover.index, to_index=medium_index))
     note("cover", flock)
     return flock
+
+
+def _refracted(flock: Flock, core_index: float, outside_index: float, tilt_rad: float) -> Flock:
+    """Each ray through a flat face whose normal leans toward -x, so that the light turns toward +x.
+
+    What lies along the face of n times the direction stays (Snell's law in three dimensions).
+    """
+    lean, upright = np.sin(tilt_rad), np.cos(tilt_rad)
+    x, y = flock.na * np.cos(flock.azimuth_rad), flock.na * np.sin(flock.azimuth_rad)
+    z = np.sqrt(core_index**2 - flock.na**2)
+    across = x * upright + z * lean  # along the face, in the plane of the tilt
+    along = np.hypot(across, y)
+    flock = flock.times(passed(na=along, from_index=core_index, to_index=outside_index))
+    across, y = (part[along < min(core_index, outside_index)] for part in (across, y))
+    x = across * upright - np.sqrt(outside_index**2 - across**2 - y**2) * lean
+    return flock.toward(np.hypot(x, y), np.arctan2(y, x))
 
 
 def landing(flock: Flock, place: Place, target: Target, cover: Cover | None, medium_index: float, random):

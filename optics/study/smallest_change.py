@@ -25,7 +25,7 @@ LIGHT = ("target_center_lux", "target_min_lux", "target_uva_w_m2")
 DETAIL = ("smallest_gap_mm", "smallest_line_mm")
 SEEN = (*DETAIL, "frame_hz")
 SIZE = ("fits", "outer_diameter_mm", "passes")
-RUNGS = np.log([1.02, 1.05, 1.1, 1.16, 1.25, 1.37, 1.55, 1.8, 2.2, 2.8, 4.0])
+RUNGS = np.log([1.03, 1.08, 1.17, 1.35, 1.7, 2.5, 4.0])
 BISECTIONS = 40
 CLOSE = 0.004  # of the change: how near the edge is found
 LESS = 0.98  # with this share of the change the design must still fail
@@ -186,8 +186,14 @@ def _pass(needs: Needs, few: Columns, lanes: _Lanes, value: np.ndarray) -> Flags
 
 
 def _closed_in(needs: Needs, few: Columns, lanes: _Lanes) -> _Lanes:
-    """The edge between failing and passing, by halving in ratio until it is near against the change."""
+    """The edge between failing and passing, by halving in ratio until it is near against the change.
+
+    A lane whose edge lies beyond what another lane of the same design has reached drops out.
+    """
     for _ in range(BISECTIONS):
+        reached = np.full(few.count, np.inf)
+        np.minimum.at(reached, lanes.row, np.abs(np.log(lanes.good / lanes.start)))
+        lanes = lanes.take(np.abs(np.log(lanes.bad / lanes.start)) < reached[lanes.row])
         wide = np.abs(np.log(lanes.good / lanes.bad)) > CLOSE * np.abs(np.log(lanes.good / lanes.start))
         rows = np.flatnonzero(wide)
         if not rows.size:

@@ -3,7 +3,8 @@
 import streamlit as st
 
 from optics.published import Checked, check, rows
-from optics.ui.rows import Columns, book, columns
+from optics.ui.provenance import book
+from optics.ui.rows import Columns, columns
 
 
 @st.cache_resource(max_entries=1, show_spinner="Checking the published values")
@@ -17,8 +18,9 @@ def summary(found: list[Checked]) -> str:
     remembered = sum(item.row.basis == "remembered" for item in found)
     wrong = len(found) - agree - known
     return (
-        f"{agree} of {len(found)} values agree, {known} differ for a stated reason, {wrong} disagree. {remembered} are from memory; "
-        f"the others stand in {len({item.row.source for item in found})} sources or come from a route of their own."
+        f"{agree} of {len(found)} values agree, {known} differ for a stated reason, {wrong} disagree. "
+        f"{remembered} are from memory; the others stand in {len({item.row.source for item in found})} sources "
+        "or come from a route of their own."
     )
 
 
@@ -29,4 +31,13 @@ def table(found: list[Checked], only_differing: bool) -> Columns:
 
 def _row(item: Checked) -> tuple[str, ...]:
     mark = "✓ agrees" if item.met else "○ differs, known" if item.row.differs else "✗ disagrees"
-    return mark, item.row.quantity, item.row.printed, f"{item.got:.7g}", book(item.row.source), item.row.at, item.row.basis, item.row.differs or ""
+    return (
+        mark,
+        item.row.quantity,
+        item.row.printed,
+        f"{item.got:.7g}",
+        book(item.row.source),
+        item.row.at,
+        item.row.basis,
+        item.row.differs or "",
+    )

@@ -3,9 +3,10 @@
 import streamlit as st
 
 from optics.ui import files, parts, sketch
-from optics.ui.fields import CHANGED, SOFT, is_changed
+from optics.ui.binding import CHANGED, SOFT, is_changed
+from optics.ui.names import TABLES
 from optics.ui.titles import PARTS, title
-from optics.ui.words import TABLES, plain
+from optics.ui.words import plain
 
 
 def show() -> None:
@@ -16,6 +17,9 @@ def show() -> None:
         for part in PARTS:
             changed = f" {CHANGED}" if is_changed(part) else ""
             state = title(part, here.design.document, here.design.fiberscope, here.report)
-            with st.expander(f"**{TABLES[part]}**{changed}  \n:small[{plain(state)}]", key=f"fold:{part}"), st.container(gap="small"):
+            with (
+                st.expander(f"**{TABLES[part]}**{changed}  \n:small[{plain(state)}]", key=f"fold:{part}"),
+                st.container(gap="small"),
+            ):
                 parts.show(part)
     st.caption(f"{CHANGED} changed   {SOFT} assumed or remembered. Hover a name for its meaning and source.")

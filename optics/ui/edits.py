@@ -15,7 +15,12 @@ from optics.ui.shape import default_form, extra, is_required, kind, members, spe
 
 # What a new table or a new list item starts from, where the middle of the usual range would be an odd choice.
 STARTS: dict[str, dict[str, Any]] = {
-    "guide.cable": {"fiber": {"preset": "lead_silicate_na057"}, "diameter_mm": 3.5, "length_m": 2.5, "packing_fraction": 0.82},
+    "guide.cable": {
+        "fiber": {"preset": "lead_silicate_na057"},
+        "diameter_mm": 3.5,
+        "length_m": 2.5,
+        "packing_fraction": 0.82,
+    },
     "guide.joint": {"gap_mm": 0.1},
     "guide.bundle.bends": {"radius_mm": 30.0, "angle_deg": 90.0},
     "scene.cover": {"index": 1.52, "thickness_mm": 0.5},
@@ -27,8 +32,19 @@ STARTS: dict[str, dict[str, Any]] = {
     "body.passage.bending": {"radius_mm": 15.0, "angle_deg": 120.0, "length_mm": 30.0},
 }
 # A table, and what it needs (added with it) or carries (removed with it).
-NEEDED = {"guide.cable": ("guide.joint",), "guide.joint": ("guide.cable",), "image": ("scene", "viewer"), "viewer": ("image",)}
-CARRIED = {"guide.cable": ("guide.joint",), "guide.joint": ("guide.cable",), "scene": ("image", "viewer"), "image": ("viewer",), "viewer": ("image",)}
+NEEDED = {
+    "guide.cable": ("guide.joint",),
+    "guide.joint": ("guide.cable",),
+    "image": ("scene", "viewer"),
+    "viewer": ("image",),
+}
+CARRIED = {
+    "guide.cable": ("guide.joint",),
+    "guide.joint": ("guide.cable",),
+    "scene": ("image", "viewer"),
+    "image": ("viewer",),
+    "viewer": ("image",),
+}
 
 
 def with_value(document: Document, path: str, value: Any, named: bool, unnamed_value: Any) -> Document:
@@ -48,7 +64,9 @@ def with_preset(document: Document, path: str, name: str) -> Document:
     """Another preset for a table: all its values come in force, also over what the old one's were changed to."""
     folder = FOLDERS[path]
     old = value_at(document, f"{path}.preset")
-    supplied = {key for known in (old, name) if known for key in (*preset(folder, known).values, *preset(folder, known).curves)}
+    supplied = {
+        key for known in (old, name) if known for key in (*preset(folder, known).values, *preset(folder, known).curves)
+    }
     dropped = {f"{path}.{key}": None for key in supplied if value_at(document, f"{path}.{key}") is not None}
     return presets.edited(document, {**dropped, f"{path}.preset": name})
 

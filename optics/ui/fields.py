@@ -1,19 +1,18 @@
 """One widget for one field of a Spec: its value from the document, its bounds, help and marks from the Spec and the sources."""
 
 import math
-import re
 from typing import Any
 
 import streamlit as st
 from pydantic.fields import FieldInfo
 
-from optics.presets import value_at
 from optics.ui import edits, sketch
+from optics.ui.binding import bound_to, commit, complaint, marked, way_back
+from optics.ui.names import choice, field_name, label
 from optics.ui.origin import Origin, help_text, origin, told
 from optics.ui.shape import bounds, choices, is_optional, kind, step
-from optics.ui.words import choice, field_name, label, plain, sentence_case, spoken, with_unit
+from optics.ui.words import sentence_case
 
-CHANGED, SOFT = ":primary[●]", ":gray[≈]"
 WIDE_SPAN = 30.0  # from this ratio of its usual bounds on, a slider moves in even ratios
 STOPS = 60  # of such a slider
 BOX_WIDTH = 88  # pixels; narrow enough that the box shows no buttons beside its slider
@@ -29,60 +28,6 @@ def show(path: str, field: FieldInfo, *, slider: bool = False, item: bool = Fals
         complaint(path)
 
 
-def bound_to(key: str, value: Any) -> str:
-    """The key of a widget, after making sure that the widget shows what the document says."""
-    if key not in st.session_state or st.session_state[key] != value:
-        st.session_state[key] = value
-    return key
-
-
-def is_changed(path: str) -> bool:
-    """Whether the document says something else at a path, or below it, than the design that was opened."""
-    here = sketch.current()
-    return value_at(here.document, path) != value_at(here.opened, path)
-
-
-def marked(path: str, text: str, found: Origin | None = None) -> str:
-    """A label with its marks: changed, or soft."""
-    if is_changed(path) or (found is not None and found.overrides):
-        return f"{sentence_case(text)} {CHANGED}"
-    return f"{sentence_case(text)} {SOFT}" if found is not None and found.soft else sentence_case(text)
-
-
-def way_back(path: str, found: Origin | None = None) -> None:
-    """A button back to the opened design's value, or to the preset's; nothing where nothing was changed."""
-    name = path.rpartition(".")[2]
-    if is_changed(path):
-        here = sketch.current()
-        old = value_at(here.opened, path)
-        if old is None and found is not None and found.behind is not None:
-            old = found.behind.value
-        st.button(f"Set back to {with_unit(old, name)}", key=f"{path}:back", type="tertiary", icon=":material/undo:",
-                  on_click=sketch.edit, args=(edits.set_back, here.opened, path))  # fmt: skip
-    elif found is not None and found.overrides:
-        st.button(f"Take the preset's {with_unit(found.behind.value, name)}", key=f"{path}:back", type="tertiary",
-                  icon=":material/undo:", on_click=sketch.edit, args=(edits.set_back, {}, path))  # fmt: skip
-
-
-def complaint(path: str) -> None:
-    """The sentence about the present document, where it is about this path."""
-    wrong = sketch.current().wrong
-    if wrong and re.search(rf"(?<![\w.]){re.escape(path)}(?![\w.])", wrong):
-        st.caption(f":red[✗ {plain(spoken(wrong))}]")
-
-
-def _commit(path: str, key: str, field: FieldInfo) -> None:
-    """Write a widget's value into the document; a cleared required field is no value."""
-    value = st.session_state[key]
-    if isinstance(value, float):
-        value = float(f"{value:.10g}")
-    if value is None and not is_optional(field):
-        return
-    here = sketch.current()
-    behind, named = origin(here.document, path, field).behind, value_at(here.opened, path) is not None
-    sketch.edit(edits.with_value, path, value, named, behind.value if behind else None)
-
-
 def _box(path: str, field: FieldInfo, found: Origin, text: str, **more: Any) -> None:
     """A box for a number, with a step from the usual bounds; what is impossible is refused with a sentence, not by the box."""
     whole = kind(field) == "whole"
@@ -92,10 +37,17 @@ def _box(path: str, field: FieldInfo, found: Origin, text: str, **more: Any) -> 
     if not needed or key in st.session_state:
         bound_to(key, value)
     st.number_input(
-        text, step=1 if whole else _step(bounds(field).usual, value), format="%d" if whole else "%g",
-        value=value if needed else None, key=key, help=help_text(field, path.rpartition(".")[2], found), placeholder="not set", on_change=_commit,
-        args=(path, key, field), **more,
-    )  # fmt: skip
+        text,
+        step=1 if whole else _step(bounds(field).usual, value),
+        format="%d" if whole else "%g",
+        value=value if needed else None,
+        key=key,
+        help=help_text(field, path.rpartition(".")[2], found),
+        placeholder="not set",
+        on_change=commit,
+        args=(path, key, field),
+        **more,
+    )
 
 
 def _step(usual: tuple[float, float] | None, value: float | None) -> float:
@@ -124,12 +76,29 @@ def _slider(path: str, field: FieldInfo, found: Origin, text: str, usual: tuple[
     if usual[0] > 0 and usual[1] / usual[0] > WIDE_SPAN and not whole:
         stops = _stops(usual, float(value))
         key = bound_to(f"{path}:slider", float(value))
-        st.select_slider(text, stops, key=key, help=asked, format_func=lambda stop: f"{stop:g}", on_change=_commit, args=(path, key, field))
+        st.select_slider(
+            text,
+            stops,
+            key=key,
+            help=asked,
+            format_func=lambda stop: f"{stop:g}",
+            on_change=commit,
+            args=(path, key, field),
+        )
         return
     as_number = int if whole else float
     key = bound_to(f"{path}:slider:{low:g}:{high:g}", as_number(value))
-    st.slider(text, as_number(low), as_number(high), step=1 if whole else step(usual[1] - usual[0]), format="%d" if whole else "%g",
-              key=key, help=asked, on_change=_commit, args=(path, key, field))  # fmt: skip
+    st.slider(
+        text,
+        as_number(low),
+        as_number(high),
+        step=1 if whole else step(usual[1] - usual[0]),
+        format="%d" if whole else "%g",
+        key=key,
+        help=asked,
+        on_change=commit,
+        args=(path, key, field),
+    )
 
 
 def _stops(usual: tuple[float, float], value: float) -> list[float]:
@@ -142,13 +111,26 @@ def _stops(usual: tuple[float, float], value: float) -> list[float]:
 def _switch(path: str, field: FieldInfo, found: Origin, slider: bool) -> None:
     key = bound_to(path, bool(found.value))
     name = path.rpartition(".")[2]
-    st.toggle(marked(path, field_name(name), found), key=key, help=help_text(field, name, found), on_change=_commit, args=(path, key, field))
+    st.toggle(
+        marked(path, field_name(name), found),
+        key=key,
+        help=help_text(field, name, found),
+        on_change=commit,
+        args=(path, key, field),
+    )
 
 
 def _choice(path: str, field: FieldInfo, found: Origin, slider: bool) -> None:
     name, key = path.rpartition(".")[2], bound_to(path, found.value)
-    st.selectbox(marked(path, field_name(name), found), choices(field), key=key, format_func=choice, help=help_text(field, name, found),
-                 on_change=_commit, args=(path, key, field))  # fmt: skip
+    st.selectbox(
+        marked(path, field_name(name), found),
+        choices(field),
+        key=key,
+        format_func=choice,
+        help=help_text(field, name, found),
+        on_change=commit,
+        args=(path, key, field),
+    )
 
 
 def _solve(path: str, field: FieldInfo, found: Origin, slider: bool) -> None:
@@ -156,8 +138,13 @@ def _solve(path: str, field: FieldInfo, found: Origin, slider: bool) -> None:
     word, name = choices(field)[0], path.rpartition(".")[2]
     solving = found.value == word
     key = bound_to(f"{path}:solve", solving)
-    st.toggle(marked(path, f"least {field_name(name)} that holds the parts", found), key=key, help=help_text(field, name, found),
-              on_change=_commit_solve, args=(path, key, word))  # fmt: skip
+    st.toggle(
+        marked(path, f"least {field_name(name)} that holds the parts", found),
+        key=key,
+        help=help_text(field, name, found),
+        on_change=_commit_solve,
+        args=(path, key, word),
+    )
     if not solving:
         _number(path, field, found, slider)
 
@@ -170,17 +157,25 @@ def _commit_solve(path: str, key: str, word: str) -> None:
 
 def _text(path: str, field: FieldInfo, found: Origin, slider: bool) -> None:
     key = bound_to(path, found.value or "")
-    st.text_input(marked(path, path.rpartition(".")[2]), key=key, on_change=_commit, args=(path, key, field))
+    st.text_input(marked(path, path.rpartition(".")[2]), key=key, on_change=commit, args=(path, key, field))
 
 
 def _curve(path: str, field: FieldInfo, found: Origin, slider: bool) -> None:
     """A curve is shown by its range and source; it is changed in the design file or by another preset."""
     sourced = sketch.current().design.sourced.get(path)
     if sourced is not None:
-        st.caption(f"{sentence_case(field_name(path.rpartition('.')[2]))}: {sourced.value}", help=f"{field.description}.\n\n{told(sourced)}")
+        st.caption(
+            f"{sentence_case(field_name(path.rpartition('.')[2]))}: {sourced.value}",
+            help=f"{field.description}.\n\n{told(sourced)}",
+        )
 
 
 WIDGETS = {
-    "number": _number, "whole": _number, "switch": _switch, "choice": _choice, "solve": _solve, "text": _text, "curve": _curve,
-}  # fmt: skip
-
+    "number": _number,
+    "whole": _number,
+    "switch": _switch,
+    "choice": _choice,
+    "solve": _solve,
+    "text": _text,
+    "curve": _curve,
+}

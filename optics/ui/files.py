@@ -9,8 +9,10 @@ from optics.fiberscope import Fiberscope
 from optics.presets import value_at
 from optics.tables import preset_names
 from optics.ui import fields, sketch
+from optics.ui.binding import bound_to
 from optics.ui.link import differences
-from optics.ui.words import place, plain, with_unit
+from optics.ui.names import place
+from optics.ui.words import plain, with_unit
 
 
 def fold() -> None:
@@ -27,8 +29,10 @@ def fold() -> None:
 
 def _open(here: sketch.Sketch) -> None:
     names = preset_names("fiberscopes")
-    key = fields.bound_to("demo", here.demo if here.file is None else None)
-    st.selectbox("Open a demo design", names, key=key, format_func=demo_name, placeholder="an opened file", on_change=_open_demo)
+    key = bound_to("demo", here.demo if here.file is None else None)
+    st.selectbox(
+        "Open a demo design", names, key=key, format_func=demo_name, placeholder="an opened file", on_change=_open_demo
+    )
     st.file_uploader("Open a design file", type="toml", key="file", on_change=_open_file)
 
 
@@ -54,7 +58,14 @@ def _changes(here: sketch.Sketch) -> None:
         return
     st.markdown(f"{len(changed)} change{'s' if len(changed) > 1 else ''} since opening")
     st.caption("  \n".join(_change(path, value_at(here.opened, path), value) for path, value in changed.items()))
-    st.button("Set everything back", key="all:back", type="tertiary", icon=":material/undo:", on_click=sketch.change, args=(here.opened,))
+    st.button(
+        "Set everything back",
+        key="all:back",
+        type="tertiary",
+        icon=":material/undo:",
+        on_click=sketch.change,
+        args=(here.opened,),
+    )
 
 
 def _change(path: str, old: object, new: object) -> str:
@@ -66,9 +77,23 @@ def _keep(here: sketch.Sketch) -> None:
     """Downloads of the last good design, built when asked for."""
     design, report = here.design, here.report
     stem = "_".join(design.fiberscope.name.lower().split()) or "design"
-    st.download_button("Download the design", lambda: presets.saved(design.document), f"{stem}.toml", "application/toml", key="keep:design",
-                       icon=":material/download:", on_click="ignore", width="stretch")  # fmt: skip
-    st.download_button("Download the report, JSON", lambda: json.dumps(report.as_dict(), indent=2, allow_nan=False), f"{stem}.json", "application/json",
-                       key="keep:report", icon=":material/download:", on_click="ignore", width="stretch")  # fmt: skip
-
-
+    st.download_button(
+        "Download the design",
+        lambda: presets.saved(design.document),
+        f"{stem}.toml",
+        "application/toml",
+        key="keep:design",
+        icon=":material/download:",
+        on_click="ignore",
+        width="stretch",
+    )
+    st.download_button(
+        "Download the report, JSON",
+        lambda: json.dumps(report.as_dict(), indent=2, allow_nan=False),
+        f"{stem}.json",
+        "application/json",
+        key="keep:report",
+        icon=":material/download:",
+        on_click="ignore",
+        width="stretch",
+    )

@@ -11,7 +11,8 @@ from optics.report.answer import Report
 from optics.report.reasons import limit_reason
 from optics.report.verdict import sentence
 from optics.ui import edits, sketch
-from optics.ui.words import field_name, number, plain, sentence_case, spoken, unit
+from optics.ui.names import field_name, spoken
+from optics.ui.words import number, percent, plain, sentence_case, unit
 
 TOO_BRIGHT = "radiance is conserved"  # in the refusal of a spot or a rating that its lamp cannot give
 MET, SHORT, OPEN = "✓", "✗", "○"
@@ -33,15 +34,47 @@ def _summary(key: str) -> Callable[[Report], float | None]:
 
 
 HEADLINES = (
-    Headline("Light at center", "lx", _summary("target_center_lux"), "illuminance where the axis meets the target", lambda r: r.target is not None),
-    Headline("Smallest gap", "mm", _summary("smallest_gap_mm"), "half a line pair at the target, in the worst direction", lambda r: r.detail is not None),
-    Headline("Thinnest line", "mm", _summary("smallest_line_mm"), "a single dark line that can still be seen", lambda r: r.detail is not None),
-    Headline("Evenness", "", _summary("evenness"), "least over mean illuminance in the field of view", lambda r: r.summary.evenness is not None),
-    Headline("Outer diameter", "mm", _summary("outer_diameter_mm"), "of the insertion tube", lambda r: r.fit is not None),
+    Headline(
+        "Light at center",
+        "lx",
+        _summary("target_center_lux"),
+        "illuminance where the axis meets the target",
+        lambda r: r.target is not None,
+    ),
+    Headline(
+        "Smallest gap",
+        "mm",
+        _summary("smallest_gap_mm"),
+        "half a line pair at the target, in the worst direction",
+        lambda r: r.detail is not None,
+    ),
+    Headline(
+        "Thinnest line",
+        "mm",
+        _summary("smallest_line_mm"),
+        "a single dark line that can still be seen",
+        lambda r: r.detail is not None,
+    ),
+    Headline(
+        "Evenness",
+        "",
+        _summary("evenness"),
+        "least over mean illuminance in the field of view",
+        lambda r: r.summary.evenness is not None,
+    ),
+    Headline(
+        "Outer diameter", "mm", _summary("outer_diameter_mm"), "of the insertion tube", lambda r: r.fit is not None
+    ),
     Headline("Delivered", "lm", lambda r: r.light.delivered_lm, "light that leaves the exit face", lambda r: True),
-    Headline("Guide passes", "", lambda r: r.light.transmission, "delivered over the lamp's light", lambda r: r.target is None),
+    Headline(
+        "Guide passes",
+        "",
+        lambda r: r.light.transmission,
+        "delivered over the lamp's light",
+        lambda r: r.target is None,
+    ),
     Headline("Exit NA", "", lambda r: r.light.exit_na, "holds 95 % of the lumens", lambda r: r.target is None),
-)  # fmt: skip
+)
 
 
 def banner(report: Report) -> None:
@@ -92,13 +125,26 @@ def _metric(item: Headline, value: float | None, before: float | None, compared:
     shown = "none" if value is None else f"{number(value)} {item.unit}".rstrip()
     full = "nothing is resolved" if value is None else f"{value:.6g} {item.unit}".rstrip()
     moved, arrow = moved_by(value, before) if compared else (None, "off")
-    st.metric(item.name, shown, moved, delta_color="off", delta_arrow=arrow,
-              help=f"{sentence_case(item.meaning)}. In full\\: {full}.")  # fmt: skip
+    st.metric(
+        item.name,
+        shown,
+        moved,
+        delta_color="off",
+        delta_arrow=arrow,
+        help=f"{sentence_case(item.meaning)}. In full\\: {full}.",
+    )
 
 
 def _limited(part: str | None, before: str | None, compared: bool) -> None:
     moved = None if not compared else "as pinned" if part == before else f"was {before or 'nothing'}"
-    st.metric("Limited by", part or "nothing", moved, delta_color="off", delta_arrow="off", help=f"{sentence_case(limit_reason(part))}.")
+    st.metric(
+        "Limited by",
+        part or "nothing",
+        moved,
+        delta_color="off",
+        delta_arrow="off",
+        help=f"{sentence_case(limit_reason(part))}.",
+    )
 
 
 def moved_by(value: float | None, before: float | None) -> tuple[str, str]:
@@ -108,26 +154,41 @@ def moved_by(value: float | None, before: float | None) -> tuple[str, str]:
     (('+20 %', 'up'), ('as pinned', 'off'), ('was 1', 'off'), ('×12', 'up'))
     """
     if value is None or before is None or before == 0:
-        return ("as pinned", "off") if value == before else (f"was {'none' if before is None else number(before)}", "off")
+        return (
+            ("as pinned", "off") if value == before else (f"was {'none' if before is None else number(before)}", "off")
+        )
     ratio = value / before
     if abs(ratio - 1) < 5e-4:
         return "as pinned", "off"
     arrow = "up" if ratio > 1 else "down"
     if ratio >= 3:
         return f"×{ratio:.3g}", arrow
-    return f"{ratio - 1:+.1%}".replace("%", " %").replace("-", "−") if abs(ratio - 1) < 0.1 else f"{ratio - 1:+.0%}".replace("%", " %").replace("-", "−"), arrow
+    return percent(ratio - 1, 1 if abs(ratio - 1) < 0.1 else 0), arrow
 
 
 def reference(here: sketch.Sketch) -> None:
     """Pin the present design, or say what is pinned and let go of it."""
     with st.container(horizontal=True, vertical_alignment="center", gap="small", width="content", key="reference"):
         if here.pinned is None:
-            st.button("Pin as reference", key="pin", type="tertiary", icon=":material/keep:", on_click=sketch.pin,
-                      help="Keeps this answer; the headline numbers then show what your changes do to it.")  # fmt: skip
+            st.button(
+                "Pin as reference",
+                key="pin",
+                type="tertiary",
+                icon=":material/keep:",
+                on_click=sketch.pin,
+                help="Keeps this answer; the headline numbers then show what your changes do to it.",
+            )
             return
         st.caption(f"Compared with the pinned {plain(here.pinned.report.name)} ({here.pinned.report.design_hash})")
         st.button("Pin this instead", key="pin", type="tertiary", icon=":material/keep:", on_click=sketch.pin)
-        st.button("Back to it", key="pin:back", type="tertiary", icon=":material/undo:", on_click=sketch.change, args=(here.pinned.document,))
+        st.button(
+            "Back to it",
+            key="pin:back",
+            type="tertiary",
+            icon=":material/undo:",
+            on_click=sketch.change,
+            args=(here.pinned.document,),
+        )
         st.button("Let go", key="pin:off", type="tertiary", icon=":material/keep_off:", on_click=sketch.unpin)
 
 
@@ -136,12 +197,27 @@ def alerts(here: sketch.Sketch) -> None:
     if here.notice:
         st.warning(plain(here.notice), icon=":material/info:")
     if here.wrong:
-        st.error(f"{plain(spoken(here.wrong))}  \nBelow stands the last good answer, from before this change.", icon=":material/error:")
+        st.error(
+            f"{plain(spoken(here.wrong))}  \nBelow stands the last good answer, from before this change.",
+            icon=":material/error:",
+        )
         with st.container(horizontal=True):
-            st.button("Take the change back", key="wrong:back", type="tertiary", icon=":material/undo:", on_click=sketch.take_back)
+            st.button(
+                "Take the change back",
+                key="wrong:back",
+                type="tertiary",
+                icon=":material/undo:",
+                on_click=sketch.take_back,
+            )
             if TOO_BRIGHT in here.wrong:
-                st.button("Match the launch to the lamp instead", key="wrong:match", type="tertiary", icon=":material/join_inner:",
-                          on_click=sketch.edit, args=(edits.with_form, "source.launch", "matched"))  # fmt: skip
+                st.button(
+                    "Match the launch to the lamp instead",
+                    key="wrong:match",
+                    type="tertiary",
+                    icon=":material/join_inner:",
+                    on_click=sketch.edit,
+                    args=(edits.with_form, "source.launch", "matched"),
+                )
 
 
 def caution(report: Report) -> None:

@@ -21,7 +21,9 @@ def differences(base: Document, document: Document) -> dict[str, Any]:
 
     Changed forms come first, as `edited` applies them first: what a new form fills in by itself is no difference.
     """
-    forms = {path: value for path, value in _changed(base, document, "") if path.endswith(".form") and value is not None}
+    forms = {
+        path: value for path, value in _changed(base, document, "") if path.endswith(".form") and value is not None
+    }
     start = edited(base, forms)
     return {**forms, **dict(_changed(start, document, ""))}
 
@@ -53,7 +55,9 @@ def read(text: str) -> tuple[str, list[dict[str, Any]]]:
         found = json.loads(plain, parse_constant=_refuse)
     except (ValueError, zlib.error, RecursionError):
         raise OutOfRange("The link's ?d= cannot be read; it must be copied whole.") from None
-    if not (isinstance(found, list) and 2 <= len(found) <= 3 and isinstance(found[0], str)) or not all(map(_is_table, found[1:])):
+    if not (isinstance(found, list) and 2 <= len(found) <= 3 and isinstance(found[0], str)) or not all(
+        map(_is_table, found[1:])
+    ):
         raise OutOfRange("The link's ?d= holds no design; it must name a demo design and its changes.")
     return found[0], found[1:]
 

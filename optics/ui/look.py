@@ -12,7 +12,7 @@ STYLE = """
 [data-testid="stTabPanel"] [data-testid="stImage"] { max-width: 640px; }
 [data-testid="stSliderTickBar"] { display: none; }
 [data-testid="stSliderThumbValue"] { opacity: 0; }
-[data-testid="stSlider"]:hover [data-testid="stSliderThumbValue"], [data-testid="stSlider"]:focus-within [data-testid="stSliderThumbValue"] { opacity: 1; }
+[data-testid="stSlider"]:is(:hover, :focus-within) [data-testid="stSliderThumbValue"] { opacity: 1; }
 @media (hover: hover) {
   :is([data-testid="stWidgetLabel"], [data-testid="stMetricLabel"]) [data-testid="stTooltipIcon"] { opacity: 0.25; }
   :is([data-testid="stWidgetLabel"], [data-testid="stMetric"]):hover [data-testid="stTooltipIcon"] { opacity: 1; }

@@ -12,7 +12,11 @@ from optics.ui.shape import bounds, extra
 from optics.ui.words import exact, plain, sentence_case, with_unit
 
 SOFT = ("assumed", "remembered")
-UNSOURCED_WORDS = {"trade": "Common practice, no source", "assumed": "Assumed", "own_scenario": "Made up for this design"}
+UNSOURCED_WORDS = {
+    "trade": "Common practice, no source",
+    "assumed": "Assumed",
+    "own_scenario": "Made up for this design",
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,7 +80,10 @@ def help_text(field: FieldInfo, name: str, found: Origin) -> str:
     """What a field is, where its value comes from, how far it may go."""
     lines = [sentence_case(plain(field.description or name)) + "."]
     if found.named:
-        lines.append("Set in this design." + (f" The preset has {with_unit(found.behind.value, name)}." if found.overrides else ""))
+        lines.append(
+            "Set in this design."
+            + (f" The preset has {with_unit(found.behind.value, name)}." if found.overrides else "")
+        )
     if found.behind is not None and (not found.named or found.overrides):
         lines.append(("" if found.from_preset else "Default. ") + told(found.behind))
         if found.behind.low is not None and found.behind.high is not None:
@@ -84,5 +91,11 @@ def help_text(field: FieldInfo, name: str, found: Origin) -> str:
     elif not found.named and field.is_required():
         lines.append("Not set.")
     limits, usual = allowed(field), bounds(field).usual
-    lines.append(" ".join(filter(None, (f"Allowed: {limits}." if limits else "", f"Usual: {usual[0]:g}–{usual[1]:g}." if usual else ""))))
+    lines.append(
+        " ".join(
+            filter(
+                None, (f"Allowed: {limits}." if limits else "", f"Usual: {usual[0]:g}–{usual[1]:g}." if usual else "")
+            )
+        )
+    )
     return "\n\n".join(filter(None, lines))

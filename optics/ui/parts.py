@@ -7,10 +7,11 @@ from optics.fiberscope import FORMS
 from optics.presets import FOLDERS, value_at
 from optics.tables import preset, preset_names
 from optics.ui import edits, fields, sketch
-from optics.ui.fields import bound_to, complaint, marked, way_back
+from optics.ui.binding import bound_to, complaint, is_changed, marked, way_back
+from optics.ui.names import FORMS as FORM_WORDS
+from optics.ui.names import TABLES, choice, field_name, preset_name
 from optics.ui.shape import Table, absent, default_form, extra, fewest_items, item_model, kind, most_items, tables
-from optics.ui.words import FORMS as FORM_WORDS
-from optics.ui.words import TABLES, choice, field_name, plain, preset_name
+from optics.ui.words import plain
 
 REMOVABLE = ("scene", "image", "viewer", "body")  # whole parts that a design can do without
 ONE_ROW = 22  # letters of choices that stand beside each other in the sidebar
@@ -47,7 +48,11 @@ def _head(table: Table) -> bool:
 
 def _common(table: Table) -> dict[str, FieldInfo]:
     """The fields that people move, the lists, and the needs that are set."""
-    return {name: field for name, field in table.model.model_fields.items() if _is_field(field) and _is_common(table, name, field)}
+    return {
+        name: field
+        for name, field in table.model.model_fields.items()
+        if _is_field(field) and _is_common(table, name, field)
+    }
 
 
 def _is_field(field: FieldInfo) -> bool:
@@ -83,7 +88,11 @@ def _common_fields(table: Table, titled: bool) -> None:
 def _rest(table: Table, titled: bool) -> None:
     """Every field that is not among the common ones."""
     common = _common(table)
-    rest = {name: field for name, field in table.model.model_fields.items() if _is_field(field) and name not in common and name != "form"}
+    rest = {
+        name: field
+        for name, field in table.model.model_fields.items()
+        if _is_field(field) and name not in common and name != "form"
+    }
     if not rest:
         return
     if titled:
@@ -99,12 +108,15 @@ def _form(path: str) -> None:
     """The choice among the forms of a table."""
     forms = list(FORMS[path])
     key = bound_to(f"{path}.form", value_at(sketch.current().document, f"{path}.form") or default_form(path))
-    text, common = marked(f"{path}.form", FORM_WORDS[path]), {"key": key, "format_func": choice, "on_change": _commit_form, "args": (path, key)}
+    text, common = (
+        marked(f"{path}.form", FORM_WORDS[path]),
+        {"key": key, "format_func": choice, "on_change": _commit_form, "args": (path, key)},
+    )
     if sum(len(choice(form)) for form in forms) > ONE_ROW:
         st.selectbox(text, forms, **common)
     else:
         st.segmented_control(text, forms, required=True, **common)
-    if fields.is_changed(f"{path}.form"):
+    if is_changed(f"{path}.form"):
         way_back(f"{path}.form")
 
 
@@ -123,8 +135,15 @@ def _preset(path: str) -> None:
     notes = "\n".join(f"- **{preset_name(name)}**\\: {plain(preset(folder, name).note)}" for name in names)
     key = bound_to(f"{path}.preset", present)
     with st.container(gap="xxsmall"):
-        st.selectbox(marked(f"{path}.preset", "family"), names, key=key, format_func=preset_name,
-                     help=notes, on_change=_commit_preset, args=(path, key))  # fmt: skip
+        st.selectbox(
+            marked(f"{path}.preset", "family"),
+            names,
+            key=key,
+            format_func=preset_name,
+            help=notes,
+            on_change=_commit_preset,
+            args=(path, key),
+        )
         if present in names:
             st.caption(plain(preset(folder, present).note))
         way_back(f"{path}.preset")
@@ -142,13 +161,27 @@ def _list(path: str, field: FieldInfo) -> None:
         with st.container(border=True, gap="xxsmall"):
             with st.container(horizontal=True, vertical_alignment="center", horizontal_alignment="distribute"):
                 st.markdown(f"{word} {index + 1}" if len(items) > 1 else word)
-                st.button("Remove", key=f"{path}.{index}:remove", type="tertiary", icon=":material/close:", help=f"Remove {word.lower()} {index + 1}",
-                          disabled=len(items) <= fewest_items(field), on_click=sketch.edit, args=(edits.without_item, path, index))  # fmt: skip
+                st.button(
+                    "Remove",
+                    key=f"{path}.{index}:remove",
+                    type="tertiary",
+                    icon=":material/close:",
+                    help=f"Remove {word.lower()} {index + 1}",
+                    disabled=len(items) <= fewest_items(field),
+                    on_click=sketch.edit,
+                    args=(edits.without_item, path, index),
+                )
             _item(f"{path}.{index}", field)
     if most_items(field) is None or len(items) < most_items(field):
-        st.button(f"Add {word.lower()}", key=f"{path}:add", type="tertiary", icon=":material/add:", on_click=sketch.edit,
-                  args=(edits.with_item, path))  # fmt: skip
-    if fields.is_changed(path):
+        st.button(
+            f"Add {word.lower()}",
+            key=f"{path}:add",
+            type="tertiary",
+            icon=":material/add:",
+            on_click=sketch.edit,
+            args=(edits.with_item, path),
+        )
+    if is_changed(path):
         way_back(path)
     complaint(path)
 
@@ -161,10 +194,22 @@ def _item(path: str, field: FieldInfo) -> None:
 
 
 def _add(path: str) -> None:
-    st.button(f"Add {TABLES.get(path, path).lower()}", key=f"{path}:add", type="tertiary", icon=":material/add:", on_click=sketch.edit,
-              args=(edits.with_table, path))  # fmt: skip
+    st.button(
+        f"Add {TABLES.get(path, path).lower()}",
+        key=f"{path}:add",
+        type="tertiary",
+        icon=":material/add:",
+        on_click=sketch.edit,
+        args=(edits.with_table, path),
+    )
 
 
 def _remove(path: str) -> None:
-    st.button(f"Remove {TABLES.get(path, path).lower()}", key=f"{path}:remove", type="tertiary", icon=":material/close:",
-              on_click=sketch.edit, args=(edits.without_table, path))  # fmt: skip
+    st.button(
+        f"Remove {TABLES.get(path, path).lower()}",
+        key=f"{path}:remove",
+        type="tertiary",
+        icon=":material/close:",
+        on_click=sketch.edit,
+        args=(edits.without_table, path),
+    )

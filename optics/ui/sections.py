@@ -4,9 +4,10 @@ from collections.abc import Callable
 
 import streamlit as st
 
-from optics.ui import pictures, rows
+from optics.ui import pictures, provenance, rows
+from optics.ui.names import place, spoken
 from optics.ui.sketch import Sketch
-from optics.ui.words import plain
+from optics.ui.words import plain, sentence_case
 
 
 def _table(columns: rows.Columns, alt: str, header: bool = True) -> None:
@@ -42,7 +43,9 @@ def detail(here: Sketch) -> None:
     st.markdown(f"**{plain(rows.limit_words(here.report))}**")
     left, right = st.columns(2)
     with left:
-        pictures.show("ledger", here.design, here.report, "What each part alone would allow, in line pairs per mm at the target")
+        pictures.show(
+            "ledger", here.design, here.report, "What each part alone would allow, in line pairs per mm at the target"
+        )
         _table(rows.ledger(here.report), "Ledger of detail")
     with right:
         _table(rows.detail(here.report), "Numbers of detail", header=False)
@@ -55,17 +58,28 @@ def fit(here: Sketch) -> None:
     left, right = st.columns(2)
     with left:
         pictures.show("section", here.design, here.report, "Cross-section of the tube to scale")
+        _table(rows.section(here.report), "What the tube holds", header=False)
     with right:
         pictures.show("passage", here.design, here.report, "The rigid tip at its tightest in the bore")
-        _table(rows.fit(here.report), "Fit and passage", header=False)
+        _table(rows.passage(here.report), "What the tube passes", header=False)
 
 
 def working_range(here: Sketch) -> None:
-    if here.report.target is None:
+    curves = pictures.range_curves(here.report.design_hash, here.design.fiberscope)
+    if curves is None:
         st.markdown("This design has no target, so no working range.")
         return
-    if not pictures.show("range", here.design, here.report, "Light and detail over the working distance, and where needs begin to fail"):
-        st.markdown("The working range of this design cannot be drawn.")
+    left, right = st.columns(2)
+    with left:
+        pictures.show(
+            "range",
+            here.design,
+            here.report,
+            "Light and detail over the working distance, and where needs begin to fail",
+        )
+    with right:
+        st.markdown("\n".join(f"- {line}" for line in rows.range_words(curves)))
+        _table(rows.working_range(curves), "Light and detail over the working distance")
 
 
 def screening(here: Sketch) -> None:
@@ -81,17 +95,29 @@ def needs(here: Sketch) -> None:
     if here.report.needs:
         _table(rows.needs(here.report), "Needs with their margins")
     else:
-        st.markdown("No needs are set. Set them in the last fold of the sidebar: the answer then says what is met and what is short.")
+        st.markdown(
+            "No needs are set. Set them in the last fold of the sidebar: the answer then says what is met and what is short."
+        )
 
 
-def provenance(here: Sketch) -> None:
-    st.markdown(rows.softness(here.design.sourced))
-    st.dataframe(rows.provenance(here.design.sourced), height=460, hide_index=True, alt="Every value in force and its source",
-                 column_config={"path": st.column_config.TextColumn(pinned=True)})  # fmt: skip
+def sources(here: Sketch) -> None:
+    st.markdown(provenance.softness(here.design.sourced))
+    st.dataframe(
+        provenance.table(here.design.sourced),
+        height=460,
+        hide_index=True,
+        alt="Every value in force and its source",
+        column_config={"path": st.column_config.TextColumn(pinned=True)},
+    )
 
 
 def caveats(here: Sketch) -> None:
-    st.markdown("\n".join(f"- **{plain(item.where)}**\\: {plain(item.text)}" for item in here.report.caveats))
+    """What the reader should know about this design's numbers; the caution of the setting stands above."""
+    said = [item for item in here.report.caveats if item.where != "setting"]
+    st.markdown(
+        "\n".join(f"- **{plain(sentence_case(place(item.where)))}**\\: {plain(spoken(item.text))}" for item in said)
+        or "None."
+    )
 
 
 SECTIONS: dict[str, Callable[[Sketch], None]] = {
@@ -102,6 +128,6 @@ SECTIONS: dict[str, Callable[[Sketch], None]] = {
     "Working range": working_range,
     "Screening": screening,
     "Needs": needs,
-    "Sources": provenance,
+    "Sources": sources,
     "Caveats": caveats,
 }

@@ -93,8 +93,12 @@ def bounds(field: FieldInfo) -> Bounds:
     limits = list(field.metadata)
     for part in get_args(field.annotation):
         limits += [item for given in getattr(part, "__metadata__", ()) for item in getattr(given, "metadata", ())]
-    low = next((bound for item in limits for key in ("ge", "gt") if (bound := getattr(item, key, None)) is not None), None)
-    high = next((bound for item in limits for key in ("le", "lt") if (bound := getattr(item, key, None)) is not None), None)
+    low = next(
+        (bound for item in limits for key in ("ge", "gt") if (bound := getattr(item, key, None)) is not None), None
+    )
+    high = next(
+        (bound for item in limits for key in ("le", "lt") if (bound := getattr(item, key, None)) is not None), None
+    )
     usual = extra(field, "usual")
     return Bounds(low, high, tuple(map(float, usual)) if usual else None)
 
@@ -116,7 +120,11 @@ def spec_of(path: str, document: Document | None = None) -> type[Spec] | None:
         if field is None:
             return None
         found = members(field.annotation)
-        here = [item_model(field)] if get_origin(found[0]) is tuple else [m for m in found if isinstance(m, type) and issubclass(m, Spec)]
+        here = (
+            [item_model(field)]
+            if get_origin(found[0]) is tuple
+            else [m for m in found if isinstance(m, type) and issubclass(m, Spec)]
+        )
         at = ".".join(parts[:depth])
         form = value_at(document, f"{at}.form") if document and at in FORMS else None
         if form in FORMS.get(at, {}):

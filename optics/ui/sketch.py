@@ -87,7 +87,9 @@ def from_link(text: str) -> Sketch:
     """The sketch of a link's text, checked like any file."""
     demo, settings = link.read(text)
     if demo not in preset_names("fiberscopes"):
-        raise OutOfRange(f"The link's design starts from {demo!r}; demo designs: {', '.join(preset_names('fiberscopes'))}.")
+        raise OutOfRange(
+            f"The link's design starts from {demo!r}; demo designs: {', '.join(preset_names('fiberscopes'))}."
+        )
     base = presets.open(demo).document
     file = settings[0] if len(settings) == 2 else None
     try:

@@ -5,7 +5,8 @@ from collections.abc import Callable
 from optics.fiberscope import Fiberscope
 from optics.presets import Document, value_at
 from optics.report.answer import Report
-from optics.ui.words import exact, number, preset_name
+from optics.ui.names import preset_name
+from optics.ui.words import exact, number
 
 PARTS = ("source", "guide", "scene", "image", "viewer", "body", "needs")
 
@@ -37,7 +38,8 @@ def _source(document: Document, scope: Fiberscope, report: Report) -> str:
 def _guide(document: Document, scope: Fiberscope, report: Report) -> str:
     bundle = scope.guide.bundle
     cable = f"cable {exact(scope.guide.cable.length_m)} m, " if scope.guide.cable else ""
-    return f"{cable}{_named(document, 'guide.fiber', f'NA {exact(scope.guide.fiber.na)}')}, {exact(bundle.diameter_mm)} mm × {exact(bundle.length_m)} m"
+    fiber = _named(document, "guide.fiber", f"NA {exact(scope.guide.fiber.na)}")
+    return f"{cable}{fiber}, {exact(bundle.diameter_mm)} mm × {exact(bundle.length_m)} m"
 
 
 def _scene(document: Document, scope: Fiberscope, report: Report) -> str:
@@ -75,5 +77,11 @@ def _needs(document: Document, scope: Fiberscope, report: Report) -> str:
 
 
 TITLES: dict[str, Callable[[Document, Fiberscope, Report], str]] = {
-    "source": _source, "guide": _guide, "scene": _scene, "image": _image, "viewer": _viewer, "body": _body, "needs": _needs,
-}  # fmt: skip
+    "source": _source,
+    "guide": _guide,
+    "scene": _scene,
+    "image": _image,
+    "viewer": _viewer,
+    "body": _body,
+    "needs": _needs,
+}

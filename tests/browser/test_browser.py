@@ -19,9 +19,15 @@ pytestmark = pytest.mark.browser
 ROOT = Path(__file__).resolve().parents[2]
 NAMES = ("chromium", "chromium-browser", "google-chrome")
 QUIET = (
-    "--headless", "--no-sandbox", "--disable-gpu", "--disable-quic", "--no-first-run", "--disable-background-networking",
-    "--disable-component-update", "--disable-sync",
-)  # fmt: skip
+    "--headless",
+    "--no-sandbox",
+    "--disable-gpu",
+    "--disable-quic",
+    "--no-first-run",
+    "--disable-background-networking",
+    "--disable-component-update",
+    "--disable-sync",
+)
 LAST = "it certifies nothing"  # what the page prints last
 LIMIT_MS = 30_000
 
@@ -53,8 +59,20 @@ def address(browser) -> Iterator[str]:
     with socket.socket() as free:
         free.bind(("127.0.0.1", 0))
         port = free.getsockname()[1]
-    command = [sys.executable, "-m", "streamlit", "run", "app.py", "--server.port", str(port), "--server.fileWatcherType", "none"]
-    server = subprocess.Popen(command, cwd=ROOT, start_new_session=True, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL)
+    command = [
+        sys.executable,
+        "-m",
+        "streamlit",
+        "run",
+        "app.py",
+        "--server.port",
+        str(port),
+        "--server.fileWatcherType",
+        "none",
+    ]
+    server = subprocess.Popen(
+        command, cwd=ROOT, start_new_session=True, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL
+    )
     try:
         wait_for(f"http://127.0.0.1:{port}/_stcore/health")
         yield f"http://127.0.0.1:{port}/"
@@ -99,7 +117,9 @@ class Watched:
         assert page.get_by_test_id("stException").count() == 0
         assert self.errors == []
         assert self.hosts <= {"127.0.0.1", ""}
-        page.wait_for_function("[...document.images].length && [...document.images].every(i => i.complete && i.naturalWidth > 0)")
+        page.wait_for_function(
+            "[...document.images].length && [...document.images].every(i => i.complete && i.naturalWidth > 0)"
+        )
         assert page.evaluate("document.querySelector('[data-testid=stMain]').scrollWidth <= innerWidth")
 
 

@@ -1,0 +1,82 @@
+"""What ties a widget to the document: its key and value, its marks, its way back, its complaint, and the write on a change."""
+
+import re
+from typing import Any
+
+import streamlit as st
+from pydantic.fields import FieldInfo
+
+from optics.presets import value_at
+from optics.ui import edits, sketch
+from optics.ui.names import spoken
+from optics.ui.origin import Origin, origin
+from optics.ui.shape import is_optional
+from optics.ui.words import plain, sentence_case, with_unit
+
+CHANGED, SOFT = ":primary[●]", ":gray[≈]"
+
+
+def bound_to(key: str, value: Any) -> str:
+    """The key of a widget, after making sure that the widget shows what the document says."""
+    if key not in st.session_state or st.session_state[key] != value:
+        st.session_state[key] = value
+    return key
+
+
+def is_changed(path: str) -> bool:
+    """Whether the document says something else at a path, or below it, than the design that was opened."""
+    here = sketch.current()
+    return value_at(here.document, path) != value_at(here.opened, path)
+
+
+def marked(path: str, text: str, found: Origin | None = None) -> str:
+    """A label with its marks: changed, or soft."""
+    if is_changed(path) or (found is not None and found.overrides):
+        return f"{sentence_case(text)} {CHANGED}"
+    return f"{sentence_case(text)} {SOFT}" if found is not None and found.soft else sentence_case(text)
+
+
+def way_back(path: str, found: Origin | None = None) -> None:
+    """A button back to the opened design's value, or to the preset's; nothing where nothing was changed."""
+    name = path.rpartition(".")[2]
+    if is_changed(path):
+        here = sketch.current()
+        old = value_at(here.opened, path)
+        if old is None and found is not None and found.behind is not None:
+            old = found.behind.value
+        st.button(
+            f"Set back to {with_unit(old, name)}",
+            key=f"{path}:back",
+            type="tertiary",
+            icon=":material/undo:",
+            on_click=sketch.edit,
+            args=(edits.set_back, here.opened, path),
+        )
+    elif found is not None and found.overrides:
+        st.button(
+            f"Take the preset's {with_unit(found.behind.value, name)}",
+            key=f"{path}:back",
+            type="tertiary",
+            icon=":material/undo:",
+            on_click=sketch.edit,
+            args=(edits.set_back, {}, path),
+        )
+
+
+def complaint(path: str) -> None:
+    """The sentence about the present document, where it is about this path."""
+    wrong = sketch.current().wrong
+    if wrong and re.search(rf"(?<![\w.]){re.escape(path)}(?![\w.])", wrong):
+        st.caption(f":red[✗ {plain(spoken(wrong))}]")
+
+
+def commit(path: str, key: str, field: FieldInfo) -> None:
+    """Write a widget's value into the document; a cleared required field is no value."""
+    value = st.session_state[key]
+    if isinstance(value, float):
+        value = float(f"{value:.10g}")
+    if value is None and not is_optional(field):
+        return
+    here = sketch.current()
+    behind, named = origin(here.document, path, field).behind, value_at(here.opened, path) is not None
+    sketch.edit(edits.with_value, path, value, named, behind.value if behind else None)
