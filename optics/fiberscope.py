@@ -208,6 +208,21 @@ RULES = (
         "the bundle must hold at least one fiber",
     ),
     Rule(
+        ("scene.ports.offset_mm", "scene.ports.count", "guide.bundle.diameter_mm"),
+        lambda offset, count, bundle: (
+            (np.asarray(count) < 2)
+            | (2 * offset * np.sin(np.pi / np.maximum(count, 2)) >= bundle / np.sqrt(count) * (1 - 1e-9))
+        ),
+        "the ports overlap each other there: move them out",
+        shown=1,
+    ),
+    Rule(
+        ("scene.ports.offset_mm", "scene.ports.count", "guide.bundle.diameter_mm", "image.bundle.diameter_mm"),
+        lambda offset, count, bundle, image: 2 * np.asarray(offset) >= (bundle / np.sqrt(count) + image) * (1 - 1e-9),
+        "the ports overlap the image bundle there: move them out",
+        shown=1,
+    ),
+    Rule(
         ("guide.bundle.diameter_mm", "scene.ports.ports.diameter_mm", "guide.bundle.packing_fraction"),
         lambda bundle, ports, packing: np.nansum(np.square(ports), axis=-1) >= bundle**2 * packing * (1 - 1e-9),
         "the placed ports together must have room for the guide's fibers",

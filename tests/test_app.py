@@ -9,6 +9,7 @@ from optics.report.size import size
 from optics.tables import preset_names
 from optics.ui import link
 from optics.ui.sections import SECTIONS
+from optics.ui.titles import PARTS
 from optics.ui.words import number
 
 
@@ -73,6 +74,18 @@ def test_a_wrong_value_is_a_sentence_and_the_last_answer_stays():
     click(app, "wrong:back")
     assert not app.error
     assert app.number_input(key=LENGTH).value == 1.8
+
+
+@pytest.mark.parametrize("value", [-1, 0, 10**9])
+def test_no_number_breaks_the_page(value):
+    app = opened()
+    for part in PARTS:
+        app.session_state[f"{part}:more"] = True
+    ran(app)
+    assert len(app.number_input) > 60
+    for box in app.number_input:
+        box.set_value(value)
+    assert ran(app).error
 
 
 def test_a_rule_across_fields_is_a_sentence_too():

@@ -117,7 +117,10 @@ def evaluate_possible(columns: Columns) -> tuple[Figures, Flags]:
 
 def distinct_inputs(columns: Columns) -> dict[str, int]:
     """How many distinct sections and lights a set of designs has."""
-    return {"sections": len(distinct_rows(columns, SECTION)[0]), "lights": len(_grouped([_codes(columns).of(LIGHT)])[0])}
+    return {
+        "sections": len(distinct_rows(columns, SECTION)[0]),
+        "lights": len(_grouped([_codes(columns).of(LIGHT)])[0]),
+    }
 
 
 # Which designs share an input: whole numbers that tell the distinct values of a column apart
@@ -223,14 +226,19 @@ def _joined_light(parts: list[Light]) -> Light:
     )
     after = _stacked([part.after_lm for part in parts], counts)
     return Light(
-        np.concatenate([part.lamp_w_nm for part in parts]), beam, after, _stacked([part.value for part in parts], counts)
+        np.concatenate([part.lamp_w_nm for part in parts]),
+        beam,
+        after,
+        _stacked([part.value for part in parts], counts),
     )
 
 
 def _joined_lit(parts: Iterable[Lit]) -> Lit:
     parts = list(parts)
     counts = [len(part.center_w_m2_nm) for part in parts]
-    return Lit(np.concatenate([part.center_w_m2_nm for part in parts]), _stacked([part.value for part in parts], counts))
+    return Lit(
+        np.concatenate([part.center_w_m2_nm for part in parts]), _stacked([part.value for part in parts], counts)
+    )
 
 
 def _joined(parts: list[Figures], counts: list[int]) -> Figures:
@@ -245,4 +253,3 @@ def _stacked(tables: list[dict[str, np.ndarray]], counts: list[int]) -> dict[str
         name: np.concatenate([table.get(name, np.full(count, np.nan)) for table, count in zip(tables, counts)])
         for name in names
     }
-

@@ -11,13 +11,13 @@ from optics.chain.target import Lit
 from optics.chain.way_back import WORST_DEG, Parts, way_back
 from optics.image.contrast import aberration_mtf, cutoff_lp_mm, diffraction_mtf, disc_mtf, pixel_mtf, veil_contrast
 from optics.image.coupled import ring_mtf
-from optics.image.objective import magnification
 from optics.units import lp_mm_from_per_um, mm_from_um, per_um_from_lp_mm, um_from_mm
 from optics.viewer.detail import LINE_PITCHES, PARTS, largest_passing, line_seen_um, needed_contrast, smallest_line_um
 from optics.viewer.eye import contrast_sensitivity, one_eye_threshold_contrast, seen_frequency_cpd
 
 VARIANTS = (None, *PARTS)  # the design as it is, then with each part ideal alone
 AIRY_ZERO = 1.2196698912665045  # first zero of a disc's contrast, times diameter and frequency
+ROSE_SNR = 5.0  # threshold for an eye before uneven cores (Rose 1948)
 BRIGHT_CD_M2 = 1e6  # "as much light as wanted" for an eye
 NODES, WEIGHTS = np.polynomial.legendre.leggauss(24)
 
@@ -52,8 +52,8 @@ def detail(columns: Columns, lit: Lit, seen: dict[str, np.ndarray]) -> dict[str,
 
 
 def _detail(columns: Columns, target_w_m2_nm: np.ndarray, seen: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
-    size = magnification(focal_mm=columns["image.objective.focal_mm"], focus_mm=seen["focus_from_pupil_mm"])
-    parts, value = way_back(columns, target_w_m2_nm, seen, size)
+    size = seen["image_over_target_ratio"]  # at the target's distance, which need not be the sharpest
+    parts, value = way_back(columns, target_w_m2_nm, seen)
     upper = np.array([_upper_lp_mm(parts, ideal) for ideal in VARIANTS])
     resolved = largest_passing(lambda f: _margin(parts, f), upper_lp_mm=upper)
     whole = lp_mm_from_per_um(1.0 / um_from_mm(seen["image_mm"]))  # one period over the whole image
@@ -131,7 +131,9 @@ def _needed(parts: Parts, frequency: np.ndarray) -> np.ndarray:
     )
     if not parts.eye.any():
         return needed
-    cycles = np.maximum(seen_frequency_cpd(frequency_lp_mm=frequency, eyepiece_focal_mm=parts.eyepiece_focal_mm), 1e-3)
+    # Coarser than its peak the eye needs more contrast again, but a coarse pattern has edges that it sees as well.
+    cycles = seen_frequency_cpd(frequency_lp_mm=frequency, eyepiece_focal_mm=parts.eyepiece_focal_mm)
+    cycles = np.maximum(cycles, parts.peak_cpd)
     sensitivity = contrast_sensitivity(frequency_cpd=cycles, luminance_cd_m2=bright, field_deg=parts.seen_deg)
     by_eye = one_eye_threshold_contrast(sensitivity=np.maximum(sensitivity, 1e-12))
     by_eye = np.where(np.array([part == "eye" for part in VARIANTS])[: len(frequency), None], 0.0, by_eye)
@@ -185,11 +187,11 @@ def _smallest_line_mm(parts: Parts, resolved: np.ndarray, size: np.ndarray, uppe
     for factor in _factors(parts, f).values():
         product = product * factor
     weight = per_um_from_lp_mm(upper) / 2 * WEIGHTS[:, None]  # 1/um
-    by_camera = smallest_line_um(
+    by_cores = smallest_line_um(  # an eye has no camera's noise, but the cores' unevenness masks for it too
         contrast=parts.contrast,
-        snr=np.nan_to_num(parts.snr),
+        snr=np.where(parts.eye, parts.light_snr, np.nan_to_num(parts.snr)),
         cell_um2=parts.cell_um2,
-        threshold_snr=parts.threshold_snr,
+        threshold_snr=np.where(parts.eye, ROSE_SNR, parts.threshold_snr),
         line_um=LINE_PITCHES * parts.pitch_um,
         power_per_um=2 * (product**2 * weight).sum(axis=0),
     )
@@ -198,6 +200,6 @@ def _smallest_line_mm(parts: Parts, resolved: np.ndarray, size: np.ndarray, uppe
     by_eye = line_seen_um(
         contrast=parts.contrast, response_per_um=2 * (product * sensitivity / np.sqrt(2) * weight).sum(axis=0)
     )
-    width = np.where(parts.eye, by_eye, by_camera)
+    width = np.where(parts.eye, np.hypot(by_eye, by_cores), by_cores)
     gap = 0.5 / np.maximum(resolved, 1e-300)
     return np.where(resolved > 0, np.minimum(mm_from_um(width), gap) / size, np.nan)

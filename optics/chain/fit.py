@@ -81,11 +81,13 @@ def _section(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarr
     given = columns["body.section.outer_diameter_mm"]
     lumen = np.where(np.isnan(given), needed, given - 2 * wall)
     solved = _placed(columns, ports, layout.centers_mm, light.shape[1])
+    laid_mm = np.hypot(*np.moveaxis(layout.centers_mm[:, 1] - layout.centers_mm[:, 0], -1, 0))
     value = {
         "needed_lumen_mm": needed,
         "lumen_mm": lumen,
         "outer_diameter_mm": outer_diameter_mm(lumen_mm=np.maximum(lumen, 1e-9), wall_mm=wall),
         "free_area_mm2": np.pi / 4 * (lumen**2 - (parts**2).sum(axis=1)),
+        "laid_port_offset_mm": np.where(light[:, 0] > 0, laid_mm, np.nan),
         "fits": (needed <= lumen * (1 + 1e-9)).astype(float),
     }
     return value, solved

@@ -47,11 +47,15 @@ def field_of_view(columns: Columns) -> dict[str, np.ndarray]:
         half_angle_deg=half, distance_mm=columns.get("scene.target.distance_mm", 1.0), pupil_depth_mm=depth, index=index
     )
     inside = 2 * deg_from_rad(np.arcsin(np.sin(np.deg2rad(half)) / index))
+    away = apparent_distance_mm(
+        distance_mm=columns.get("scene.target.distance_mm", 1.0), pupil_depth_mm=depth, index=index
+    )
     absent = np.where(image, 0.0, np.nan)
     return {
         "image_mm": size,
         "focus_from_pupil_mm": focus + absent,
         "image_distance_mm": behind + absent,
+        "image_over_target_ratio": behind / away + absent,
         "field_of_view_deg": inside + absent,
         "field_radius_mm": radius + absent,
     }

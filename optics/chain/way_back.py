@@ -20,6 +20,7 @@ from optics.image.objective import (
     defocus_blur_um,
     depth_of_field_mm,
     face_irradiance_factor,
+    magnification,
     working_f_number,
 )
 from optics.media.face import face_transmission
@@ -27,7 +28,7 @@ from optics.media.loss import attenuation_transmission
 from optics.spectrum import GRID_NM, effective_wavelengths, integral, luminous_flux_lm, photons_per_j, photopic_weight
 from optics.units import Flags, m2_from_mm2, mm2_from_um2, mm_from_um
 from optics.viewer.camera import cell_signal_to_noise, exposure_s, relay_fraction
-from optics.viewer.eye import apparent_field_deg, pupil_diameter_mm, seen_luminance_cd_m2
+from optics.viewer.eye import apparent_field_deg, peak_cpd, pupil_diameter_mm, seen_luminance_cd_m2
 
 COLORS = 6  # wavelengths that stand for the viewer's spectrum (Gauss quadrature)
 WORST_DEG = 30.0  # grating vector across the rows of cores: the lattice's worst direction
@@ -61,9 +62,10 @@ class Parts:
     eyepiece_focal_mm: np.ndarray
     seen_cd_m2: np.ndarray
     seen_deg: np.ndarray
+    peak_cpd: np.ndarray  # where the eye is most sensitive
 
 
-def way_back(columns, target_w_m2_nm, seen, size):
+def way_back(columns, target_w_m2_nm, seen):
     """Light, noise and blur of the way back: the parts of the contrast, and the numbers to report."""
     bundle, eye = columns.has("image.bundle.pitch_um"), columns.has("viewer.eye.eyepiece_focal_mm")
     index, depth = medium_index(columns), pupil_depth_mm(columns)
@@ -71,7 +73,7 @@ def way_back(columns, target_w_m2_nm, seen, size):
     f_number = working_f_number(
         focal_mm=focal,
         f_number=stop,
-        magnification=size,
+        magnification=magnification(focal_mm=focal, focus_mm=seen["focus_from_pupil_mm"]),
         exit_pupil_mm=columns.get("image.objective.exit_pupil_mm", np.inf),
     )
     tau = columns.get("image.objective.transmission", 1.0) * columns.get("image.tip.transmission", 1.0)
@@ -131,10 +133,11 @@ def way_back(columns, target_w_m2_nm, seen, size):
         columns.get("viewer.eye.eyepiece_focal_mm", 25.0),
         seen_cd_m2,
         seen_deg,
+        peak_cpd(luminance_cd_m2=seen_cd_m2, field_deg=seen_deg),
     )
     value = {
-        "pitch_at_target_mm": mm_from_um(pitch) / size,
-        "lattice_limit_lp_mm": limit * size,
+        "pitch_at_target_mm": mm_from_um(pitch) / seen["image_over_target_ratio"],
+        "lattice_limit_lp_mm": limit * seen["image_over_target_ratio"],
         "snr": np.where(eye, np.nan, numbers["snr"]),
         "exposure_s": np.where(eye, np.nan, numbers["exposure_s"]),
         "near_mm": np.maximum((depth_of.near_mm - depth) * index, 0.0),

@@ -37,7 +37,9 @@ def run(options: argparse.Namespace) -> int:
         return _run_rays(options)
     for name, given in (("--rays", options.rays), ("--seed", options.seed), ("--set", options.settings)):
         if given:
-            raise OutOfRange(f"{name} is given without a design; name the design to trace, as in `check gearbox_tooth`.")
+            raise OutOfRange(
+                f"{name} is given without a design; name the design to trace, as in `check gearbox_tooth`."
+            )
     checked = [check(row) for row in rows()]
     wrong = [item for item in checked if not item.met and not item.row.differs]
     if options.json:
@@ -52,8 +54,8 @@ def run(options: argparse.Namespace) -> int:
     said = ", ".join(f"{count} {basis}" for basis, count in bases.most_common())
     print(
         paragraph(
-            f"{len(checked)} rows from {len({item.row.source for item in checked})} sources ({said}): {published} published or derived by an "
-            f"independent route, {bases['remembered']} from memory. {len(wrong)} disagree.",
+            f"{len(checked)} rows from {len({item.row.source for item in checked})} sources ({said}): {published} "
+            f"published or derived by an independent route, {bases['remembered']} from memory. {len(wrong)} disagree.",
             lead="",
         )
     )
@@ -63,9 +65,10 @@ def run(options: argparse.Namespace) -> int:
 def _run_rays(options: argparse.Namespace) -> int:
     """The design traced ray by ray, each number beside that of `size`; status 1 and a sentence where they disagree."""
     from optics.commands.check_rays import against_rays
+    from optics.study.rays_count import FEWEST, MOST
 
-    rays = _whole("--rays", options.rays, RAYS)
-    seed = _whole("--seed", options.seed, SEED)
+    rays = _whole("--rays", options.rays, RAYS, FEWEST, MOST)
+    seed = _whole("--seed", options.seed, SEED, 0, 2**63 - 1)
     found = against_rays(opened(options).fiberscope, rays=rays, seed=seed)
     print(as_json(found.as_dict()) if options.json else found.written())
     if found.wrong:
@@ -73,13 +76,15 @@ def _run_rays(options: argparse.Namespace) -> int:
     return 1 if found.wrong else 0
 
 
-def _whole(name: str, text: str | None, otherwise: int) -> int:
-    if text is None:
-        return otherwise
+def _whole(name: str, text: str | None, otherwise: int, low: int, high: int) -> int:
+    """A whole number of the command line, or a sentence that says what is allowed."""
     try:
-        return int(text)
+        value = otherwise if text is None else int(text)
     except ValueError:
-        raise OutOfRange(f"{name} is {text!r}; it must be a whole number.") from None
+        value = low - 1
+    if not low <= value <= high:
+        raise OutOfRange(f"{name} is {text}; it must be a whole number from {low} to {high}.")
+    return value
 
 
 def _line(item: Checked) -> tuple[str, ...]:

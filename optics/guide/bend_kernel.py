@@ -108,7 +108,10 @@ class Kernel:
     vectors: dict[str, AnyUnit]
 
 
-PAIRS = {"only": (1, 1), "all": (MOMENTS, MOMENTS)}  # moments in and out: of a bend alone, of one of several
+# Moments of the skewness (in, out) that the table holds; out to in goes as the way back. By place in a row of bends.
+_ALL = [(into, out) for into in range(MOMENTS) for out in range(into, MOMENTS)]
+PAIRS = {"alone": _ALL[:1], "end": _ALL[:MOMENTS], "between": _ALL}
+POWERS = DEGREES + 2
 NODES = (len(BEND_NODES), len(ANGLE_NODES), len(SHARE_NODES))
 WEAK_POWER = 1.4  # of the loss against Xe below the weakest node
 VECTOR_SCALE = 4.0  # the largest entry of a singular vector that the table can hold
@@ -127,26 +130,22 @@ def kernel() -> Kernel:
 
 def unpacked(flat: np.ndarray) -> Kernel:
     """The kernel from the flat array of `packed_parts`."""
-    count, fine, coarse = int(np.prod(NODES)), level_count(FINE), level_count(COARSE)
-    shape = (coarse, MOMENTS, MOMENTS, DEGREES)
+    count, fine = int(np.prod(NODES)), level_count(FINE)
+    shape = (level_count(COARSE), len(_ALL), DEGREES)
     rank = (flat.size - 2 * count * fine - int(np.prod(shape))) // (count + int(np.prod(shape)))
     survival, guided, scores, vectors = np.split(flat, np.cumsum([count * fine, count * fine, count * rank]))
     vectors = VECTOR_SCALE * vectors.reshape(rank + 1, *shape)
-    vectors[:, :, 0, 0, 0] = np.arange(rank + 1)[:, None] == rank  # the density of what is left adds up to 1
+    vectors[:, :, 0, 0] = np.arange(rank + 1)[:, None] == rank  # the density of what is left adds up to 1
     powers = vectors @ _step_powers()
-    by_kind = {}
-    for kind, (into, out) in PAIRS.items():
-        part = powers[:, :, :into, :out, :]
-        by_kind[kind] = np.ascontiguousarray(part.reshape(rank + 1, coarse, -1, powers.shape[-1]))
+    by_kind = {kind: np.ascontiguousarray(powers[:, :, : len(pairs)]) for kind, pairs in PAIRS.items()}
     scores = np.concatenate([scores.reshape(count, rank), np.ones((count, 1))], axis=1)
     return Kernel(survival.reshape(count, fine), guided.reshape(count, fine), scores, by_kind)
 
 
 def step_moments(scores: AnyUnit) -> np.ndarray:
-    """[design, level, moment in, moment out, degree]: the Legendre moments of the step that these scores stand for."""
-    powers = np.linalg.pinv(_step_powers())
-    flat = scores @ kernel().vectors["all"].reshape(scores.shape[-1], -1)
-    return flat.reshape(len(scores), level_count(COARSE), MOMENTS, MOMENTS, -1) @ powers
+    """[design, level, pair, degree]: the Legendre moments of the step that these scores stand for."""
+    vectors = kernel().vectors["between"] @ np.linalg.pinv(_step_powers())
+    return np.tensordot(scores, vectors, axes=1)
 
 
 def _step_powers() -> np.ndarray:
@@ -157,7 +156,7 @@ def _step_powers() -> np.ndarray:
     """
     from numpy.polynomial import legendre as series
 
-    out = np.zeros((DEGREES, DEGREES + 2))
+    out = np.zeros((DEGREES, POWERS))
     for k in range(DEGREES):
         density = np.zeros(k + 1)
         density[k] = k + 0.5

@@ -37,25 +37,27 @@ def bend_rows(edges, x, turn, share):
         for some in np.split(rows, np.arange(BLOCK, len(rows), BLOCK)):
             parts = (first[some] + k for k in range(bends))
             ones = ((x[design[at], bend[at]], kept[at], partly[at], scores[at]) for at in parts)
-            out[some] = _row(edges[some], share[some, None], ones, "only" if bends == 1 else "all")
+            out[some] = _row(edges[some], share[some, None], ones, bends)
     return out
 
 
-def _row(edges, share, ones, kind):
-    """The matrix of one row of bends for a block of designs: the light's state [design, bin in, moment, bin]."""
+def _row(edges, share, ones, count):
+    """The matrix of one row of bends for a block of designs; the light's state is [design, bin in, moment, bin]."""
     state = scaled = landings = before = None
     points = edges[:, :-1, None] + np.diff(edges)[:, :, None] * _GAUSS
     room = np.diff(edges) * (1 - table.rank_share(1 - 1 / np.maximum(points, 1.0))).mean(axis=2)
-    for x, kept, acts, scores in ones:
+    for k, (x, kept, acts, scores) in enumerate(ones):
         if before is None or not np.array_equal(x, before):  # the same bend again lands the same way
             scaled = table.zeta(edges, x[:, None], share) / table.span(x[:, None], share)
-            landings, before = _landings(scaled, table.kernel().vectors[kind].shape[-1]), x
+            landings, before = _landings(scaled, table.POWERS), x
+        kind = "alone" if count == 1 else "between" if 0 < k < count - 1 else "end"
         into, total = _into(points, x[:, None, None], share[:, :, None], kept, scores, kind)
-        one = (into @ landings) / np.diff(scaled)[:, :, None, None]
-        one = _reciprocal(one.reshape(*one.shape[:2], *table.PAIRS[kind], one.shape[-1]), total, room)
-        one = _partly(one, total, acts)
-        after = one[:, :, 0] if state is None else _followed(state, one)
-        state = after if state is None else _not_above(after, state)
+        flow = (into @ landings) * (room / np.diff(scaled))[:, :, None, None]
+        flow = _reciprocal(np.moveaxis(flow, 2, 1), total * room)
+        flow = _partly(flow, total * room, acts, kind) / room[:, None, :, None]
+        state = (
+            _begun(flow) if k == 0 else _ended(state, flow, room) if k == count - 1 else _followed(state, flow, room)
+        )
     return _not_below_zero(state[:, :, 0])
 
 
@@ -93,51 +95,69 @@ def _landings(scaled, powers):
     return out
 
 
-def _reciprocal(one, total, room):
-    """One bend [design, bin in, moment in, moment out, bin out] made the same backward, each row's sum kept.
+def _reciprocal(flow, wanted):
+    """Phase space [design, pair, bin in, bin out] that flows, made the same backward; rows of light sum to `wanted`.
 
-    room: what the guided rays of each bin take of phase space; moments weigh 1/(2 k + 1) going out. The
-    outermost bin also holds all light beyond it and is left as it is.
+    The plain flow (the first pair) is mended and decides the scales, the moments go with it. The outermost
+    bin also holds all light beyond it: what goes there is left as it is.
     """
-    weigh = 1.0 / (2 * np.arange(one.shape[3]) + 1)
-    flow = one * room[:, :, None, None, None] * weigh[:, None]
-    inner = flow[:, :-1, :, :, :-1]
-    flow[:, :-1, :, :, :-1] = (inner + inner.transpose(0, 4, 3, 2, 1)) / 2
-    flow[:, :, 0, 0] = np.maximum(flow[:, :, 0, 0], 0.0)
-    plain, wanted = flow[:, :, 0, 0].copy(), total * room
-    scale = np.ones_like(room)
+    plain = flow[:, 0]
+    inner = plain[:, :-1, :-1]
+    plain[:, :-1, :-1] = (inner + inner.swapaxes(1, 2)) / 2
+    np.maximum(plain, 0.0, out=plain)
+    within, square = wanted[:, :-1] - plain[:, :-1, -1], plain[:, :-1, :-1]
+    scale = np.ones_like(wanted)
     for _ in range(SCALINGS):
-        inside = plain[:, :-1, :-1].sum(axis=2)
-        part = np.sqrt(_ratio(np.maximum(wanted[:, :-1] - plain[:, :-1, -1], 0.0), inside))
-        plain[:, :-1, :-1] *= part[:, :, None] * part[:, None, :]
-        scale[:, :-1] *= part
-    rows = _ratio(wanted, plain.sum(axis=2))
-    flow[:, :, :, :, :-1] *= scale[:, None, None, None, :-1]
-    flow[:, :, :, :, :-1] *= scale[:, :, None, None, None]
-    return flow * (rows / room)[:, :, None, None, None] / weigh[:, None]
+        held = scale[:, :-1]
+        sums = held * (square @ held[:, :, None])[:, :, 0]
+        scale[:, :-1] *= np.sqrt(_ratio(np.maximum(within, 0.0), sums))
+    flow *= (scale[:, :, None] * scale[:, None, :])[:, None]
+    return flow * _ratio(wanted, flow[:, 0].sum(axis=2))[:, None, :, None]
 
 
 def _ratio(over, under):
     return np.where(under > 0, over / np.where(under > 0, under, 1.0), 1.0)
 
 
-def _partly(one, total, acts):
+def _partly(flow, total, acts, kind):
     """Blended with no bend at all where the bend is shorter than the table's first angle."""
-    short = np.flatnonzero(acts < 1)
-    if short.size:
-        bins, into, out = one.shape[1:4]
-        stays = np.zeros((bins, into, out, bins))
-        stays[np.arange(bins), :, :, np.arange(bins)] = np.eye(into, out)
-        part = acts[short, None, None, None, None]
-        one[short] = part * one[short] + (1 - part) * total[short, :, None, None, None] * stays
-    return one
+    for short in np.flatnonzero(acts < 1):
+        flow[short] *= acts[short]
+        for pair, (into, out) in enumerate(table.PAIRS[kind]):
+            if into == out:
+                flow[short, pair] += np.diag((1 - acts[short]) * total[short] / (2 * out + 1))
+    return flow
 
 
-def _followed(state, one):
-    """State [design, bin in, moment, bin] carried through the next bend."""
-    designs, bins, into, out, _ = one.shape
-    through = np.ascontiguousarray(one.transpose(0, 2, 1, 3, 4)).reshape(designs, into * bins, out * bins)
-    return (state.reshape(designs, bins, into * bins) @ through).reshape(designs, bins, out, bins)
+def _begun(flow):
+    """Light without memory: [design, bin in, moment, bin out]."""
+    return np.moveaxis(flow * (2 * np.arange(flow.shape[1]) + 1)[:, None, None], 1, 2)
+
+
+def _ended(state, flow, room):
+    """The light after the last bend, its skewness no longer asked for: moment b comes in as it went out backward."""
+    back = (flow * room[:, None, :, None]).swapaxes(2, 3) / room[:, None, :, None]
+    back[:, 0] = flow[:, 0]
+    return _not_above(_through(state, back)[:, :, None], state)
+
+
+def _followed(state, flow, room):
+    """State carried through a bend between others: all pairs of moments, those of b to a by the way back from a to b."""
+    designs, _, bins, _ = flow.shape
+    through = np.empty((designs, table.MOMENTS, bins, table.MOMENTS, bins))
+    back = (flow * room[:, None, :, None]).swapaxes(2, 3) / room[:, None, :, None]
+    for pair, (into, out) in enumerate(table.PAIRS["between"]):
+        through[:, into, :, out] = (2 * out + 1) * flow[:, pair]
+        if into != out:
+            through[:, out, :, into] = (2 * into + 1) * back[:, pair]
+    after = _through(state, through.reshape(designs, table.MOMENTS, bins, -1))
+    return _not_above(after.reshape(designs, bins, table.MOMENTS, bins), state)
+
+
+def _through(state, bend):
+    """State [design, bin in, moment, bin] times a bend [design, moment, bin, ...]."""
+    designs, bins = state.shape[:2]
+    return state.reshape(designs, bins, -1) @ bend.reshape(designs, state.shape[2] * bins, -1)
 
 
 def _not_above(after, before):

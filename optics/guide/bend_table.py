@@ -64,7 +64,7 @@ class LevelFit:
 
 
 def node(*, bend: float, share: float, rays: int, seed: int, angles: np.ndarray = kernel.ANGLE_NODES):
-    """(survival, guided share, spread) at every angle node: [angle, level], [angle, level], [angle, level, a, b, degree]."""
+    """(survival, guided share, spread) at every angle node: [angle, level], [angle, level], [angle, level, pair, degree]."""
     x, limit = bend / (1 - share), np.sqrt(share)
     s, now = level_rays(bend=bend, share=share, rays=rays, seed=seed)
     fine, coarse = (
@@ -72,6 +72,7 @@ def node(*, bend: float, share: float, rays: int, seed: int, angles: np.ndarray 
     )
     start, reach = kernel.zeta(s, x, share), kernel.span(x, share)
     before = _skew_moments(s, now, share)
+    into, out = np.array(kernel.PAIRS["between"]).T
     alive, turned, rows = np.arange(rays), 0.0, []
     for angle in angles:
         if angle > last_angle(bend):
@@ -86,17 +87,16 @@ def node(*, bend: float, share: float, rays: int, seed: int, angles: np.ndarray 
         left, end = alive[keeps], now.kept(keeps)
         level = end.sine() ** 2 / share
         step = kernel.legendre(np.clip((kernel.zeta(level, x, share) - start[left]) / reach, -1, 1), kernel.DEGREES)
-        after = _skew_moments(level, end, share) * (2 * np.arange(kernel.MOMENTS) + 1)
-        products = before[left][:, :, None, None] * after[:, None, :, None] * step[:, None, None, :]
+        after = _skew_moments(level, end, share)
+        products = before[left][:, into] * after[:, out]
+        products = products[:, :, None] * step[:, None, :]
         survive, guided = (np.clip(fine(one, np.ones(len(one))), 0.0, 1.0) for one in (alive, left))
         total = np.maximum(coarse(left, np.ones(len(left))), 0.01)
         spread = coarse(left, products.reshape(len(left), -1)) / total[:, None]
         rows.append((survive, np.clip(guided / np.maximum(survive, 1e-6), 0.0, 1.0), spread))
     survive, guided, spread = (np.stack(part) for part in zip(*rows))
-    spread = spread.reshape(*spread.shape[:2], kernel.MOMENTS, kernel.MOMENTS, kernel.DEGREES)
-    bound = (2 * np.arange(kernel.MOMENTS) + 1.0)[:, None]
-    spread = np.clip(spread, -bound, bound)
-    spread[:, :, 0, 0, 0] = 1.0
+    spread = np.clip(spread.reshape(*spread.shape[:2], len(into), kernel.DEGREES), -1.0, 1.0)
+    spread[:, :, 0, 0] = 1.0
     return tuple(
         _below_filled(part, x, share, axis)
         for part, axis in zip((survive, guided, spread), (kernel.FINE, kernel.FINE, kernel.COARSE))

@@ -10,7 +10,7 @@ from typing import Literal
 import numpy as np
 
 from optics.spec import Curve, Spec, not_negative, positive, quantity, require
-from optics.units import Numbers, deg_from_rad, m_from_um, rad_from_deg, um_from_nm
+from optics.units import Numbers, deg_from_rad, m_from_um, um_from_nm
 
 # Rules across fields, relative to the table: (field, other, comparison, what to say).
 RULES = (
@@ -158,34 +158,6 @@ def mode_count(*, v_number: Numbers) -> Numbers:
     """
     positive(v_number=v_number)
     return np.where(np.asarray(v_number) < 2.405, 2.0, np.asarray(v_number, float) ** 2 / 2)
-
-
-def tapered_na(*, na: Numbers, wide_um: Numbers, narrow_um: Numbers) -> Numbers:
-    """NA that the wide end of a slow taper takes so that its narrow end still guides it: NA d_narrow/d_wide.
-
-    Etendue is kept: NA1 d1 = NA2 d2. Holds while the taper is long against its diameter.
-
-    >>> round(tapered_na(na=0.22, wide_um=300.0, narrow_um=100.0), 4)
-    0.0733
-    """
-    positive(na=na, wide_um=wide_um, narrow_um=narrow_um)
-    require("narrow_um", narrow_um, "at most the wide end", np.asarray(narrow_um) <= wide_um)
-    return na * narrow_um / wide_um
-
-
-def tilted_end_deg(*, core_index: Numbers, tilt_deg: Numbers) -> np.ndarray:
-    """How far a face polished at a tilt turns the axis of the cone, in air: asin(n1 sin d) - d.
-
-    Raises OutOfRange where the axis itself would be reflected totally (n1 sin d above 1).
-
-    >>> round(float(tilted_end_deg(core_index=1.492, tilt_deg=10.0)), 2)
-    5.02
-    """
-    positive(core_index=core_index)
-    tilt = rad_from_deg(np.asarray(tilt_deg, float))
-    sine = core_index * np.sin(tilt)
-    require("tilt_deg", tilt_deg, "small enough for light to leave along the axis (n1 sin below 1)", np.abs(sine) < 1)
-    return deg_from_rad(np.arcsin(sine) - tilt)
 
 
 def _share(na: Numbers, core_index: Numbers) -> np.ndarray:

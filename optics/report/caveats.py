@@ -113,6 +113,13 @@ def _ports(scope: Fiberscope, value: Mapping[str, float]) -> Iterator[Caveat]:
             "scene.ports",
             f"The axis stays dark nearer than {value['first_lit_mm']:.3g} mm; the target is at {target.distance_mm:.3g} mm.",
         )
+    asked, laid = getattr(scope.scene.ports, "offset_mm", None), value["laid_port_offset_mm"]
+    if asked is not None and np.isfinite(laid) and abs(asked - laid) > 0.05 * laid:
+        yield Caveat(
+            "scene.ports.offset_mm",
+            f"The light is reckoned with ports {asked:.3g} mm from the axis, as asked; the section, at its smallest, "
+            f"has them at {laid:.3g} mm.",
+        )
     if np.isfinite(value["unlit_fraction"]) and value["unlit_fraction"] > 0.001:
         yield Caveat(
             "scene.ports",

@@ -14,7 +14,7 @@ from optics.report.picture_front import Front, front_of
 from optics.report.picture_words import picture_words
 from optics.spec import OutOfRange, require
 from optics.units import AnyUnit, mm_from_um, um_from_mm
-from optics.viewer.rendering import Smoothing, View, render, render_chip, smoothed
+from optics.viewer.rendering import View, render, render_chip, smoothed
 from optics.viewer.subjects import require_subject
 
 MOST_CORES, MOST_SAMPLES, LEAST_SAMPLES = 200_000, 2048, 800
@@ -31,7 +31,9 @@ class Picture:
     `subject_reflectance` [row, column] is the subject as a perfect eye in the tip's place would see it, relative to the
     target's own, one sample `sample_mm` wide; `view` [row, column] holds electrons (an eye: cd/m2), one pixel
     `pixel_mm` wide, both at the target on axis. `field_mm`: diameter of the round image there, None for a sensor.
-    `white`: the level to show as white; `tint`: color of the picture, red, green, blue as linear shares.
+    `white`: the level to show as white; `tint`: color of the picture, red, green, blue as linear shares. `wall`: a look
+    along a bore; `one_scale`: neither perspective nor distortion. `residual_contrast`: what smoothing left of the
+    honeycomb, None for a raw picture.
     """
 
     name: str
@@ -44,8 +46,10 @@ class Picture:
     field_mm: float | None
     white: AnyUnit
     tint: tuple[float, float, float]
+    residual_contrast: float | None
     mirrored: bool
     wall: bool
+    one_scale: bool
     exposure_s: float | None
     saturated_share: float
     cores: int
@@ -83,28 +87,29 @@ def view_of(
     if smooth is not None and back.bundle:
         out = smoothed(image=view.image, residual_contrast=smooth, pitch_um=back.pitch_um, pixel_um=pixel_um)
     image = view.image if out is None else out.image
-    subject_seen, image = front.reflectance, image[:, ::-1] if back.mirrored else image
-    field_mm = mm_from_um(image_um) / back.magnification if back.bundle else None
+    image = image[:, ::-1] if back.mirrored else image
     return Picture(
         name=fiberscope.name,
         viewer="chip" if not back.bundle else "eye" if back.eye else "camera",
         subject=subject,
-        subject_reflectance=subject_seen,
+        subject_reflectance=front.reflectance,
         sample_mm=mm_from_um(side_um / samples) / back.magnification,
         view=image,
         pixel_mm=view.pixel_mm,
-        field_mm=field_mm,
+        field_mm=mm_from_um(image_um) / back.magnification if back.bundle else None,
         white=white_level(image=image, field_pixels=image_um / pixel_um if back.bundle else None),
         tint=back.tint,
+        residual_contrast=smooth if out else None,
         mirrored=back.mirrored,
         wall=front.wall,
+        one_scale=front.one_scale,
         exposure_s=None if back.eye else back.exposure_s,
         saturated_share=view.saturated_share,
         cores=view.cores,
         dead=view.dead,
         words=picture_words(
             back=back, view=view, out=out, subject=subject, shown_mm=mm_from_um(image_um), summed=summed, noise=noise,
-            field_mm=field_mm, width_mm=front.width_mm, smooth=smooth,
+            width_mm=front.width_mm, lit=bool((front.light_ratio > 0).any()), smooth=smooth,
         ),
     )  # fmt: skip
 

@@ -28,8 +28,12 @@ RGB = np.array([[3.2406, -1.5372, -0.4986], [-0.9689, 1.8758, 0.0415], [0.0557, 
 
 @dataclass(frozen=True, slots=True)
 class Back:
-    """Numbers of one design. `lit_level`: electrons of a pixel (an eye: cd/m2) wholly inside a core's disc, of the target's
-    own reflectance under `lit_lux`, on axis, in the design's exposure. Absent parts are 0 (no cores) or infinite (a well)."""
+    """Numbers of one design.
+
+    `lit_level`: electrons of a pixel (an eye: cd/m2) wholly inside a core's disc, of the target's own reflectance under
+    `lit_lux` (at the middle; where that is dark, the field's mean), on axis, in the design's exposure. Parts that a
+    design has not are 0 (cores, pixels) or infinite (an eye's well).
+    """
 
     bundle: bool
     eye: bool
@@ -68,6 +72,8 @@ class Back:
     exposure_s: float
     lit_level: AnyUnit
     lit_lux: float
+    middle_lit: bool
+    color_filter: bool
     tint: tuple[float, float, float]
     # the light that falls
     ports: tuple[Port, ...]
@@ -98,7 +104,10 @@ def back_of(fiberscope: Fiberscope) -> Back:
     level = _lit_level(table, parts, sensor, bundle, eye)
     if not eye:
         level *= exposure / float(numbers["exposure_s"][0])
-    number = {name: float(table.get(f"image.bundle.{name}", 0.0)[0]) for name in ("na", "dead_fraction", "transmission_spread")}
+    number = {
+        name: float(table.get(f"image.bundle.{name}", 0.0)[0])
+        for name in ("na", "dead_fraction", "transmission_spread")
+    }
     tip = fiberscope.image.tip
     return Back(
         bundle=bundle,
@@ -129,6 +138,8 @@ def back_of(fiberscope: Fiberscope) -> Back:
         exposure_s=exposure,
         lit_level=level,
         lit_lux=lux,
+        middle_lit=value["center_lux"] > 0,
+        color_filter=not bundle and fiberscope.image.chip.color_filter,
         tint=_tint(fiberscope, falling[0]),
         ports=port_objects({name: found[0] for name, found in placed.items()}),
         lit=lit,
@@ -186,7 +197,9 @@ def _tint(fiberscope: Fiberscope, falling_w_m2_nm: np.ndarray) -> tuple[float, f
     seer = image.chip if image.form == "chip" else None if viewer.form == "eye" else viewer.camera
     if seer is not None and not seer.color_filter or luminous_flux_lm(falling_w_m2_nm) <= 0:
         return (1.0, 1.0, 1.0)
-    white, colored = (_rgb(power) for power in (falling_w_m2_nm, falling_w_m2_nm * on_grid(fiberscope.scene.target.reflectance)))
+    white, colored = (
+        _rgb(power) for power in (falling_w_m2_nm, falling_w_m2_nm * on_grid(fiberscope.scene.target.reflectance))
+    )
     share = np.clip(colored / np.where(white > 0, white, np.inf), 0.0, None)
     return tuple(float(part) for part in share / max(share.max(), 1e-12))
 

@@ -7,7 +7,6 @@ from optics.viewer.rendering import Smoothing, View
 from optics.viewer.subjects import SUBJECTS, bar_frequencies_lp_mm
 
 
-
 def picture_words(
     *,
     back: Back,
@@ -17,17 +16,18 @@ def picture_words(
     shown_mm: float,
     summed: int,
     noise: bool,
-    field_mm: float | None,
     width_mm: float,
+    lit: bool,
     smooth: float | None,
 ) -> tuple[str, ...]:
     """Sentences about one picture, the most important first."""
     return (
         *_what(back, view, subject),
+        *(() if lit else ("No light of the scope's own reaches the field of view.",)),
         *_detail(back, subject, width_mm),
         *_light(back, view, summed, noise),
         *_smoothed(back, out, smooth),
-        *_limits(back, shown_mm, summed),
+        *_limits(back, shown_mm),
     )
 
 
@@ -62,9 +62,15 @@ def _light(back: Back, view: View, summed: int, noise: bool) -> Iterator[str]:
     inside = "a pixel inside a core" if back.bundle else "a pixel"
     well = back.lit_level / back.full_well_e
     drawn = "" if noise else "; noise not drawn"
-    yield f"Exposure {_seconds(back.exposure_s)}: {_count(back.lit_level)} electrons on {inside} in the middle of a plain target, {well:.2g} of its well{drawn}."
+    where = (
+        "in the middle of a plain target"
+        if back.middle_lit
+        else "of a plain target in the field's mean light (its middle is dark)"
+    )
+    yield f"Exposure {_seconds(back.exposure_s)}: {_count(back.lit_level)} electrons on {inside} {where}, {well:.2g} of its well{drawn}."
     if view.saturated_share > 0:
-        yield f"{max(view.saturated_share * 100, 0.01):.2g} % of the image's pixels are saturated: bright parts are cut off there."
+        share = f"{view.saturated_share * 100:.2g} %" if view.saturated_share >= 1e-4 else "Under 0.01 %"
+        yield f"{share} of the image's pixels are saturated: bright parts are cut off there."
     if summed > 1:
         yield f"Each pixel shown is the sum of {summed} x {summed} of the camera's."
 
@@ -81,9 +87,11 @@ def _smoothed(back: Back, out: Smoothing | None, smooth: float | None) -> Iterat
     )
 
 
-def _limits(back: Back, shown_mm: float, summed: int) -> Iterator[str]:
+def _limits(back: Back, shown_mm: float) -> Iterator[str]:
     if back.bundle and shown_mm < 0.999 * back.image_mm:
         yield f"Only the middle {shown_mm:.3g} mm of the bundle's {back.image_mm:.3g} mm is drawn."
+    if back.color_filter:
+        yield "The mosaic of color filters is not drawn."
     yield "Glints, stray light from outside the field and the colors of single details are not drawn."
 
 

@@ -117,7 +117,9 @@ def _distribution(name: str, nominal: float, found: np.ndarray) -> Distribution:
     whole = not missing.any()
     marks = np.quantile(ranked, QUANTILES, method="inverted_cdf")
     low, high = np.quantile(found[~missing], (0.005, 0.995), method="inverted_cdf")
-    counts = np.histogram(found[~missing], bins=16, range=(low, high))[0] if high - low > LEAST_SPREAD * abs(high) else []
+    counts = (
+        np.histogram(found[~missing], bins=16, range=(low, high))[0] if high - low > LEAST_SPREAD * abs(high) else []
+    )
     return Distribution(
         name,
         _finite(nominal),
@@ -199,7 +201,9 @@ def _tighten(nominal, ranges, values, numbers, needs: Needs) -> tuple[Tightened 
 
 def _varies(found: np.ndarray) -> bool:
     present = found[~np.isnan(found)]
-    return bool(present.size > 0 and (present.size < found.size or np.ptp(present) > LEAST_SPREAD * np.abs(present).max()))
+    return bool(
+        present.size > 0 and (present.size < found.size or np.ptp(present) > LEAST_SPREAD * np.abs(present).max())
+    )
 
 
 def _finite(value: float) -> float | None:

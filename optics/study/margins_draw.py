@@ -68,6 +68,8 @@ def tolerances(
         if only or path in given or path in WITHOUT_EFFECT or (said.low is None and said.high is None):
             continue
         curve = path in table.curve
+        if curve and f"{path}.value" in design.sourced:
+            continue  # a curve of the file's own, which the preset's tolerance does not concern
         if not curve and (isinstance(said.value, str | bool) or place(path)[0] not in table.number):
             continue
         value = 1.0 if curve else float(said.value)

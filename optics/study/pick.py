@@ -1,4 +1,4 @@
-"""Which combinations do the job: all sensible candidates through the chain, the best of those that meet the needs, and why others fail.
+"""Which combinations do the job: all sensible candidates through the chain, the best of them, and why others fail.
 
 Candidates are the design as it stands and the product of its axes (`pick_axes`). Of those that meet all needs,
 pass the bore and stand heat and steam, the Pareto set in detail, light, outer diameter, bend radius and cost class
@@ -200,7 +200,9 @@ def _picks(found: Candidates, needs: Needs, figures: Figures, margin, met) -> tu
     if not rows.size:
         return ()
     rows = rows[pareto_rows(objectives(figures, cost, rows))]
-    worst = np.min([np.where(np.isfinite(each), each, 0.0)[rows] for each in margin.values()] or [np.zeros(len(rows))], axis=0)
+    worst = np.min(
+        [np.where(np.isfinite(each), each, 0.0)[rows] for each in margin.values()] or [np.zeros(len(rows))], axis=0
+    )
     order = rows[np.lexsort((rows, -worst.round(FINEST), cost[rows]))]
     return tuple(_pick(found, needs, figures, int(cost[row]), int(row)) for row in order)
 

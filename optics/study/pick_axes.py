@@ -259,4 +259,3 @@ def focal_mm(scope: Fiberscope, *, image_mm: float, field_of_view_deg: float) ->
     half = math.asin(min(index * math.sin(math.radians(field_of_view_deg) / 2), math.sin(math.radians(WIDEST_DEG / 2))))
     behind = image_mm / 2 / (math.tan(half) if lens.mapping == "tan" else half)
     return float(f"{1 / (1 / behind + 1 / focus):.3g}")
-

@@ -24,7 +24,7 @@ from optics.units import AnyUnit, lux_from_lm_mm2
 FEWEST, MOST = 100, 100_000_000
 BATCHES = 32
 AT_ONCE = 200_000  # rays sent out together
-ROUNDING = 1e-12
+ROUNDING, FEW = 1e-12, 2.0
 FLIGHTS = 5  # rays that fly to the target for each one that the lamp sends out
 
 
@@ -70,11 +70,9 @@ class Tally:
         self.heaviest[name] = max(self.heaviest.get(name, 0.0), float(flock.weight.max(initial=0.0)))
 
     def counted(self, light: AnyUnit, heaviest: float) -> Counted:
-        """The sum over all batches; its error from their scatter, or one ray's light where none came."""
+        """The sum over all batches, and its error from their scatter."""
         total = float(light.sum())
-        if total == 0:
-            return Counted(0.0, heaviest)
-        return Counted(total, _error(light - total * self.sent / self.sent.sum(), total))
+        return Counted(total, _error(light - total * self.sent / self.sent.sum(), total, heaviest))
 
     def factor(self, before: AnyUnit, after: AnyUnit, heaviest: float) -> Counted:
         """The ratio of two steps, which noise that both share leaves alone."""
@@ -82,13 +80,17 @@ class Tally:
         if came == 0:
             return Counted(0.0, 1.0)
         share = float(after.sum()) / came
-        return Counted(share, (_error(after - share * before, came) if share > 0 else heaviest) / came)
+        return Counted(share, _error(after - share * before, float(after.sum()), heaviest) / came)
 
 
-def _error(scatter: AnyUnit, total: float) -> float:
-    """Standard error of a sum from what each batch has too much or too little; mere rounding counts as none."""
+def _error(scatter: AnyUnit, total: float, heaviest: float) -> float:
+    """Standard error of a sum from what each batch has too much or too little; mere rounding counts as none.
+
+    Where few rays are left their scatter says little, so that a few of the heaviest are added in quadrature.
+    """
     found = float(np.sqrt(np.sum(scatter**2) * BATCHES / (BATCHES - 1)))
-    return found if found > ROUNDING * total else 0.0
+    exact = total > 0 and found <= ROUNDING * total
+    return 0.0 if exact else float(np.hypot(found, FEW * heaviest))
 
 
 def trace_rays(
@@ -155,7 +157,6 @@ def _on_target(fiberscope: Fiberscope, place: Place, flock: Flock, tally: Tally,
     """Flights of all rays, counted in the part of the field that each lands in."""
     scene = fiberscope.scene
     row, part = landing(flock, place, scene.target, scene.cover, _medium_index(fiberscope), random)
-    tally.note("flown", flock)
     for each in range(PARTS):
         tally.note(f"part {each}", flock.rows(row[part == each]))
 
@@ -168,7 +169,7 @@ def _medium_index(fiberscope: Fiberscope) -> float:
 def _told(fiberscope: Fiberscope, place: Place | None, tally: Tally) -> RayTrace:
     """The tally as numbers."""
     steps, before, heaviest = [], tally.light["lamp"], tally.heaviest["lamp"]
-    names = [name for name in tally.light if not name.startswith("part ") and name != "flown"]
+    names = [name for name in tally.light if not name.startswith("part ")]
     for name in names:
         after = tally.light[name]
         steps.append(RayStep(name, tally.counted(after, heaviest), tally.factor(before, after, heaviest)))
@@ -177,7 +178,7 @@ def _told(fiberscope: Fiberscope, place: Place | None, tally: Tally) -> RayTrace
         return RayTrace(tuple(steps), (), None)
     areas = part_areas_mm2(place, fiberscope.scene.target)
     light = [tally.light[f"part {each}"] for each in range(PARTS)]
-    one = tally.heaviest["flown"]
+    one = tally.heaviest[names[-1]] or heaviest  # a ray at the last face; the copies of it that fly are not independent
     parts = tuple(_lux(tally.counted(part, one), area) for part, area in zip(light, areas))
     return RayTrace(tuple(steps), parts, _lux(tally.counted(np.sum(light, axis=0), one), areas.sum()))
 

@@ -10,7 +10,7 @@ from optics.study.rays import Flock, Note, evenly, on_disc, passed, redrawn, val
 from optics.units import mm_from_m, mm_from_um, rad_from_deg, transmission_from_db
 
 # Bends cost time by the hits on the wall: so many for each ray sent out by the lamp are afforded, and at least so many rays.
-HITS_A_RAY, LEAST_BENT = 100.0, 4000
+HITS_A_RAY, LEAST_BENT = 100.0, 2000
 MOST_COPIES = 8  # of a ray before a joint that few get through
 
 
@@ -42,7 +42,9 @@ def onto_face(source: Source, flock: Flock, *, face_mm: float, face_na: float, n
 def _in_spot(flock: Flock, lamp: Lamp, launch: Spot) -> Flock:
     """A condenser puts each ray to its like in a spot of stated size, profile and cone."""
     away = np.hypot(flock.x_mm, flock.y_mm)
-    inside = np.minimum((away / (lamp.emitter_mm / 2)) ** 2, 1 - 1e-16)  # share of the emitter's area nearer to the axis
+    inside = np.minimum(
+        (away / (lamp.emitter_mm / 2)) ** 2, 1 - 1e-16
+    )  # share of the emitter's area nearer to the axis
     if launch.profile == "gaussian":  # exp(-2 r^2/w^2) beyond r
         there = launch.spot_mm / 2 * np.sqrt(-np.log1p(-inside) / 2)
     else:
@@ -110,7 +112,15 @@ def tapered(flock: Flock, from_mm: float, to_mm: float) -> Flock:
 
 
 def through_joint(
-    flock: Flock, joint: Joint, from_mm: float, to_mm: float, to_na: float, from_fiber: Fiber, fiber: Fiber, note: Note, random
+    flock: Flock,
+    joint: Joint,
+    from_mm: float,
+    to_mm: float,
+    to_na: float,
+    from_fiber: Fiber,
+    fiber: Fiber,
+    note: Note,
+    random,
 ) -> Flock:
     """Out of the cable's face, across the gap, into the guide's face and the cone that it takes.
 

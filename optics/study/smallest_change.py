@@ -128,7 +128,11 @@ def smallest_changes(
         rest = ~np.isin(lanes.row, lanes.row[passes]) & (ratio == rung)
         lanes = lanes.take(rest)
         lanes.bad = lanes.good
-    near = _Lanes(*(np.concatenate([getattr(each, name) for each in found]) for name in _Lanes.__slots__)) if found else lanes
+    near = (
+        _Lanes(*(np.concatenate([getattr(each, name) for each in found]) for name in _Lanes.__slots__))
+        if found
+        else lanes
+    )
     if not len(near.row):
         return {}
     return _best(needs, few, _closed_in(needs, few, near), rows)
@@ -209,7 +213,8 @@ def _best(needs: Needs, few: Columns, lanes: _Lanes, rows: np.ndarray) -> dict[i
     """Of each design the smallest change that holds: it passes, and with a little less it does not."""
     away = np.where(lanes.good > lanes.start, 1.0, -1.0)
     after = np.array([_rounded(good, side) for good, side in zip(lanes.good, away)])
-    after = np.where(away > 0, np.minimum(after, np.fmax(lanes.end, lanes.good)), np.maximum(after, np.fmin(lanes.end, lanes.good)))
+    beyond = (after - lanes.end) * away > 0  # rounding led past the bound
+    after = np.where(beyond, lanes.good, after)
     holds = _pass(needs, few, lanes, after) & ~_pass(needs, few, lanes, lanes.start + LESS * (after - lanes.start))
     ratio = np.abs(np.log(after / lanes.start))
     best: dict[int, Change] = {}

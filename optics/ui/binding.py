@@ -8,7 +8,7 @@ from pydantic.fields import FieldInfo
 
 from optics.presets import value_at
 from optics.ui import edits, sketch
-from optics.ui.names import spoken
+from optics.ui.names import preset_name, spoken
 from optics.ui.origin import Origin, origin
 from optics.ui.shape import is_optional
 from optics.ui.words import plain, sentence_case, with_unit
@@ -45,7 +45,7 @@ def way_back(path: str, found: Origin | None = None) -> None:
         if old is None and found is not None and found.behind is not None:
             old = found.behind.value
         st.button(
-            f"Set back to {with_unit(old, name)}",
+            _back_label(path, old),
             key=f"{path}:back",
             type="tertiary",
             icon=":material/undo:",
@@ -61,6 +61,15 @@ def way_back(path: str, found: Origin | None = None) -> None:
             on_click=sketch.edit,
             args=(edits.set_back, {}, path),
         )
+
+
+def _back_label(path: str, old: Any) -> str:
+    """What the way back leads to, where that is one value."""
+    if isinstance(old, list | dict):
+        return "Set back"
+    name = path.rpartition(".")[2]
+    said = preset_name(str(old)) if name == "preset" else with_unit(old, name)
+    return f"Set back to {'not set' if old is None else said}"
 
 
 def complaint(path: str) -> None:

@@ -54,7 +54,7 @@ def _step(usual: tuple[float, float] | None, value: float | None) -> float:
     if usual is None:
         return step(10 * abs(value or 1.0))
     low, high = usual
-    return step(5 * (value or low) if low > 0 and high / low > WIDE_SPAN else high - low)
+    return step(5 * max(value or low, low) if low > 0 and high / low > WIDE_SPAN else high - low)
 
 
 def _number(path: str, field: FieldInfo, found: Origin, slider: bool) -> None:
@@ -81,7 +81,7 @@ def _slider(path: str, field: FieldInfo, found: Origin, text: str, usual: tuple[
             stops,
             key=key,
             help=asked,
-            format_func=lambda stop: f"{stop:g}",
+            format_func=lambda stop: f"{stop:.10g}",
             on_change=commit,
             args=(path, key, field),
         )

@@ -2,6 +2,7 @@
 
 import re
 
+from optics.needs import AT_MOST
 from optics.report.verdict import NAMES as NEED_NAMES
 from optics.ui.words import unit
 from optics.units import unit_of
@@ -130,8 +131,15 @@ def field_name(name: str, path: str = "") -> str:
 
 
 def label(name: str, path: str = "") -> str:
-    """A field in plain words with its unit: 'length, m'."""
-    return f"{field_name(name, path)}, {unit(name)}" if unit(name) else field_name(name, path)
+    """A field in plain words with its unit, a need also with its sense.
+
+    >>> label("length_m"), label("evenness", "needs.evenness"), label("outer_diameter_mm", "needs.outer_diameter_mm")
+    ('length, m', 'evenness at least', 'outer diameter at most, mm')
+    """
+    said = field_name(name, path)
+    if path.startswith("needs."):
+        said += " at most" if name in AT_MOST else " at least"
+    return f"{said}, {unit(name)}" if unit(name) else said
 
 
 def preset_name(name: str) -> str:

@@ -15,7 +15,11 @@ from optics.spec import not_negative, positive, require, within
 from optics.units import AnyUnit, Flags, rad_from_deg
 
 TAPS = 4  # samples along each axis that a cubic spline takes
-PLACES, LEAST_PLACES, STAMP_PIXELS = 32, 4, 96  # positions of a disc within a pixel: so many for small discs, fewer for large
+PLACES, LEAST_PLACES, STAMP_PIXELS = (
+    32,
+    4,
+    96,
+)  # positions of a disc within a pixel: so many for small discs, fewer for large
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -162,11 +166,16 @@ def drawing(*, cores: Mosaic, core_um: float, pixel_um: float, rows: int, column
     stamps = disc_stamps(disc_pixels=core_um / pixel_um)
     places, side = stamps.shape[0], stamps.shape[-1]
     margin = side // 2
-    x, y = (at / pixel_um + count / 2 for at, count in ((cores.x_um, columns), (cores.y_um, rows)))  # in pixels from the corner
+    x, y = (
+        at / pixel_um + count / 2 for at, count in ((cores.x_um, columns), (cores.y_um, rows))
+    )  # in pixels from the corner
     on = (x > -margin) & (x < columns + margin) & (y > -margin) & (y < rows + margin)
     column, row = (np.floor(at[on]).astype(int) for at in (x, y))
     across, down = (np.floor((at[on] - first) * places).astype(int) for at, first in ((x, column), (y, row)))
-    frame = (rows + 4 * margin, columns + 4 * margin)  # discs just outside touch the frame: twice the margin on each side
+    frame = (
+        rows + 4 * margin,
+        columns + 4 * margin,
+    )  # discs just outside touch the frame: twice the margin on each side
     step = np.arange(-margin, margin + 1)
     offsets = (step[:, None] * frame[1] + step).ravel()
     first = (row + 2 * margin) * frame[1] + column + 2 * margin
@@ -204,7 +213,9 @@ def disc_corner_area(*, x: AnyUnit, y: AnyUnit, radius: float) -> AnyUnit:
     """
 
     def chords(at):  # integral of s from the middle
-        return 0.5 * (at * np.sqrt(np.maximum(radius**2 - at * at, 0.0)) + radius**2 * np.arcsin(np.clip(at / radius, -1, 1)))
+        return 0.5 * (
+            at * np.sqrt(np.maximum(radius**2 - at * at, 0.0)) + radius**2 * np.arcsin(np.clip(at / radius, -1, 1))
+        )
 
     x, y = np.broadcast_arrays(np.clip(x, -radius, radius), np.clip(y, -radius, radius))
     edge = np.sqrt(np.maximum(radius**2 - y * y, 0.0))

@@ -132,7 +132,9 @@ def render_chip(
     """
     positive(pixel_um=pixel_um, lit_level=lit_level, magnification=magnification)
     face, lens = _lit(reflectance, light_ratio), _table(lens_lp_mm, lens_mtf, sample_um, 0.0)
-    samples = tuple(_grid_taps(count, int(size), pixel_um / sample_um) for count, size in zip(face.shape, (rows, columns)))
+    samples = tuple(
+        _grid_taps(count, int(size), pixel_um / sample_um) for count, size in zip(face.shape, (rows, columns))
+    )
 
     def seen(blurred):
         (row, down), (column, across) = samples
@@ -144,7 +146,13 @@ def render_chip(
     blur = _map_at(defocus_um, face.shape, sample_um, middles[1][None, :], middles[0][:, None])
     picture = _blurred(face, sample_um, lens, blur, pixel_um, seen)
     image, share = _read_out(
-        lit_level * np.maximum(picture, 0.0), full_well_e, dark_noise_e, gain_dn_e, noise, seed, np.ones((rows, columns), bool)
+        lit_level * np.maximum(picture, 0.0),
+        full_well_e,
+        dark_noise_e,
+        gain_dn_e,
+        noise,
+        seed,
+        np.ones((rows, columns), bool),
     )
     return View(image, mm_from_um(pixel_um) / magnification, share, 0, 0)
 
@@ -190,7 +198,9 @@ def _between(coarse: int, fine: int) -> tuple[AnyUnit, AnyUnit]:
 def _table(lens_lp_mm, lens_mtf, sample_um: float, core_um: float) -> AnyUnit:
     """Contrast of lens and core [radius] on even frequencies up to the corner of the samples' band."""
     frequency, contrast = np.asarray(lens_lp_mm, float), np.asarray(lens_mtf, float)
-    require("lens_lp_mm", frequency.min(), "0 at its start and rising", frequency[0] == 0 and (np.diff(frequency) > 0).all())
+    require(
+        "lens_lp_mm", frequency.min(), "0 at its start and rising", frequency[0] == 0 and (np.diff(frequency) > 0).all()
+    )
     radii = _radii_lp_mm(sample_um)
     return np.interp(radii, frequency, contrast) * disc_mtf(diameter_um=core_um, frequency_lp_mm=radii)
 
@@ -203,7 +213,9 @@ def _collected(face, sample_um, lens, defocus_um, cores: Mosaic) -> AnyUnit:
     """What each core collects: the blurred picture averaged over its disc [core]."""
     place, weight = taps(cores=cores, rows=face.shape[0], columns=face.shape[1], sample_um=float(sample_um))
     blur = _map_at(defocus_um, face.shape, sample_um, cores.x_um, cores.y_um)
-    found = _blurred(face, sample_um, lens, blur, 0.0, lambda picture: np.einsum("ij,ij->i", picture.ravel()[place], weight))
+    found = _blurred(
+        face, sample_um, lens, blur, 0.0, lambda picture: np.einsum("ij,ij->i", picture.ravel()[place], weight)
+    )
     return np.maximum(found, 0.0).astype(float)  # rounding, and the ringing of a lens's band limit beside deep black
 
 
@@ -277,7 +289,12 @@ def _read_out(mean, full_well_e, dark_noise_e, gain_dn_e, noise, seed, inside) -
     require("full_well_e", full_well_e, "above 0", full_well_e > 0)
     if noise:
         return read_out(
-            mean_e=mean, full_well_e=full_well_e, dark_noise_e=dark_noise_e, gain_dn_e=gain_dn_e, inside=inside, seed=seed
+            mean_e=mean,
+            full_well_e=full_well_e,
+            dark_noise_e=dark_noise_e,
+            gain_dn_e=gain_dn_e,
+            inside=inside,
+            seed=seed,
         )
     full = mean >= full_well_e
     return np.minimum(mean, full_well_e), float(full[inside].mean())
@@ -329,7 +346,9 @@ def smoothed(*, image: AnyUnit, residual_contrast: float, pitch_um: float, pixel
 
     within(1e-6, 1.0, residual_contrast=residual_contrast)
     frame = np.asarray(image, np.float32)
-    sides = [next_fast_len(count + int(3 * pitch_um / pixel_um), real=True) for count in frame.shape]  # dark room about it
+    sides = [
+        next_fast_len(count + int(3 * pitch_um / pixel_um), real=True) for count in frame.shape
+    ]  # dark room about it
 
     def transfer(count):
         cycles = np.abs(np.fft.fftfreq(count)) / mm_from_um(pixel_um)

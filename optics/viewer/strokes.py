@@ -23,7 +23,9 @@ def middles_mm(*, width_mm: float, pixels: int) -> AnyUnit:
     return (np.arange(pixels) - (pixels - 1) / 2) * (width_mm / pixels)
 
 
-def stroke(*, cover: AnyUnit, width_mm: float, ends_mm: AnyUnit, thick_mm: tuple[float, float], depth: float = 1.0) -> None:
+def stroke(
+    *, cover: AnyUnit, width_mm: float, ends_mm: AnyUnit, thick_mm: tuple[float, float], depth: float = 1.0
+) -> None:
     """Draw one straight stroke with round ends into `cover`, which keeps the larger value.
 
     `ends_mm` [2, xy]; `thick_mm` at its two ends; `depth` is the cover of a stroke wider than a pixel.
@@ -59,8 +61,7 @@ def box(*, cover: AnyUnit, width_mm: float, left_mm: float, low_mm: float, wide_
     step, pixels = width_mm / len(cover), len(cover)
     edges = (np.arange(pixels + 1) - pixels / 2) * step
     x, y = (
-        np.diff(np.clip(edges, start, start + size)) / step
-        for start, size in ((left_mm, wide_mm), (low_mm, high_mm))
+        np.diff(np.clip(edges, start, start + size)) / step for start, size in ((left_mm, wide_mm), (low_mm, high_mm))
     )
     rows, columns = np.flatnonzero(y), np.flatnonzero(x)
     if rows.size and columns.size:

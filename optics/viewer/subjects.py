@@ -79,7 +79,9 @@ def _three_bars(ink: AnyUnit, width_mm: float, bar: float, left: float, low: flo
     """Upright bars, then level ones a bar's width beside them."""
     for place in (0, 2, 4):
         box(cover=ink, width_mm=width_mm, left_mm=left + place * bar, low_mm=low, wide_mm=bar, high_mm=5 * bar)
-        box(cover=ink, width_mm=width_mm, left_mm=left + 6 * bar, low_mm=low + place * bar, wide_mm=5 * bar, high_mm=bar)
+        box(
+            cover=ink, width_mm=width_mm, left_mm=left + 6 * bar, low_mm=low + place * bar, wide_mm=5 * bar, high_mm=bar
+        )
 
 
 def _ruler(ink: AnyUnit, width_mm: float, top: float, letters: float) -> None:
@@ -91,8 +93,22 @@ def _ruler(ink: AnyUnit, width_mm: float, top: float, letters: float) -> None:
     box(cover=ink, width_mm=width_mm, left_mm=left, low_mm=top - line, wide_mm=length, high_mm=line)
     for tick in range(11):
         high = letters * (1.0 if tick % 5 == 0 else 0.6)
-        box(cover=ink, width_mm=width_mm, left_mm=left + tick * length / 10 - line / 2, low_mm=top - line - high, wide_mm=line, high_mm=high)
-    text(cover=ink, width_mm=width_mm, said=said, left_mm=-0.43 * len(said) * letters, low_mm=top - 2.6 * letters, high_mm=letters)
+        box(
+            cover=ink,
+            width_mm=width_mm,
+            left_mm=left + tick * length / 10 - line / 2,
+            low_mm=top - line - high,
+            wide_mm=line,
+            high_mm=high,
+        )
+    text(
+        cover=ink,
+        width_mm=width_mm,
+        said=said,
+        left_mm=-0.43 * len(said) * letters,
+        low_mm=top - 2.6 * letters,
+        high_mm=letters,
+    )
 
 
 @lru_cache(maxsize=4)
@@ -105,8 +121,21 @@ def crack_network(*, width_mm: float, pixels: int, contrast: float, seed: int) -
     for number in range(4):
         angle = turn + number * GOLDEN_RAD
         start = 0.62 * width_mm * np.array([np.cos(angle), np.sin(angle)])
-        _crack(cover, width_mm, rng, start, angle + np.pi + rng.normal(0, 0.35), width_mm / rng.uniform(60, 130), 1.15 * width_mm, 3)
-    scale = 1.0 + 0.07 * mottle(pixels=pixels, slope=1.3, seed=seed + 1) + 0.035 * mottle(pixels=pixels, slope=0.6, seed=seed + 2)
+        _crack(
+            cover,
+            width_mm,
+            rng,
+            start,
+            angle + np.pi + rng.normal(0, 0.35),
+            width_mm / rng.uniform(60, 130),
+            1.15 * width_mm,
+            3,
+        )
+    scale = (
+        1.0
+        + 0.07 * mottle(pixels=pixels, slope=1.3, seed=seed + 1)
+        + 0.035 * mottle(pixels=pixels, slope=0.6, seed=seed + 2)
+    )
     return _frozen(np.clip(scale, 0.4, 1.3) * (1.0 - (1.0 - dark) * cover))
 
 
@@ -114,14 +143,20 @@ def _crack(cover, width_mm, rng, start, angle, thick, length, order) -> None:
     """One crack that wanders and tapers, and its branches."""
     step = width_mm / 110
     count = max(int(length / step), 3)
-    bends = np.cumsum(rng.normal(0, 0.10, count)) + rng.normal(0, 0.32, count)  # it wanders, and it jags from grain to grain
+    bends = np.cumsum(rng.normal(0, 0.10, count)) + rng.normal(
+        0, 0.32, count
+    )  # it wanders, and it jags from grain to grain
     bends -= np.linspace(0, 1, count) * bends[-1] * 0.6
     heading = angle + bends
-    points = start + np.concatenate([np.zeros((1, 2)), np.cumsum(step * np.stack([np.cos(heading), np.sin(heading)], axis=1), axis=0)])
+    points = start + np.concatenate(
+        [np.zeros((1, 2)), np.cumsum(step * np.stack([np.cos(heading), np.sin(heading)], axis=1), axis=0)]
+    )
     along = np.linspace(0, 1, count + 1)
     taper = thick * (1.0 - along) ** 0.6 * np.exp(rng.normal(0, 0.25, count + 1))
     path(cover=cover, width_mm=width_mm, points_mm=points, thick_mm=taper)
-    for place in rng.choice(np.arange(2, count), min(count // 14, 9) if order > 0 else 0, replace=False) if count > 16 else ():
+    for place in (
+        rng.choice(np.arange(2, count), min(count // 14, 9) if order > 0 else 0, replace=False) if count > 16 else ()
+    ):
         side = rng.choice((-1.0, 1.0)) * rng.uniform(0.5, 1.25)
         left = length * (1.0 - along[place]) * rng.uniform(0.25, 0.6)
         _crack(cover, width_mm, rng, points[place], heading[place] + side, 0.7 * taper[place], left, order - 1)
@@ -134,12 +169,19 @@ def gear_edge(*, width_mm: float, pixels: int, contrast: float, seed: int) -> np
     rng = np.random.default_rng(seed)
     at = middles_mm(width_mm=width_mm, pixels=pixels) / width_mm
     turn = 0.22
-    u, v = np.cos(turn) * at[None, :] + np.sin(turn) * at[:, None], -np.sin(turn) * at[None, :] + np.cos(turn) * at[:, None]
+    u, v = (
+        np.cos(turn) * at[None, :] + np.sin(turn) * at[:, None],
+        -np.sin(turn) * at[None, :] + np.cos(turn) * at[:, None],
+    )
     edge = 0.24 - 0.10 * u * u  # the tip edge, slightly crowned
     lines = rng.standard_normal(4 * pixels)
     lines = np.convolve(lines, np.ones(5) / 5, "same") + 0.7 * np.convolve(lines, np.ones(31) / 31**0.5 / 3, "same")
-    ground = 1.0 + 0.035 * np.interp(v + 0.03 * u, np.linspace(-1, 1, len(lines)), lines / lines.std())  # grinding marks along the tooth
-    flank = ground * (0.86 + 0.22 * np.clip(v + 0.5, 0, 1)) * (1.0 + 0.03 * mottle(pixels=pixels, slope=1.2, seed=seed + 1))
+    ground = 1.0 + 0.035 * np.interp(
+        v + 0.03 * u, np.linspace(-1, 1, len(lines)), lines / lines.std()
+    )  # grinding marks along the tooth
+    flank = (
+        ground * (0.86 + 0.22 * np.clip(v + 0.5, 0, 1)) * (1.0 + 0.03 * mottle(pixels=pixels, slope=1.2, seed=seed + 1))
+    )
     soft = 1.0 / pixels
     inside = np.clip((edge - v) / soft + 0.5, 0.0, 1.0)
     chamfer = np.exp(-(((v - edge + 0.012) / 0.006) ** 2))
@@ -176,7 +218,11 @@ def vessel_tree(*, width_mm: float, pixels: int, contrast: float, seed: int) -> 
         angle = turn + number * GOLDEN_RAD + rng.normal(0, 0.2)
         start = 0.75 * width_mm * np.array([np.cos(angle), np.sin(angle)])
         _vessel(cover, width_mm, rng, start, angle + np.pi + rng.normal(0, 0.2), width_mm / rng.uniform(24, 36))
-    surface = 1.0 + 0.05 * mottle(pixels=pixels, slope=1.6, seed=seed + 1) + 0.012 * mottle(pixels=pixels, slope=0.3, seed=seed + 2)
+    surface = (
+        1.0
+        + 0.05 * mottle(pixels=pixels, slope=1.6, seed=seed + 1)
+        + 0.012 * mottle(pixels=pixels, slope=0.3, seed=seed + 2)
+    )
     return _frozen(np.clip(surface, 0.5, 1.3) * (1.0 - (1.0 - dark) * cover))
 
 
@@ -187,14 +233,23 @@ def _vessel(cover, width_mm, rng, start, angle, thick) -> None:
     step = max(0.6 * thick, width_mm / 160)
     count = max(int((thick * rng.uniform(6, 11) + width_mm * rng.uniform(0.03, 0.07)) / step), 3)
     heading = angle + np.cumsum(rng.normal(0, 0.16 * np.sqrt(step * 60 / width_mm), count))
-    points = start + np.concatenate([np.zeros((1, 2)), np.cumsum(step * np.stack([np.cos(heading), np.sin(heading)], axis=1), axis=0)])
+    points = start + np.concatenate(
+        [np.zeros((1, 2)), np.cumsum(step * np.stack([np.cos(heading), np.sin(heading)], axis=1), axis=0)]
+    )
     depth = 1.0 - np.exp(-thick * 110 / width_mm)  # thin vessels hold less blood in the line of sight
     share = rng.uniform(0.55, 0.93)  # of the flow that goes on: r0^3 = r1^3 + r2^3
     after = thick * share ** (1 / 3) * 0.985
     path(cover=cover, width_mm=width_mm, points_mm=points, thick_mm=np.linspace(thick, after, count + 1), depth=depth)
     side = rng.choice((-1.0, 1.0))
     for part, bend in ((share, -0.18), (1.0 - share, 0.75)):
-        _vessel(cover, width_mm, rng, points[-1], heading[-1] + side * (bend + rng.normal(0, 0.12)), thick * part ** (1 / 3) * 0.985)
+        _vessel(
+            cover,
+            width_mm,
+            rng,
+            points[-1],
+            heading[-1] + side * (bend + rng.normal(0, 0.12)),
+            thick * part ** (1 / 3) * 0.985,
+        )
 
 
 def flat_field(*, width_mm: float, pixels: int) -> np.ndarray:

@@ -96,7 +96,6 @@ def test_light_is_linear_in_the_lamp_and_falls_with_distance(length, diameter, f
         "source.lamp.flux_lm": flux,
         "scene.target.distance_mm": distance,
         "scene.target.far_mm": 80.0,
-        "scene.ports.offset_mm": 0.1,
     }
     designs = [
         change,

@@ -83,19 +83,6 @@ def test_modes_grow_with_the_square_of_core_and_aperture():
     assert fiber.mode_count(v_number=1.5) == 2.0
 
 
-def test_taper_keeps_etendue():
-    accepted = fiber.tapered_na(na=0.22, wide_um=300.0, narrow_um=100.0)
-    assert accepted * 300.0 == pytest.approx(0.22 * 100.0)
-
-
-def test_tilted_end_vanishes_with_the_tilt_and_is_odd():
-    turned = fiber.tilted_end_deg(core_index=1.5, tilt_deg=np.array([-8.0, 0.0, 8.0]))
-    assert turned[1] == 0.0
-    assert turned[2] == -turned[0]
-    # small tilts: (n - 1) tilt
-    assert fiber.tilted_end_deg(core_index=1.5, tilt_deg=0.01) == pytest.approx(0.005, rel=1e-6)
-
-
 def test_scalar_equals_array_element():
     na = np.linspace(0.05, 0.8, 7)
     for formula, given in (
@@ -117,8 +104,6 @@ def test_scalar_equals_array_element():
         (lambda: fiber.half_angle_deg(na=1.1, outside_index=1.0), "na is 1.1; it must be at most the index outside"),
         (lambda: fiber.bounces_per_m(na=0.5, core_index=1.5, core_um=0.0), "core_um is 0; it must be above 0"),
         (lambda: fiber.ray_stretch(ray_na=-0.1, core_index=1.5), "ray_na is -0.1; it must be 0 or more"),
-        (lambda: fiber.tilted_end_deg(core_index=1.5, tilt_deg=60.0), "tilt_deg is 60"),
-        (lambda: fiber.tapered_na(na=0.2, wide_um=1.0, narrow_um=2.0), "narrow_um is 2; it must be at most"),
     ],
 )
 def test_impossible_fibers_are_refused(call, said):

@@ -18,7 +18,7 @@ DEMO = presets.open("gearbox_tooth").document
 
 def test_links_of_odd_content_are_refused_never_raised():
     odd = [[], {}, "x", True, 10**400, -1, {"a": {"b": [1]}}, [1, [2]], [[[]]], "solve"]
-    paths = ("source", "image.form", "guide.bundle", "guide.bundle.bends.0.radius_mm", "format", "x.y")
+    paths = ("source", "image.form", "guide.bundle", "guide.bundle.bends.0.radius_mm", "kind", "x.y")
     for path, value in itertools.product(paths, odd):
         with pytest.raises(OutOfRange, match=r"^[^\n]+\.$"):
             sketch.from_link(link.written("gearbox_tooth", {path: value}))

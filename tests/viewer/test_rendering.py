@@ -37,7 +37,9 @@ def places_um(count: int, step_um: float) -> tuple[np.ndarray, np.ndarray]:
     return at[None, :], at[:, None]
 
 
-def grating(frequency_lp_mm: float, direction_deg: float, samples: int = SAMPLES, sample_um: float = SAMPLE_UM) -> np.ndarray:
+def grating(
+    frequency_lp_mm: float, direction_deg: float, samples: int = SAMPLES, sample_um: float = SAMPLE_UM
+) -> np.ndarray:
     x, y = places_um(samples, sample_um)
     turn = np.deg2rad(direction_deg)
     return 0.5 + 0.4 * np.cos(2 * np.pi * mm_from_um(frequency_lp_mm * (x * np.cos(turn) + y * np.sin(turn))))
@@ -49,7 +51,9 @@ def window(count: int, pixel_um: float, radius_um: float) -> np.ndarray:
     return np.where(away < 1, np.cos(np.pi * np.minimum(away, 1) / 2) ** 4, 0.0)
 
 
-def contrast_of(image: np.ndarray, pixel_um: float, frequency_lp_mm: float, direction_deg: float, radius_um: float) -> float:
+def contrast_of(
+    image: np.ndarray, pixel_um: float, frequency_lp_mm: float, direction_deg: float, radius_um: float
+) -> float:
     """Modulation of a picture at one frequency, over the 0.8 that the subject had; signed."""
     x, y = places_um(len(image), pixel_um)
     turn, weight = np.deg2rad(direction_deg), window(len(image), pixel_um, radius_um)
@@ -63,7 +67,9 @@ def contrast_of(image: np.ndarray, pixel_um: float, frequency_lp_mm: float, dire
 @pytest.mark.parametrize(("core_um", "pixel_um"), [(7.5, 2.1), (7.5, 4.7), (5.0, 1.0), (9.0, 3.3)])
 def test_a_flat_field_returns_the_core_share(core_um, pixel_um):
     count = int(1.06 * IMAGE_UM / pixel_um)
-    view = render(**{**PLAIN, "core_um": core_um, "pixel_um": pixel_um, "rows": count, "columns": count}, reflectance=FLAT)
+    view = render(
+        **{**PLAIN, "core_um": core_um, "pixel_um": pixel_um, "rows": count, "columns": count}, reflectance=FLAT
+    )
     weight = window(count, pixel_um, 0.45 * IMAGE_UM)
     share = (view.image * weight).sum() / weight.sum()
     assert share == pytest.approx(core_area_fraction(core_um=core_um, pitch_um=PITCH_UM), rel=0.005)
@@ -117,7 +123,9 @@ def test_a_grating_keeps_the_product_of_all_contrasts(frequency_lp_mm, direction
         diffraction_mtf(f_number=6.0, wavelength_nm=550.0, frequency_lp_mm=frequency_lp_mm)
         * disc_mtf(diameter_um=6.0, frequency_lp_mm=frequency_lp_mm)
         * disc_mtf(diameter_um=CORE_UM, frequency_lp_mm=frequency_lp_mm) ** 2
-        * ring_mtf(shares=shares, frequency_per_um=frequency_lp_mm / 1000, pitch_um=PITCH_UM, direction_deg=direction_deg)
+        * ring_mtf(
+            shares=shares, frequency_per_um=frequency_lp_mm / 1000, pitch_um=PITCH_UM, direction_deg=direction_deg
+        )
         * np.sinc(2.1e-3 * frequency_lp_mm * np.cos(turn))
         * np.sinc(2.1e-3 * frequency_lp_mm * np.sin(turn))
     )
@@ -129,7 +137,9 @@ def test_a_grating_keeps_the_product_of_all_contrasts(frequency_lp_mm, direction
 def test_coarse_pixels_take_their_own_share():
     for pixel_um in (1.3, 3.7):
         count = int(1.06 * IMAGE_UM / pixel_um)
-        view = render(**{**PLAIN, "pixel_um": pixel_um, "rows": count, "columns": count}, reflectance=grating(40.0, 0.0))
+        view = render(
+            **{**PLAIN, "pixel_um": pixel_um, "rows": count, "columns": count}, reflectance=grating(40.0, 0.0)
+        )
         expected = disc_mtf(diameter_um=CORE_UM, frequency_lp_mm=40.0) ** 2 * np.sinc(0.04 * pixel_um)
         assert contrast_of(view.image, pixel_um, 40.0, 0.0, 280.0) == pytest.approx(float(expected), rel=0.01)
 
@@ -152,10 +162,14 @@ def test_a_spoiled_lattice_loses_nothing_on_average():
     """Jitter, spread and dead cores make the picture uneven, not paler in contrast."""
     spoiled = {"jitter_share": 0.03, "transmission_spread": 0.1, "dead_fraction": 0.02}
     seen = [
-        contrast_of(render(**{**PLAIN, **spoiled, "seed": seed}, reflectance=grating(25.0, 10.0)).image, 2.1, 25.0, 10.0, 280.0)
+        contrast_of(
+            render(**{**PLAIN, **spoiled, "seed": seed}, reflectance=grating(25.0, 10.0)).image, 2.1, 25.0, 10.0, 280.0
+        )
         for seed in range(6)
     ]
-    expected = float(disc_mtf(diameter_um=CORE_UM, frequency_lp_mm=25.0) ** 2) * np.sinc(0.0525 * np.cos(np.deg2rad(10)))
+    expected = float(disc_mtf(diameter_um=CORE_UM, frequency_lp_mm=25.0) ** 2) * np.sinc(
+        0.0525 * np.cos(np.deg2rad(10))
+    )
     assert np.mean(seen) == pytest.approx(expected, rel=0.02)
 
 
@@ -172,7 +186,10 @@ def peak(image: np.ndarray, pixel_um: float, below_lp_mm: float) -> tuple[float,
     wave[np.hypot(at[None, :], at[:, None]) > below_lp_mm] = 0
     row, column = np.unravel_index(wave.argmax(), wave.shape)
     near = wave[row - 2 : row + 3, column - 2 : column + 3] ** 2
-    fy, fx = (near * at[row - 2 : row + 3, None]).sum() / near.sum(), (near * at[None, column - 2 : column + 3]).sum() / near.sum()
+    fy, fx = (
+        (near * at[row - 2 : row + 3, None]).sum() / near.sum(),
+        (near * at[None, column - 2 : column + 3]).sum() / near.sum(),
+    )
     return float(np.hypot(fx, fy)), float(np.mod(np.rad2deg(np.arctan2(fy, fx)), 180.0))
 
 
@@ -199,7 +216,9 @@ def test_below_the_limit_the_grating_is_where_it_was():
 # Noise
 
 
-@pytest.mark.parametrize(("mean_e", "dark_noise_e", "gain_dn_e"), [(0.0, 3.0, 0.4), (5.0, 2.0, 0.25), (4000.0, 2.4, 0.39), (60.0, 0.0, 0.13)])
+@pytest.mark.parametrize(
+    ("mean_e", "dark_noise_e", "gain_dn_e"), [(0.0, 3.0, 0.4), (5.0, 2.0, 0.25), (4000.0, 2.4, 0.39), (60.0, 0.0, 0.13)]
+)
 def test_noise_is_what_emva_says(mean_e, dark_noise_e, gain_dn_e):
     """mu + sigma_d^2 + 1/(12 K^2) (EMVA 1288), where the noise spans more than half a step; a quarter of a million pixels."""
     frame = np.full((512, 512), mean_e)
@@ -228,7 +247,14 @@ def test_a_full_well_clips_and_is_counted():
 
 
 def test_the_same_seed_gives_the_same_picture_and_another_another():
-    spoiled = {"jitter_share": 0.03, "transmission_spread": 0.1, "dead_fraction": 0.02, "noise": True, "lit_level": 500.0, "dark_noise_e": 3.0}
+    spoiled = {
+        "jitter_share": 0.03,
+        "transmission_spread": 0.1,
+        "dead_fraction": 0.02,
+        "noise": True,
+        "lit_level": 500.0,
+        "dark_noise_e": 3.0,
+    }
     one, again, other = (render(**{**PLAIN, **spoiled, "seed": seed}, reflectance=FLAT) for seed in (3, 3, 4))
     assert np.array_equal(one.image, again.image)
     assert not np.array_equal(one.image, other.image)
@@ -253,7 +279,13 @@ def test_dead_cores_are_dark_and_counted():
 
 def test_throughput_spread_has_mean_one_and_its_own_rms():
     made = cores_of.mosaic(
-        pitch_um=3.0, image_um=600.0, turn_deg=0.0, jitter_share=0.02, dead_fraction=0.0, transmission_spread=0.3, seed=2
+        pitch_um=3.0,
+        image_um=600.0,
+        turn_deg=0.0,
+        jitter_share=0.02,
+        dead_fraction=0.0,
+        transmission_spread=0.3,
+        seed=2,
     )
     assert made.throughput_ratio.mean() == pytest.approx(1.0, abs=0.01)
     assert made.throughput_ratio.std() == pytest.approx(0.3, rel=0.03)
@@ -262,7 +294,13 @@ def test_throughput_spread_has_mean_one_and_its_own_rms():
 
 def test_exchange_loses_nothing_and_stays_inside_the_rim():
     made = cores_of.mosaic(
-        pitch_um=10.0, image_um=300.0, turn_deg=20.0, jitter_share=0.0, dead_fraction=0.0, transmission_spread=0.0, seed=2
+        pitch_um=10.0,
+        image_um=300.0,
+        turn_deg=20.0,
+        jitter_share=0.0,
+        dead_fraction=0.0,
+        transmission_spread=0.0,
+        seed=2,
     )
     shares = table_shares(coupling_over_spread=0.4)
     light = np.random.default_rng(0).random(len(made.x_um))
@@ -275,7 +313,13 @@ def test_exchange_loses_nothing_and_stays_inside_the_rim():
 
 def test_exchange_equals_a_direct_sum_over_pairs():
     made = cores_of.mosaic(
-        pitch_um=10.0, image_um=400.0, turn_deg=35.0, jitter_share=0.0, dead_fraction=0.0, transmission_spread=0.0, seed=2
+        pitch_um=10.0,
+        image_um=400.0,
+        turn_deg=35.0,
+        jitter_share=0.0,
+        dead_fraction=0.0,
+        transmission_spread=0.0,
+        seed=2,
     )
     shares = table_shares(coupling_over_spread=0.3)
     light = np.random.default_rng(1).random(len(made.x_um))
@@ -305,7 +349,13 @@ def test_disc_areas_against_a_count_of_points():
 def test_what_a_core_collects_is_the_mean_over_its_disc():
     """Spline and filter against direct averaging of a smooth subject over 2,000 points of the disc."""
     made = cores_of.mosaic(
-        pitch_um=10.0, image_um=100.0, turn_deg=9.0, jitter_share=0.05, dead_fraction=0.0, transmission_spread=0.0, seed=2
+        pitch_um=10.0,
+        image_um=100.0,
+        turn_deg=9.0,
+        jitter_share=0.05,
+        dead_fraction=0.0,
+        transmission_spread=0.0,
+        seed=2,
     )
     angle, radius = 2.399963 * np.arange(2000), 0.5 * CORE_UM * np.sqrt((np.arange(2000) + 0.5) / 2000)
     x = made.x_um[:, None] + radius * np.cos(angle)
@@ -316,7 +366,16 @@ def test_what_a_core_collects_is_the_mean_over_its_disc():
         return 1.0 + 0.5 * np.cos(wave * (31 * x + 17 * y)) + 0.3 * np.sin(wave * (8 * x - 40 * y))
 
     view = render(
-        **{**PLAIN, "image_um": 100.0, "turn_deg": 9.0, "jitter_share": 0.05, "seed": 2, "pixel_um": 0.5, "rows": 240, "columns": 240},
+        **{
+            **PLAIN,
+            "image_um": 100.0,
+            "turn_deg": 9.0,
+            "jitter_share": 0.05,
+            "seed": 2,
+            "pixel_um": 0.5,
+            "rows": 240,
+            "columns": 240,
+        },
         reflectance=subject(*places_um(SAMPLES, SAMPLE_UM)),
     )
     row, column = (np.rint(at / 0.5 + 119.5).astype(int) for at in (made.y_um, made.x_um))
@@ -353,7 +412,9 @@ def test_a_chip_that_sees_an_even_field_is_even():
 
 def test_a_chip_with_blur_that_varies_keeps_each_its_own():
     blur = np.array([[1.0, 1.0, 9.0, 9.0]] * 2)
-    view = render_chip(**{**CHIP, "defocus_um": blur}, reflectance=grating(50.0, 90.0), pixel_um=2.0, rows=300, columns=300)
+    view = render_chip(
+        **{**CHIP, "defocus_um": blur}, reflectance=grating(50.0, 90.0), pixel_um=2.0, rows=300, columns=300
+    )
     _, y = places_um(300, 2.0)
     wave = np.exp(-2j * np.pi * 0.05 * y)
     for columns, blur_um in ((slice(10, 90), 1.0), (slice(210, 290), 9.0)):
@@ -370,7 +431,10 @@ def test_a_chip_with_blur_that_varies_keeps_each_its_own():
 def test_smoothing_leaves_so_much_of_the_honeycomb_and_costs_its_fourth_root(residual_contrast):
     grate = render(**PLAIN, reflectance=grating(50.0, 30.0)).image
     flat = render(**PLAIN, reflectance=FLAT).image
-    out, even = (smoothed(image=one, residual_contrast=residual_contrast, pitch_um=PITCH_UM, pixel_um=2.1) for one in (grate, flat))
+    out, even = (
+        smoothed(image=one, residual_contrast=residual_contrast, pitch_um=PITCH_UM, pixel_um=2.1)
+        for one in (grate, flat)
+    )
     first = 2000 / (np.sqrt(3) * PITCH_UM)
     before, after = (contrast_of(one, 2.1, first, 90.0, 280.0) for one in (flat, even.image))
     assert after / before == pytest.approx(residual_contrast, rel=0.02)
@@ -428,7 +492,14 @@ def test_a_tilted_plane_is_met_by_tracing_the_ray():
     """The point found lies on the plane and on the refracted ray, by direct geometry in three dimensions."""
     x, y, behind, depth, n, w, b = 0.31, -0.22, 1.05, 1.5, 1.333, 12.0, np.deg2rad(40.0)
     seen = sight_on_plane(
-        x_mm=x, y_mm=y, image_distance_mm=behind, mapping="tan", distance_mm=w, pupil_depth_mm=depth, index=n, tilt_deg=40.0
+        x_mm=x,
+        y_mm=y,
+        image_distance_mm=behind,
+        mapping="tan",
+        distance_mm=w,
+        pupil_depth_mm=depth,
+        index=n,
+        tilt_deg=40.0,
     )
     point = np.array([float(seen.u_mm) * np.cos(b), float(seen.v_mm), w + float(seen.u_mm) * np.sin(b)])
     inside = np.array([x, y, behind]) / np.hypot(np.hypot(x, y), behind)
@@ -456,7 +527,14 @@ def test_a_bore_is_seen_all_around_and_its_far_end_not():
     assert seen.v_mm == pytest.approx(np.full(8, (6.0 - 0.5 * np.tan(0.4)) / np.tan(0.4)))
     assert np.exp(1j * seen.u_mm / 6.0) == pytest.approx(np.exp(1j * turn))
     middle = sight_on_bore(
-        x_mm=0.0, y_mm=0.0, image_distance_mm=1.0, mapping="tan", bore_mm=12.0, pupil_depth_mm=0.5, index=1.0, farthest_mm=200.0
+        x_mm=0.0,
+        y_mm=0.0,
+        image_distance_mm=1.0,
+        mapping="tan",
+        bore_mm=12.0,
+        pupil_depth_mm=0.5,
+        index=1.0,
+        farthest_mm=200.0,
     )
     assert not middle.meets
 
@@ -518,7 +596,9 @@ def test_twenty_four_gauss_nodes_are_enough():
     nodes = 65.0 * (np.polynomial.legendre.leggauss(24)[0] + 1)
     for diameter_um in (2.0, 12.0, 80.0):
         fine, coarse = (
-            float(kept_share(diameter_um=diameter_um, frequency_lp_mm=f, mtf=disc_mtf(diameter_um=9.0, frequency_lp_mm=f)))
+            float(
+                kept_share(diameter_um=diameter_um, frequency_lp_mm=f, mtf=disc_mtf(diameter_um=9.0, frequency_lp_mm=f))
+            )
             for f in (NODES, nodes)
         )
         assert coarse == pytest.approx(fine, rel=0.005)
@@ -543,6 +623,7 @@ def test_a_spot_below_the_blur_needs_contrast_times_area():
     """Far below the blur the product of contrast and area is what counts (Ricco)."""
     mtf = disc_mtf(diameter_um=9.0, frequency_lp_mm=NODES)
     low, high = (
-        float(smallest_spot_um(contrast=c, snr=1e5, cell_um2=86.6, threshold_snr=5.0, frequency_lp_mm=NODES, mtf=mtf)) for c in (0.1, 0.4)
+        float(smallest_spot_um(contrast=c, snr=1e5, cell_um2=86.6, threshold_snr=5.0, frequency_lp_mm=NODES, mtf=mtf))
+        for c in (0.1, 0.4)
     )
     assert low / high == pytest.approx(2.0, rel=0.01)
