@@ -135,15 +135,9 @@ class Fiberscope(Spec):
         known = dict(leaves(self))
         for rule in RULES:
             values = tuple(known.get(path) for path in rule.paths)
-            if None not in values and not np.all(rule.holds(*values)):
+            if None not in values and SOLVE not in values and not np.all(rule.holds(*values)):
                 raise ValueError(rule.broken(values))
         return self
-
-
-def _lumen_left(wall_mm, outer_mm):
-    """Whether walls leave a lumen; a diameter to be solved for always does."""
-    outer = [np.inf if isinstance(outer, str) else outer for outer in np.atleast_1d(np.asarray(outer_mm, dtype=object))]
-    return 2 * np.asarray(wall_mm) < np.array(outer)
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,6 +159,7 @@ class Rule:
 
 
 LEAST_CORES = 7
+SOLVE = "solve"  # stands for a diameter that the section decides
 COMPARISONS = {"below": np.less, "at most": np.less_equal}
 LAMP = ("source.lamp.emitter_mm", "source.lamp.cone_na")
 RULES = (
@@ -250,7 +245,11 @@ RULES = (
         np.less_equal,
         "the far end must be at least the working distance",
     ),
-    Rule(("body.section.wall_mm", "body.section.outer_diameter_mm"), _lumen_left, "the walls leave no lumen"),
+    Rule(
+        ("body.section.wall_mm", "body.section.outer_diameter_mm"),
+        lambda wall, outer: 2 * np.asarray(wall) < outer,
+        "the walls leave no lumen",
+    ),
 )
 
 
@@ -263,6 +262,13 @@ def broken_tables(fiberscope: Fiberscope) -> Iterator[str]:
         yield "source.launch.form is 'rated', which needs source.lamp.flux_lm"
     if (guide.cable is None) != (guide.joint is None):
         yield f"guide.{'joint' if guide.cable else 'cable'} is missing; a cable and the joint to it come together"
+    solves = [guide.bundle.diameter_mm, getattr(getattr(fiberscope.image, "bundle", None), "diameter_mm", None)].count(
+        SOLVE
+    )
+    if solves and (fiberscope.body is None or fiberscope.body.section.outer_diameter_mm == SOLVE):
+        yield "body.section.outer_diameter_mm must be a number where a part's diameter is to be solved for"
+    if solves > 1:
+        yield "guide.bundle.diameter_mm and image.bundle.diameter_mm cannot both be solved for: give one of them"
     if guide.bundle.exit_tilt_deg > 0 and fiberscope.scene is not None:
         ports = fiberscope.scene.ports
         if ports.form not in ("round", "placed") or getattr(ports, "tilt_deg", 0.0) > 0:

@@ -104,10 +104,12 @@ def evaluate_axes(columns: Columns, progress: Progress | None = None) -> tuple[F
 def evaluate_possible(columns: Columns) -> tuple[Figures, Flags]:
     """As `evaluate_axes`, but a design that a stage refuses gets nan instead, found by halving."""
     try:
-        return evaluate_axes(columns)
+        if columns.count:
+            return evaluate_axes(columns)
     except OutOfRange:
-        if columns.count == 1:
-            return Figures({}, {}, {}), np.zeros(1, bool)
+        pass
+    if columns.count < 2:
+        return Figures({}, {}, {}), np.zeros(columns.count, bool)
     half = columns.count // 2
     parts = [evaluate_possible(columns.take(rows)) for rows in np.split(np.arange(columns.count), [half])]
     return _joined([figures for figures, _ in parts], [len(good) for _, good in parts]), np.concatenate(

@@ -9,6 +9,7 @@ from optics.chain.detail import detail
 from optics.chain.fit import fit
 from optics.chain.light import light
 from optics.chain.screen import screen
+from optics.chain.solve import solved
 from optics.chain.target import field_of_view, target
 from optics.viewer.detail import PARTS
 
@@ -69,6 +70,7 @@ def evaluate(columns: Columns) -> Figures:
     The section is laid out before the ports are placed, once for each distinct section; the light and
     the detail follow in blocks.
     """
+    columns = solved(columns)
     seen = field_of_view(columns)
     body, ports = fit(columns, seen["image_mm"])
     blocks = []
@@ -86,6 +88,7 @@ def evaluate(columns: Columns) -> Figures:
         if any(step in block.after_lm for block in blocks)
     }
     spectrum = {name: np.concatenate([block.spectrum_w_nm[name] for block in blocks]) for name in SPECTRA if blocks}
+    value["guide_diameter_mm"] = columns["guide.bundle.diameter_mm"]
     return Figures({**seen, **body, **value}, after, spectrum)
 
 

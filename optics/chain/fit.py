@@ -29,8 +29,8 @@ def fit(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarray], 
     """Numbers of the body [design] (nan without a body), and the ports [design, port] around the objective's axis."""
     first, inverse = distinct_rows(columns, TABLES)
     few = columns.take(first)
-    section, ports = _section(few, image_mm[first])
-    section = {name: found[inverse] for name, found in section.items()}
+    laid, ports = section(few, image_mm[first])
+    laid = {name: found[inverse] for name, found in laid.items()}
     ports = {name: found[inverse] for name, found in ports.items()}
     body = columns.has("body.section.wall_mm")
     light_area = fiber_area_mm2(
@@ -38,7 +38,7 @@ def fit(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarray], 
     )
     one = np.pi / 4 * columns["guide.fiber.fiber_um"] ** 2 / um_from_mm(1.0) ** 2
     value = {
-        **{name: np.where(body, found, np.nan) for name, found in section.items()},
+        **{name: np.where(body, found, np.nan) for name, found in laid.items()},
         "light_area_mm2": light_area,
         "fiber_count": np.floor(light_area / one + 1e-9),
         "bend_radius_mm": np.where(body, bend_radius_mm(columns), np.nan),
@@ -60,7 +60,7 @@ def bend_radius_mm(columns: Columns) -> np.ndarray:
     return np.maximum.reduce([columns.get("body.handling.bend_radius_mm", 0.0), guide, image])
 
 
-def _section(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarray], dict[str, np.ndarray]]:
+def section(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarray], dict[str, np.ndarray]]:
     """Lumen, outer diameter and free area, and where the ports come to lie."""
     clearance, wall = columns.get("body.section.clearance_mm", 0.0), columns.get("body.section.wall_mm", 0.0)
     core = jacketed_mm(

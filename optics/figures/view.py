@@ -6,7 +6,7 @@ from matplotlib.figure import Figure
 from matplotlib.patches import Circle, Rectangle
 
 from optics.figures.canvas import round_length, seconds, sheet, three, width_of
-from optics.figures.palette import LIGHT, LINE, SMALL, TEXT, THIN, WIDTH_IN, Palette
+from optics.figures.palette import LIGHT, SMALL, TEXT, THIN, WIDTH_IN, Palette
 from optics.report.picture import Picture
 
 # Inches: edges, between the panels, headings, what stands below

@@ -1,5 +1,7 @@
 """A guide end to end: the fibers' area, what the face takes, and what is left after its length."""
 
+from typing import Annotated, Literal
+
 import numpy as np
 from pydantic import Field
 
@@ -21,8 +23,10 @@ class Bend(Spec):
 class GuideBundle(Spec):
     """The scope's own light guide, all branches together by area."""
 
-    diameter_mm: float = quantity(
-        "diameter of the round bundle that has the area of all branches", gt=0, le=50, usual=(0.3, 6.0), common=True
+    diameter_mm: Annotated[float, Field(gt=0, le=50)] | Literal["solve"] = quantity(
+        'diameter of the round bundle that has the area of all branches, or "solve" for the most that fits the tube',
+        usual=(0.3, 6.0),
+        common=True,
     )
     length_m: float = quantity("length from input face to exit face", gt=0, le=1000, usual=(0.3, 8.0), common=True)
     packing_fraction: float = quantity(

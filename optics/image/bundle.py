@@ -1,6 +1,9 @@
 """The image bundle: what it is made of, and how bright its far face is."""
 
+from typing import Annotated, Literal
+
 import numpy as np
+from pydantic import Field
 
 from optics.spec import Curve, Spec, positive, quantity, within
 from optics.units import Numbers
@@ -32,7 +35,9 @@ class ImageBundle(Spec):
         "greatest surface strain allowed in a lasting bend", gt=0, lt=0.2, usual=(0.001, 0.02)
     )
     highest_temperature_c: float = quantity("temperature it bears", gt=0, le=1200, usual=(70.0, 400.0))
-    diameter_mm: float = quantity("diameter of the lattice of cores", gt=0, le=20, usual=(0.2, 4.0), common=True)
+    diameter_mm: Annotated[float, Field(gt=0, le=20)] | Literal["solve"] = quantity(
+        'diameter of the lattice of cores, or "solve" for the most that fits the tube', usual=(0.2, 4.0), common=True
+    )
     length_m: float = quantity("length", gt=0, le=100, usual=(0.1, 5.0), common=True)
 
 

@@ -12,9 +12,10 @@ from optics.image.lattice import HEXAGONAL_FRACTION
 from optics.report.picture_back import Back, back_of
 from optics.report.picture_front import Front, front_of
 from optics.report.picture_words import picture_words
-from optics.spec import OutOfRange, require
+from optics.spec import require
 from optics.units import AnyUnit, mm_from_um, um_from_mm
-from optics.viewer.rendering import View, render, render_chip, smoothed
+from optics.viewer.rendering import View, render, render_chip
+from optics.viewer.sensor import smoothed
 from optics.viewer.subjects import require_subject
 
 MOST_CORES, MOST_SAMPLES, LEAST_SAMPLES = 200_000, 2048, 800

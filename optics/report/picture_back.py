@@ -195,7 +195,7 @@ def _tint(fiberscope: Fiberscope, falling_w_m2_nm: np.ndarray) -> tuple[float, f
     """Color of the target beside a white one in the same light, as an eye or a color camera balances it; grey without color."""
     image, viewer = fiberscope.image, fiberscope.viewer
     seer = image.chip if image.form == "chip" else None if viewer.form == "eye" else viewer.camera
-    if seer is not None and not seer.color_filter or luminous_flux_lm(falling_w_m2_nm) <= 0:
+    if (seer is not None and not seer.color_filter) or luminous_flux_lm(falling_w_m2_nm) <= 0:
         return (1.0, 1.0, 1.0)
     white, colored = (
         _rgb(power) for power in (falling_w_m2_nm, falling_w_m2_nm * on_grid(fiberscope.scene.target.reflectance))

@@ -10,8 +10,8 @@ from optics.report.picture_back import Back
 from optics.report.views import exit_cone
 from optics.scene.irradiance import bore_irradiance_w_m2, plane_irradiance_w_m2
 from optics.units import deg_from_rad, mm_from_um
+from optics.viewer.blur import stretched
 from optics.viewer.off_axis import edge_acceptance_ratio, edge_light_ratio
-from optics.viewer.rendering import stretched
 from optics.viewer.sight import Sight, sight_on_bore, sight_on_plane
 from optics.viewer.subjects import subject_reflectance
 
@@ -124,7 +124,7 @@ def _folded(at: np.ndarray, pixels: int) -> np.ndarray:
 
 
 def _light_ratio(fiberscope: Fiberscope, back: Back, sight: Sight, side_um: float) -> np.ndarray:
-    """Light that reaches the image, over that behind the level: on the target, by the lens's mapping, by the cores' acceptance."""
+    """Light that reaches the image, over that behind the level: by the ports, the lens's mapping, the cores' acceptance."""
     target = fiberscope.scene.target
     shown = {
         "ports": back.ports,

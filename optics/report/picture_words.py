@@ -2,9 +2,12 @@
 
 from collections.abc import Iterator
 
+from optics.image.contrast import honeycomb_filter_mtf
 from optics.report.picture_back import Back
-from optics.viewer.rendering import Smoothing, View
-from optics.viewer.subjects import SUBJECTS, bar_frequencies_lp_mm
+from optics.viewer.bars import bar_frequencies_lp_mm
+from optics.viewer.rendering import View
+from optics.viewer.sensor import Smoothing
+from optics.viewer.subjects import SUBJECTS
 
 
 def picture_words(
@@ -32,11 +35,9 @@ def picture_words(
 
 
 def _what(back: Back, view: View, subject: str) -> Iterator[str]:
-    if back.bundle:
-        dark = f", {view.dead} of them dark" if view.dead else ""
-        yield f"{SUBJECTS[subject].capitalize()} at {back.distance_mm:.3g} mm, through {view.cores:,} cores{dark}; made up for this picture."
-    else:
-        yield f"{SUBJECTS[subject].capitalize()} at {back.distance_mm:.3g} mm, by a sensor at the tip; made up for this picture."
+    dark = f", {view.dead} of them dark" if view.dead else ""
+    by = f"through {view.cores:,} cores{dark}" if back.bundle else "by a sensor at the tip"
+    yield f"{SUBJECTS[subject].capitalize()} at {back.distance_mm:.3g} mm, {by}; made up for this picture."
     if back.mirrored:
         yield "A mirror image: the tip reflects an odd number of times."
 
@@ -52,7 +53,7 @@ def _detail(back: Back, subject: str, width_mm: float) -> Iterator[str]:
         if back.bundle:
             yield f"Beyond {back.lattice_limit_lp_mm:.3g} lp/mm the cores show bars that are not there."
     else:
-        yield f"Detail of {gap:.3g} mm is resolved on axis at the target's own contrast; single dark lines and spots show below that."
+        yield f"A gap of {gap:.3g} mm is resolved on axis at the target's own contrast; single lines and spots show below that."
 
 
 def _light(back: Back, view: View, summed: int, noise: bool) -> Iterator[str]:
@@ -67,7 +68,10 @@ def _light(back: Back, view: View, summed: int, noise: bool) -> Iterator[str]:
         if back.middle_lit
         else "of a plain target in the field's mean light (its middle is dark)"
     )
-    yield f"Exposure {_seconds(back.exposure_s)}: {_count(back.lit_level)} electrons on {inside} {where}, {well:.2g} of its well{drawn}."
+    yield (
+        f"Exposure {_seconds(back.exposure_s)}: {_count(back.lit_level)} electrons on {inside} {where}, "
+        f"{well:.2g} of its well{drawn}."
+    )
     if view.saturated_share > 0:
         share = f"{view.saturated_share * 100:.2g} %" if view.saturated_share >= 1e-4 else "Under 0.01 %"
         yield f"{share} of the image's pixels are saturated: bright parts are cut off there."
@@ -81,8 +85,13 @@ def _smoothed(back: Back, out: Smoothing | None, smooth: float | None) -> Iterat
     if out is None:
         yield "A sensor at the tip has no honeycomb to smooth."
         return
+    kept = honeycomb_filter_mtf(
+        residual_contrast=smooth, pitch_um=back.pitch_um, frequency_lp_mm=back.resolved_lp_mm / back.magnification
+    )
     yield (
-        f"Smoothed to {smooth * 100:.2g} % of the honeycomb: that keeps {out.limit_contrast:.2g} of the contrast at the lattice limit"
+        f"Smoothed to {smooth * 100:.2g} % of the honeycomb: "
+        f"that keeps {out.limit_contrast:.2g} of the contrast at the lattice limit"
+        + (f", {float(kept):.2g} at what is resolved" if back.resolved_lp_mm > 0 else "")
         + ("." if back.eye else f", and {out.noise_ratio:.2g} of each pixel's noise.")
     )
 

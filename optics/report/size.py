@@ -6,16 +6,19 @@ from collections.abc import Mapping
 from typing import Any
 
 import numpy as np
+from pydantic import ValidationError
 
 from optics.beam import Step
 from optics.chain.columns import columns
 from optics.chain.evaluate import Figures, evaluate
+from optics.chain.solve import with_solved
 from optics.fiberscope import Fiberscope
 from optics.needs import Summary, verdict
 from optics.report.answer import DetailAnswer, FitAnswer, LightAnswer, Limit, Report, TargetAnswer
 from optics.report.caveats import caveats
 from optics.report.exposure import exposure
 from optics.report.reasons import step_reason
+from optics.spec import OutOfRange, refusal
 from optics.tables import Sourced
 from optics.viewer.detail import PARTS
 
@@ -39,6 +42,7 @@ def size(fiberscope: Fiberscope, sourced: Mapping[str, Sourced] | None = None) -
 def report_of(fiberscope: Fiberscope, figures: Figures, row: int, sourced: Mapping[str, Sourced] | None) -> Report:
     """The report of one row of evaluated designs."""
     value = {name: float(found[row]) for name, found in figures.value.items()}
+    asked, fiberscope = fiberscope, _with_numbers(fiberscope, value)
     number = {name: (found if np.isfinite(found) else None) for name, found in value.items()}
     steps = _steps(fiberscope, figures, row, value)
     light = LightAnswer(
@@ -77,7 +81,7 @@ def report_of(fiberscope: Fiberscope, figures: Figures, row: int, sourced: Mappi
     lines = exposure(fiberscope, figures, row)
     return Report(
         version=VERSION,
-        design_hash=design_hash(fiberscope),
+        design_hash=design_hash(asked),
         name=fiberscope.name,
         setting=fiberscope.setting,
         summary=summary,
@@ -89,6 +93,14 @@ def report_of(fiberscope: Fiberscope, figures: Figures, row: int, sourced: Mappi
         needs=tuple(needs),
         caveats=caveats(fiberscope, value, figures, row, sourced),
     )
+
+
+def _with_numbers(fiberscope: Fiberscope, value: Mapping[str, float]) -> Fiberscope:
+    """The design with what was solved for as numbers; refused in one sentence where the tube leaves too little."""
+    try:
+        return with_solved(fiberscope, value)
+    except ValidationError as wrong:
+        raise OutOfRange(f"the tube leaves too little room: {refusal(Fiberscope, wrong)}") from None
 
 
 def design_hash(fiberscope: Fiberscope) -> str:

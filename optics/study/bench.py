@@ -112,15 +112,17 @@ def bench(
     used = readings.without(without) if without else readings
     _usual(design, used)
     aim = sought(design, used, flat)
-    held = "" if aim is None else _held(design, used, aim)
-    aim = None if held else aim
-    fit = fitted(Model(design, used, aim), used, aim)
+    model = Model(design, used, aim)
+    held = "" if aim is None else _held(model, used, aim)
+    if held:
+        aim, model = None, Model(design, used, None)
+    fit = fitted(model, used, aim)
     factor = float(fit.values[0])
     if not 1 / FAR < factor < FAR:
         raise OutOfRange(
             f"{source}: the readings are {factor:.3g} times what the design gives; is {used.measured} in its unit?"
         )
-    apart = outliers(lambda some: Model(design, some, aim), used, aim)
+    apart = outliers(lambda some: model if some is used else Model(design, some, aim), used, aim)
     at = f"{len(used.at)} readings of {used.measured} against {used.varied}"
     told, settings = _told(design, fit, aim, source, at)
     rows = {row for row, _ in apart}
@@ -171,13 +173,13 @@ def _usual(design: Design, readings: Readings) -> None:
         )
 
 
-def _held(design: Design, readings: Readings, aim: Sought) -> str:
+def _held(model: Model, readings: Readings, aim: Sought) -> str:
     """Why only the launch can be told, "" where both can."""
     kind = "bend radii" if readings.varied == "bend_radius_mm" else "lengths"
     alike = readings.at.max() <= (1 + CLOSE) * readings.at.min()
     if alike and (readings.turned_deg is None or np.ptp(readings.turned_deg) == 0):
         return f"all {kind} within {CLOSE:.0%}".replace("%", " %")
-    if tell_alike(Model(design, readings, aim), readings, aim):
+    if tell_alike(model, readings, aim):
         return "both move all readings alike"
     return ""
 

@@ -68,22 +68,23 @@ class Model:
     def __init__(self, design: Design, readings: Readings, aim: Sought | None):
         self._readings, self._aim = readings, aim
         self._table = _setup(columns([design.fiberscope]), readings)
-        self._last: tuple[float, np.ndarray, np.ndarray] | None = None
+        self._known: dict[float, tuple[np.ndarray, np.ndarray]] = {}
 
     def at(self, value: float) -> tuple[np.ndarray, np.ndarray]:
-        """(readings, their derivative in the number looked for), all readings at once and the last answer kept."""
-        if self._last is None or self._last[0] != value:
-            step = STEP * max(abs(value), 0.1)
-            count = len(self._readings.at)
-            ends = np.maximum([value, value - step, value + step], 0.0 if self._aim else value)
-            if self._aim is None:
-                found = self._measured(self._table)
-                self._last = (value, found, np.zeros_like(found))
-            else:
-                table = self._table.take(np.tile(np.arange(count), 3))
-                found = self._measured(self._moved(table, np.repeat(ends, count))).reshape(3, count)
-                self._last = (value, found[0], (found[2] - found[1]) / (ends[2] - ends[1]))
-        return self._last[1:]
+        """(readings, their derivative in the number looked for), all readings at once; answers are kept."""
+        if value not in self._known:
+            self._known[value] = self._shape(value)
+        return self._known[value]
+
+    def _shape(self, value: float) -> tuple[np.ndarray, np.ndarray]:
+        if self._aim is None:
+            found = self._measured(self._table)
+            return found, np.zeros_like(found)
+        step, count = STEP * max(abs(value), 0.1), len(self._readings.at)
+        ends = np.maximum([value, value - step, value + step], 0.0)
+        table = self._table.take(np.tile(np.arange(count), 3))
+        found = self._measured(self._moved(table, np.repeat(ends, count))).reshape(3, count)
+        return found[0], (found[2] - found[1]) / (ends[2] - ends[1])
 
     def _moved(self, table: Columns, value: np.ndarray) -> Columns:
         if self._aim.path == NA:

@@ -88,7 +88,7 @@ def _quality(readings: Readings, fit: Fit) -> str:
         if fit.fit_probability is None:
             return f"{told} Without repeats it cannot be told from a fault of the model."
         fits = "fits" if fit.fit_probability >= UNLIKELY else "does not fit"
-        ratio = f"lack of fit over the scatter of repeats is {fit.chi_square:.2g} (probability {_chance(fit)})"
+        ratio = f"lack of fit over the scatter of repeats is {fit.chi_square:.3g} (probability {_chance(fit)})"
         return f"{told} The model {fits}: {ratio}."
     told = f"chi-square is {fit.chi_square:.3g} for {fit.freedom} degrees of freedom (probability {_chance(fit)})"
     if fit.widened:

@@ -22,7 +22,7 @@ from optics.study.rays_target import PARTS, Place, landing, out_of_guide, part_a
 from optics.units import AnyUnit, lux_from_lm_mm2
 
 FEWEST, MOST = 100, 100_000_000
-BATCHES = 32
+BATCHES = 100
 AT_ONCE = 200_000  # rays sent out together
 ROUNDING, FEW = 1e-12, 2.0
 FLIGHTS = 5  # rays that fly to the target for each one that the lamp sends out

@@ -1,8 +1,8 @@
 """The smallest single change that makes a failing design pass: one number moved, found by bisection on the chain.
 
-For each design the numbers that can help what fails are moved away from where they are, rung by rung in
-even ratios, until a rung passes; between the last two rungs the edge is closed in on. The answer is checked: with it
-the design passes, with 2 % less of the change it does not. Sizes of changes are compared as ratios.
+For each design the numbers that can help what fails are moved away from where they are, rung by rung in even
+ratios, until what failed is met; between the last two rungs the edge is closed in on. There everything is asked: with the
+change the design passes, with 2 % less of it it does not. Sizes of changes are compared as ratios.
 """
 
 import math
@@ -95,17 +95,51 @@ KNOBS = (
 
 @dataclass(slots=True)
 class _Lanes:
-    """One design with one knob moved one way, each; `good` passes and `bad` does not, both values of the knob."""
+    """One design with one knob moved one way, each: at `good` what failed is met, at `bad` it is not.
+
+    `whole`: at `good` everything is met. All values are of the knob.
+    """
 
     row: np.ndarray
     knob: np.ndarray
     start: np.ndarray
-    end: np.ndarray  # the farthest value of the knob, on the side it moves to
+    end: np.ndarray  # the farthest value, on the side it moves to
     bad: np.ndarray
     good: np.ndarray
+    whole: np.ndarray
 
     def take(self, at: np.ndarray) -> "_Lanes":
         return _Lanes(*(getattr(self, name)[at] for name in self.__slots__))
+
+    def moved(self, to: np.ndarray) -> np.ndarray:
+        """How far a value is from the start, as the logarithm of a ratio."""
+        return np.abs(np.log(to / self.start))
+
+
+@dataclass(frozen=True, slots=True)
+class _Asked:
+    """The designs, what is asked of them, and what each of them fails [need, design]."""
+
+    needs: Needs
+    table: Columns
+    failing: dict[str, Flags]
+
+    def at(self, lanes: _Lanes, value: np.ndarray) -> tuple[Flags, Flags]:
+        """(what failed is met, everything is met) with each lane's knob at a value [lane]."""
+        moved, changed = self.table.take(lanes.row), {}
+        for number in np.unique(lanes.knob):
+            path = KNOBS[number].path
+            changed[path] = np.where(lanes.knob == number, value, moved[path])
+        moved = moved.replaced(changed)
+        helped, whole = np.zeros(len(value), bool), np.zeros(len(value), bool)
+        possible = np.flatnonzero(holding(moved))
+        figures, ready = evaluate_possible(moved.take(possible))
+        if figures.value:
+            margin = margins(self.needs, moved.take(possible), figures)
+            lacking = {name: fails[lanes.row[possible]] for name, fails in self.failing.items()}
+            helped[possible] = ready & np.logical_and.reduce([(margin[n] >= 0) | ~lacks for n, lacks in lacking.items()])
+            whole[possible] = ready & meeting(margin)
+        return helped, whole
 
 
 def smallest_changes(
@@ -115,27 +149,21 @@ def smallest_changes(
 
     `margin` as `pick_needs.margins` gives it for the whole table.
     """
-    few = table.take(rows)
-    lanes = _lanes(few, {name: found[rows] for name, found in margin.items()})
-    found: list[_Lanes] = []
+    asked = _Asked(needs, table.take(rows), {name: found[rows] < 0 for name, found in margin.items()})
+    lanes = _lanes(asked)
+    found: list[_Lanes] = [lanes.take(np.zeros(0, int))]
     for rung in RUNGS:
         if not len(lanes.row):
             break
-        ratio = np.minimum(rung, np.abs(np.log(lanes.end / lanes.start)))
+        ratio = np.minimum(rung, lanes.moved(lanes.end))
         lanes.good = lanes.start * np.exp(np.sign(lanes.end - lanes.start) * ratio)
-        passes = _pass(needs, few, lanes, lanes.good)
-        found.append(lanes.take(passes))
-        rest = ~np.isin(lanes.row, lanes.row[passes]) & (ratio == rung)
-        lanes = lanes.take(rest)
+        helped, lanes.whole = asked.at(lanes, lanes.good)
+        found.append(lanes.take(helped))
+        done = helped | np.isin(lanes.row, lanes.row[lanes.whole]) | (ratio < rung)
+        lanes = lanes.take(~done)
         lanes.bad = lanes.good
-    near = (
-        _Lanes(*(np.concatenate([getattr(each, name) for each in found]) for name in _Lanes.__slots__))
-        if found
-        else lanes
-    )
-    if not len(near.row):
-        return {}
-    return _best(needs, few, _closed_in(needs, few, near), rows)
+    near = _Lanes(*(np.concatenate([getattr(each, name) for each in found]) for name in _Lanes.__slots__))
+    return _best(asked, _closed_in(asked, near), rows)
 
 
 @lru_cache(maxsize=64)
@@ -157,68 +185,50 @@ def _members(annotation: Any) -> list[Any]:
     return [member for part in inner for member in _members(part)] if inner else [annotation]
 
 
-def _lanes(few: Columns, margin: Mapping[str, np.ndarray]) -> _Lanes:
+def _lanes(asked: _Asked) -> _Lanes:
     """Every knob and direction that may help all that fails, for each design that has the knob."""
-    failing = {name: found < 0 for name, found in margin.items()}
     parts = []
     for number, knob in enumerate(KNOBS):
-        start = few[knob.path]
+        start = asked.table[knob.path]
         low, high = usual_bounds(knob.path)
         for helped, end in ((knob.up, np.fmax(high, start)), (knob.down, np.fmin(low, start))):
-            hopeless = np.logical_or.reduce([fails for name, fails in failing.items() if name not in helped])
+            hopeless = np.logical_or.reduce([fails for name, fails in asked.failing.items() if name not in helped])
             row = np.flatnonzero(~np.isnan(start) & (start > 0) & (end > 0) & (end != start) & ~hopeless)
-            parts.append((row, np.full(len(row), number), start[row], end[row], start[row], end[row]))
+            none = np.zeros(len(row), bool)
+            parts.append((row, np.full(len(row), number), start[row], end[row], start[row], end[row], none))
     return _Lanes(*(np.concatenate(each) for each in zip(*parts)))
 
 
-def _pass(needs: Needs, few: Columns, lanes: _Lanes, value: np.ndarray) -> Flags:
-    """Whether each lane's design passes with its knob at a value [lane]."""
-    moved = few.take(lanes.row)
-    changed = {}
-    for number in np.unique(lanes.knob):
-        here = lanes.knob == number
-        changed[KNOBS[number].path] = np.where(here, value, moved[KNOBS[number].path])
-    moved = moved.replaced(changed)
-    possible = np.flatnonzero(holding(moved))
-    passes = np.zeros(len(value), bool)
-    if possible.size:
-        rows = moved.take(possible)
-        figures, ready = evaluate_possible(rows)
-        if figures.value:
-            passes[possible] = ready & meeting(margins(needs, rows, figures))
-    return passes
+def _closed_in(asked: _Asked, lanes: _Lanes) -> _Lanes:
+    """The edge where what failed is met, by halving in ratio until it is near against the change.
 
-
-def _closed_in(needs: Needs, few: Columns, lanes: _Lanes) -> _Lanes:
-    """The edge between failing and passing, by halving in ratio until it is near against the change.
-
-    A lane whose edge lies beyond what another lane of the same design has reached drops out.
+    A lane whose edge lies beyond one at which the same design passes whole drops out.
     """
     for _ in range(BISECTIONS):
-        reached = np.full(few.count, np.inf)
-        np.minimum.at(reached, lanes.row, np.abs(np.log(lanes.good / lanes.start)))
-        lanes = lanes.take(np.abs(np.log(lanes.bad / lanes.start)) < reached[lanes.row])
-        wide = np.abs(np.log(lanes.good / lanes.bad)) > CLOSE * np.abs(np.log(lanes.good / lanes.start))
-        rows = np.flatnonzero(wide)
+        reached = np.full(asked.table.count, np.inf)
+        np.minimum.at(reached, lanes.row[lanes.whole], lanes.moved(lanes.good)[lanes.whole])
+        lanes = lanes.take(lanes.moved(lanes.bad) < reached[lanes.row])
+        rows = np.flatnonzero(lanes.moved(lanes.good) - lanes.moved(lanes.bad) > CLOSE * lanes.moved(lanes.good))
         if not rows.size:
             break
         middle = np.sqrt(lanes.good[rows] * lanes.bad[rows])
-        passes = _pass(needs, few, lanes.take(rows), middle)
-        lanes.good[rows] = np.where(passes, middle, lanes.good[rows])
-        lanes.bad[rows] = np.where(passes, lanes.bad[rows], middle)
+        helped, whole = asked.at(lanes.take(rows), middle)
+        lanes.bad[rows] = np.where(helped, lanes.bad[rows], middle)
+        lanes.good[rows] = np.where(helped, middle, lanes.good[rows])
+        lanes.whole[rows] = np.where(helped, whole, lanes.whole[rows])
     return lanes
 
 
-def _best(needs: Needs, few: Columns, lanes: _Lanes, rows: np.ndarray) -> dict[int, Change]:
-    """Of each design the smallest change that holds: it passes, and with a little less it does not."""
-    away = np.where(lanes.good > lanes.start, 1.0, -1.0)
+def _best(asked: _Asked, lanes: _Lanes, rows: np.ndarray) -> dict[int, Change]:
+    """Of each design the smallest change that holds: it passes, and with a little less of it it does not."""
+    if not len(lanes.row):
+        return {}
+    away = np.sign(lanes.end - lanes.start)
     after = np.array([_rounded(good, side) for good, side in zip(lanes.good, away)])
-    beyond = (after - lanes.end) * away > 0  # rounding led past the bound
-    after = np.where(beyond, lanes.good, after)
-    holds = _pass(needs, few, lanes, after) & ~_pass(needs, few, lanes, lanes.start + LESS * (after - lanes.start))
-    ratio = np.abs(np.log(after / lanes.start))
+    after = np.where((after - lanes.end) * away > 0, lanes.good, after)  # rounding led past the bound
+    holds = asked.at(lanes, after)[1] & ~asked.at(lanes, lanes.start + LESS * (after - lanes.start))[1]
     best: dict[int, Change] = {}
-    for lane in np.lexsort((lanes.knob, ratio)):
+    for lane in np.lexsort((lanes.knob, lanes.moved(after))):
         row = int(rows[lanes.row[lane]])
         if holds[lane] and row not in best:
             best[row] = Change(KNOBS[lanes.knob[lane]].path, float(lanes.start[lane]), float(after[lane]))

@@ -6,10 +6,10 @@ ellipse in direction cosines, narrower along the radius (meridional) than across
 """
 
 from dataclasses import dataclass
+from typing import Literal
 
 import numpy as np
 
-from optics.image.field import Mapping
 from optics.image.objective import accepted_fraction, chief_ray_sine
 from optics.spec import not_negative, require, within
 from optics.units import Numbers, rad_from_deg
@@ -23,7 +23,7 @@ class EdgeCone:
     sagittal_ratio: np.ndarray
 
 
-def edge_cone(*, half_angle_deg: Numbers, mapping: Mapping) -> EdgeCone:
+def edge_cone(*, half_angle_deg: Numbers, mapping: Literal["tan", "f_theta"]) -> EdgeCone:
     """The cone at the image of a point seen at an angle from the axis, against that on axis.
 
     With the mapping h(w) of unit focal length: cos w dw/dh along the radius, sin w/h across it. "tan": cos^3 w and
@@ -42,7 +42,7 @@ def edge_cone(*, half_angle_deg: Numbers, mapping: Mapping) -> EdgeCone:
     return EdgeCone(np.cos(w), np.sinc(w / np.pi))
 
 
-def edge_light_ratio(*, half_angle_deg: Numbers, mapping: Mapping) -> np.ndarray:
+def edge_light_ratio(*, half_angle_deg: Numbers, mapping: Literal["tan", "f_theta"]) -> np.ndarray:
     """Light on the image of an evenly bright target seen at an angle from the axis, over that on axis.
 
     The product of the cone's two ratios: cos^4 w for "tan", cos w sin w/w for "f_theta", which keeps more.
@@ -72,7 +72,7 @@ def edge_acceptance_ratio(
     return accepted_fraction(core_na=core_na, cone_sine=cone_sine, tilt_sine=tilt) / straight
 
 
-def edge_f_number(*, f_number: Numbers, half_angle_deg: Numbers, mapping: Mapping) -> np.ndarray:
+def edge_f_number(*, f_number: Numbers, half_angle_deg: Numbers, mapping: Literal["tan", "f_theta"]) -> np.ndarray:
     """Working f-number along the radius at an angle from the axis, where it is highest: N over the meridional ratio.
 
     For the contrast of bars that lie across the radius; along it take the sagittal ratio.

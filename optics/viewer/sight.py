@@ -5,10 +5,11 @@ a plane or the wall of a bore. Image and target are counted upright, both from t
 """
 
 from dataclasses import dataclass
+from typing import Literal
 
 import numpy as np
 
-from optics.image.field import Mapping, field_half_angle_deg, refracted_half_angle_deg
+from optics.image.field import field_half_angle_deg, refracted_half_angle_deg
 from optics.image.objective import apparent_distance_mm
 from optics.spec import positive
 from optics.units import Flags, Numbers, rad_from_deg
@@ -35,7 +36,7 @@ def sight_on_plane(
     x_mm: Numbers,
     y_mm: Numbers,
     image_distance_mm: Numbers,
-    mapping: Mapping,
+    mapping: Literal["tan", "f_theta"],
     distance_mm: Numbers,
     pupil_depth_mm: Numbers,
     index: Numbers,
@@ -68,7 +69,7 @@ def sight_on_bore(
     x_mm: Numbers,
     y_mm: Numbers,
     image_distance_mm: Numbers,
-    mapping: Mapping,
+    mapping: Literal["tan", "f_theta"],
     bore_mm: Numbers,
     pupil_depth_mm: Numbers,
     index: Numbers,

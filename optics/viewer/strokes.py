@@ -6,14 +6,15 @@ it by its share, so that fine detail fades instead of breaking up.
 
 import numpy as np
 
+from optics.spec import positive, require, within
 from optics.units import AnyUnit
 
 # Letters five wide and seven high, one row of bits from the top down
 LETTERS = {
     "0": (14, 17, 19, 21, 25, 17, 14), "1": (4, 12, 4, 4, 4, 4, 14), "2": (14, 17, 1, 2, 4, 8, 31), "3": (31, 2, 4, 2, 1, 17, 14),
     "4": (2, 6, 10, 18, 31, 2, 2), "5": (31, 16, 30, 1, 1, 17, 14), "6": (6, 8, 16, 30, 17, 17, 14), "7": (31, 1, 2, 4, 8, 8, 8),
-    "8": (14, 17, 17, 14, 17, 17, 14), "9": (14, 17, 17, 15, 1, 2, 12), ".": (0, 0, 0, 0, 0, 12, 12), "m": (0, 0, 26, 21, 21, 21, 21),
-    " ": (0, 0, 0, 0, 0, 0, 0),
+    "8": (14, 17, 17, 14, 17, 17, 14), "9": (14, 17, 17, 15, 1, 2, 12), ".": (0, 0, 0, 0, 0, 12, 12),
+    "m": (0, 0, 26, 21, 21, 21, 21), " ": (0, 0, 0, 0, 0, 0, 0),
 }  # fmt: skip
 ADVANCE = 6  # columns from letter to letter
 
@@ -30,22 +31,28 @@ def stroke(
 
     `ends_mm` [2, xy]; `thick_mm` at its two ends; `depth` is the cover of a stroke wider than a pixel.
     """
-    step = width_mm / len(cover)
-    reach = 0.5 * max(thick_mm) + step
-    low, high = ends_mm.min(axis=0) - reach, ends_mm.max(axis=0) + reach
-    first = np.clip(np.floor((low + width_mm / 2) / step).astype(int), 0, len(cover))
-    last = np.clip(np.ceil((high + width_mm / 2) / step).astype(int), 0, len(cover))
-    if (last <= first).any():
+    pixels = len(cover)
+    step = width_mm / pixels
+    (x0, y0), (x1, y1) = ends_mm.tolist()
+    reach, half = 0.5 * max(thick_mm) + step, 0.5 * width_mm
+    left, right = (
+        max(int((min(x0, x1) - reach + half) / step), 0),
+        min(int((max(x0, x1) + reach + half) / step) + 1, pixels),
+    )
+    low, high = (
+        max(int((min(y0, y1) - reach + half) / step), 0),
+        min(int((max(y0, y1) + reach + half) / step) + 1, pixels),
+    )
+    if left >= right or low >= high:
         return
-    at = middles_mm(width_mm=width_mm, pixels=len(cover))
-    x, y = at[None, first[0] : last[0]] - ends_mm[0, 0], at[first[1] : last[1], None] - ends_mm[0, 1]
-    (dx, dy), length2 = ends_mm[1] - ends_mm[0], max(float(((ends_mm[1] - ends_mm[0]) ** 2).sum()), 1e-30)
-    along = np.clip((x * dx + y * dy) / length2, 0.0, 1.0)
-    away = np.hypot(x - along * dx, y - along * dy)
+    x = (np.arange(left, right) + 0.5) * step - half - x0
+    y = ((np.arange(low, high) + 0.5) * step - half - y0)[:, None]
+    dx, dy = x1 - x0, y1 - y0
+    along = np.minimum(np.maximum((x * dx + y * dy) / max(dx * dx + dy * dy, 1e-30), 0.0), 1.0)
     thick = thick_mm[0] + along * (thick_mm[1] - thick_mm[0])
-    share = np.clip((0.5 * thick - away) / step + 0.5, 0.0, 1.0)
-    share = np.minimum(share, thick / step) if min(thick_mm) < step else share
-    part = cover[first[1] : last[1], first[0] : last[0]]
+    share = (0.5 * thick - np.hypot(x - along * dx, y - along * dy)) / step + 0.5
+    share = np.minimum(np.maximum(share, 0.0), np.minimum(thick / step, 1.0))  # never more than it would cover
+    part = cover[low:high, left:right]
     np.maximum(part, depth * share, out=part)
 
 
@@ -90,3 +97,26 @@ def mottle(*, pixels: int, slope: float, seed: int) -> AnyUnit:
     radius[0, 0] = np.inf
     field = np.fft.irfft2(wave * radius**-slope, (pixels, pixels))
     return field / field.std()
+
+
+def dark_level(*, contrast: float) -> float:
+    """Reflectance of a feature of Michelson contrast C on a surround of 1: (1 - C)/(1 + C).
+
+    >>> round(dark_level(contrast=0.5), 6)
+    0.333333
+    """
+    within(0.0, 1.0, contrast=contrast)
+    return (1.0 - contrast) / (1.0 + contrast)
+
+
+def checked_dark_level(width_mm: float, pixels: int, contrast: float) -> float:
+    """`dark_level`, once width and pixels are found possible."""
+    positive(width_mm=width_mm)
+    require("pixels", pixels, "from 16 to 8192", 16 <= pixels <= 8192)
+    return dark_level(contrast=contrast)
+
+
+def frozen(array: np.ndarray) -> np.ndarray:
+    """The same array, closed to changes: it is kept for the next picture."""
+    array.setflags(write=False)
+    return array

@@ -10,111 +10,18 @@ from functools import lru_cache
 
 import numpy as np
 
-from optics.image.contrast import three_bar_lp_mm
-from optics.spec import positive, require, within
+from optics.spec import OutOfRange
 from optics.units import AnyUnit
-from optics.viewer.strokes import box, middles_mm, mottle, path, text
+from optics.viewer.bars import bar_target
+from optics.viewer.strokes import checked_dark_level, frozen, middles_mm, mottle, path
 
-COARSEST_SHARE = 1 / 34  # width of the coarsest bar over the width of the picture
-ROWS = (2, 3, 5)  # patterns in each row of the bar target, coarse to fine
 GOLDEN_RAD = 2.399963229728653
-
-
-def dark_level(*, contrast: float) -> float:
-    """Reflectance of a feature of Michelson contrast C on a surround of 1: (1 - C)/(1 + C).
-
-    >>> round(dark_level(contrast=0.5), 6)
-    0.333333
-    """
-    within(0.0, 1.0, contrast=contrast)
-    return (1.0 - contrast) / (1.0 + contrast)
-
-
-def _checked(width_mm: float, pixels: int, contrast: float) -> float:
-    positive(width_mm=width_mm)
-    require("pixels", pixels, "from 16 to 8192", 16 <= pixels <= 8192)
-    return dark_level(contrast=contrast)
-
-
-def bar_frequencies_lp_mm(*, width_mm: float) -> AnyUnit:
-    """Line pairs per mm of the bar target's patterns: every second element of the three-bar series, from coarse on."""
-    positive(width_mm=width_mm)
-    first = int(np.ceil(6.0 * np.log2(0.5 / (COARSEST_SHARE * width_mm))))
-    steps = first + 2 * np.arange(sum(ROWS))
-    return three_bar_lp_mm(group=steps // 6, element=steps % 6 + 1)
-
-
-@lru_cache(maxsize=4)
-def bar_target(*, width_mm: float, pixels: int, contrast: float) -> np.ndarray:
-    """Three bars across and three upright for each of ten frequencies, with their line pairs per mm, and a ruler.
-
-    Bars are five times as long as wide. References: mil_std_150a (proportions and frequencies).
-    """
-    dark = _checked(width_mm, pixels, contrast)
-    ink, frequencies = np.zeros((pixels, pixels)), iter(bar_frequencies_lp_mm(width_mm=width_mm))
-    letters, top = width_mm / 46, 0.30 * width_mm
-    for count in ROWS:
-        row = [next(frequencies) for _ in range(count)]
-        bars = [0.5 / f for f in row]
-        room = [max(11.0 * bar, len(_three(f)) * letters) for bar, f in zip(bars, row)]
-        gap = min(0.06 * width_mm, (0.66 * width_mm - sum(room)) / max(count - 1, 1))
-        left = -0.5 * (sum(room) + gap * (count - 1))
-        for f, bar, wide in zip(row, bars, room):
-            start = left + 0.5 * (wide - 11.0 * bar)
-            _three_bars(ink, width_mm, bar, start, top - 5.0 * bar)
-            said = _three(f)
-            text(cover=ink, width_mm=width_mm, said=said, left_mm=left + 0.5 * (wide - len(said) * letters * 6 / 7),
-                 low_mm=top - 5.0 * bars[0] - 1.6 * letters, high_mm=letters)  # fmt: skip
-            left += wide + gap
-        top -= 5.0 * bars[0] + 3.4 * letters
-    _ruler(ink, width_mm, top - 0.6 * letters, letters)
-    return _frozen(1.0 - (1.0 - dark) * np.minimum(ink, 1.0))
-
-
-def _three(f: float) -> str:
-    return f"{f:.3g}"
-
-
-def _three_bars(ink: AnyUnit, width_mm: float, bar: float, left: float, low: float) -> None:
-    """Upright bars, then level ones a bar's width beside them."""
-    for place in (0, 2, 4):
-        box(cover=ink, width_mm=width_mm, left_mm=left + place * bar, low_mm=low, wide_mm=bar, high_mm=5 * bar)
-        box(
-            cover=ink, width_mm=width_mm, left_mm=left + 6 * bar, low_mm=low + place * bar, wide_mm=5 * bar, high_mm=bar
-        )
-
-
-def _ruler(ink: AnyUnit, width_mm: float, top: float, letters: float) -> None:
-    """A line with ten ticks, and how long it is."""
-    power = 10.0 ** np.floor(np.log10(0.4 * width_mm))
-    length = max(step * power for step in (1, 2, 5) if step * power <= 0.4 * width_mm)
-    line, said = width_mm / 240, f"{length:g} mm"
-    left = -0.5 * length
-    box(cover=ink, width_mm=width_mm, left_mm=left, low_mm=top - line, wide_mm=length, high_mm=line)
-    for tick in range(11):
-        high = letters * (1.0 if tick % 5 == 0 else 0.6)
-        box(
-            cover=ink,
-            width_mm=width_mm,
-            left_mm=left + tick * length / 10 - line / 2,
-            low_mm=top - line - high,
-            wide_mm=line,
-            high_mm=high,
-        )
-    text(
-        cover=ink,
-        width_mm=width_mm,
-        said=said,
-        left_mm=-0.43 * len(said) * letters,
-        low_mm=top - 2.6 * letters,
-        high_mm=letters,
-    )
 
 
 @lru_cache(maxsize=4)
 def crack_network(*, width_mm: float, pixels: int, contrast: float, seed: int) -> np.ndarray:
     """Branching cracks on a mottled, scaled surface; from a fiftieth of the width down to nothing."""
-    dark = _checked(width_mm, pixels, contrast)
+    dark = checked_dark_level(width_mm, pixels, contrast)
     rng = np.random.default_rng(seed)
     cover = np.zeros((pixels, pixels))
     turn = rng.uniform(0, 2 * np.pi)
@@ -136,7 +43,7 @@ def crack_network(*, width_mm: float, pixels: int, contrast: float, seed: int) -
         + 0.07 * mottle(pixels=pixels, slope=1.3, seed=seed + 1)
         + 0.035 * mottle(pixels=pixels, slope=0.6, seed=seed + 2)
     )
-    return _frozen(np.clip(scale, 0.4, 1.3) * (1.0 - (1.0 - dark) * cover))
+    return frozen(np.clip(scale, 0.4, 1.3) * (1.0 - (1.0 - dark) * cover))
 
 
 def _crack(cover, width_mm, rng, start, angle, thick, length, order) -> None:
@@ -165,7 +72,7 @@ def _crack(cover, width_mm, rng, start, angle, thick, length, order) -> None:
 @lru_cache(maxsize=4)
 def gear_edge(*, width_mm: float, pixels: int, contrast: float, seed: int) -> np.ndarray:
     """A ground tooth flank with pits along its pitch line, its rounded tip edge, and the dark gap beyond."""
-    dark = _checked(width_mm, pixels, contrast)
+    dark = checked_dark_level(width_mm, pixels, contrast)
     rng = np.random.default_rng(seed)
     at = middles_mm(width_mm=width_mm, pixels=pixels) / width_mm
     turn = 0.22
@@ -188,7 +95,7 @@ def gear_edge(*, width_mm: float, pixels: int, contrast: float, seed: int) -> np
     behind = 0.05 + 0.30 * np.clip((v - edge - 0.13) * 6.0, 0.0, 1.0) * (1 - 0.4 * np.clip((v - edge - 0.2) * 4, 0, 1))
     pits, halo = _pits(width_mm, pixels, rng, turn)
     flank = flank * (1.0 + 0.06 * halo) * (1.0 - (1.0 - dark) * pits) + 0.22 * chamfer
-    return _frozen(np.clip(flank * inside + behind * (1.0 - inside), 0.02, 1.3))
+    return frozen(np.clip(flank * inside + behind * (1.0 - inside), 0.02, 1.3))
 
 
 def _pits(width_mm, pixels, rng, turn) -> tuple[AnyUnit, AnyUnit]:
@@ -210,7 +117,7 @@ def _pits(width_mm, pixels, rng, turn) -> tuple[AnyUnit, AnyUnit]:
 @lru_cache(maxsize=4)
 def vessel_tree(*, width_mm: float, pixels: int, contrast: float, seed: int) -> np.ndarray:
     """Vessels that branch and thin under a moist surface: daughters by Murray's cube law, fainter as they thin."""
-    dark = _checked(width_mm, pixels, contrast)
+    dark = checked_dark_level(width_mm, pixels, contrast)
     rng = np.random.default_rng(seed)
     cover = np.zeros((pixels, pixels))
     turn = rng.uniform(0, 2 * np.pi)
@@ -223,16 +130,16 @@ def vessel_tree(*, width_mm: float, pixels: int, contrast: float, seed: int) -> 
         + 0.05 * mottle(pixels=pixels, slope=1.6, seed=seed + 1)
         + 0.012 * mottle(pixels=pixels, slope=0.3, seed=seed + 2)
     )
-    return _frozen(np.clip(surface, 0.5, 1.3) * (1.0 - (1.0 - dark) * cover))
+    return frozen(np.clip(surface, 0.5, 1.3) * (1.0 - (1.0 - dark) * cover))
 
 
 def _vessel(cover, width_mm, rng, start, angle, thick) -> None:
     """A stretch of vessel up to where it branches, then its branches."""
-    if thick < width_mm / 300 or np.abs(start).max() > 0.85 * width_mm:
+    if thick < width_mm / 280 or np.abs(start).max() > 0.76 * width_mm:
         return
-    step = max(0.6 * thick, width_mm / 160)
+    step = max(0.6 * thick, width_mm / 110)
     count = max(int((thick * rng.uniform(6, 11) + width_mm * rng.uniform(0.03, 0.07)) / step), 3)
-    heading = angle + np.cumsum(rng.normal(0, 0.16 * np.sqrt(step * 60 / width_mm), count))
+    heading = angle + np.cumsum(rng.normal(0, 0.16 * np.sqrt(60 * step / width_mm), count))
     points = start + np.concatenate(
         [np.zeros((1, 2)), np.cumsum(step * np.stack([np.cos(heading), np.sin(heading)], axis=1), axis=0)]
     )
@@ -254,13 +161,8 @@ def _vessel(cover, width_mm, rng, start, angle, thick) -> None:
 
 def flat_field(*, width_mm: float, pixels: int) -> np.ndarray:
     """The target's own surface and nothing on it."""
-    _checked(width_mm, pixels, 0.0)
+    checked_dark_level(width_mm, pixels, 0.0)
     return np.ones((pixels, pixels))
-
-
-def _frozen(array: np.ndarray) -> np.ndarray:
-    array.setflags(write=False)
-    return array
 
 
 SUBJECTS = {
@@ -290,7 +192,5 @@ def subject_reflectance(*, subject: str, width_mm: float, pixels: int, contrast:
 
 def require_subject(subject: str) -> None:
     """Refuse an unknown subject with the known ones."""
-    from optics.spec import OutOfRange
-
     if subject not in SUBJECTS:
         raise OutOfRange(f"subject is {subject!r}; it must be one of {', '.join(SUBJECTS)}.")

@@ -11,7 +11,8 @@ from optics.spec import OutOfRange
 from optics.units import mm_from_um
 from optics.viewer import mosaic as cores_of
 from optics.viewer.off_axis import edge_acceptance_ratio, edge_cone, edge_f_number, edge_light_ratio, edge_snr
-from optics.viewer.rendering import read_out, render, render_chip, smoothed
+from optics.viewer.rendering import render, render_chip
+from optics.viewer.sensor import read_out, smoothed
 from optics.viewer.sight import sight_on_bore, sight_on_plane, target_magnification
 from optics.viewer.spots import kept_share, smallest_spot_um
 
@@ -25,10 +26,10 @@ PLAIN = {
     "rows": 330, "columns": 330, "magnification": 0.05, "lit_level": 1.0, "full_well_e": 1e9, "dark_noise_e": 0.0,
     "gain_dn_e": 1.0, "noise": False, "seed": 1,
 }  # fmt: skip
-CHIP = {
-    name: PLAIN[name] for name in ("light_ratio", "sample_um", "lens_lp_mm", "lens_mtf", "defocus_um", "magnification", "lit_level",
-                                   "full_well_e", "dark_noise_e", "gain_dn_e", "noise", "seed")
-}  # fmt: skip
+BUNDLE_ONLY = {
+    *"image_um pitch_um core_um turn_deg jitter_share dead_fraction transmission_spread exchange_share veil_ratio".split()
+}
+CHIP = {name: value for name, value in PLAIN.items() if name not in {*BUNDLE_ONLY, "pixel_um", "rows", "columns"}}
 FLAT = np.ones((SAMPLES, SAMPLES))
 
 
@@ -512,8 +513,15 @@ def test_a_tilted_plane_is_met_by_tracing_the_ray():
 
 def test_a_plane_beyond_its_horizon_is_not_met():
     seen = sight_on_plane(
-        x_mm=np.array([0.9, -0.9]), y_mm=0.0, image_distance_mm=1.0, mapping="tan", distance_mm=10.0, pupil_depth_mm=0.0, index=1.0, tilt_deg=60.0
-    )  # fmt: skip
+        x_mm=np.array([0.9, -0.9]),
+        y_mm=0.0,
+        image_distance_mm=1.0,
+        mapping="tan",
+        distance_mm=10.0,
+        pupil_depth_mm=0.0,
+        index=1.0,
+        tilt_deg=60.0,
+    )
     assert seen.meets.tolist() == [False, True]
     assert np.isfinite(seen.u_mm).all()
 
@@ -521,9 +529,15 @@ def test_a_plane_beyond_its_horizon_is_not_met():
 def test_a_bore_is_seen_all_around_and_its_far_end_not():
     turn = np.linspace(0, 2 * np.pi, 9)[:-1]
     seen = sight_on_bore(
-        x_mm=0.4 * np.cos(turn), y_mm=0.4 * np.sin(turn), image_distance_mm=1.0, mapping="f_theta", bore_mm=12.0, pupil_depth_mm=0.5,
-        index=1.0, farthest_mm=200.0,
-    )  # fmt: skip
+        x_mm=0.4 * np.cos(turn),
+        y_mm=0.4 * np.sin(turn),
+        image_distance_mm=1.0,
+        mapping="f_theta",
+        bore_mm=12.0,
+        pupil_depth_mm=0.5,
+        index=1.0,
+        farthest_mm=200.0,
+    )
     assert seen.v_mm == pytest.approx(np.full(8, (6.0 - 0.5 * np.tan(0.4)) / np.tan(0.4)))
     assert np.exp(1j * seen.u_mm / 6.0) == pytest.approx(np.exp(1j * turn))
     middle = sight_on_bore(

@@ -5,6 +5,7 @@ import pytest
 
 from optics.spec import OutOfRange
 from optics.viewer import strokes, subjects
+from optics.viewer.bars import bar_frequencies_lp_mm
 
 GIVEN = {"width_mm": 20.0, "pixels": 400, "contrast": 0.5, "seed": 4}
 MADE = {"cracks": subjects.crack_network, "gear": subjects.gear_edge, "vessels": subjects.vessel_tree}
@@ -51,8 +52,8 @@ def test_contrast_is_michelsons():
     for contrast in (0.2, 0.8):
         bars = subjects.bar_target(width_mm=20.0, pixels=600, contrast=contrast)
         assert (bars.max() - bars.min()) / (bars.max() + bars.min()) == pytest.approx(contrast, abs=1e-9)
-    assert subjects.dark_level(contrast=0.0) == 1.0
-    assert subjects.dark_level(contrast=1.0) == 0.0
+    assert strokes.dark_level(contrast=0.0) == 1.0
+    assert strokes.dark_level(contrast=1.0) == 0.0
 
 
 # Bars
@@ -61,7 +62,7 @@ def test_contrast_is_michelsons():
 def test_bars_follow_the_three_bar_series():
     """2^(G + (E - 1)/6) with whole G and E (MIL-STD-150A), a third of an octave apart."""
     for width_mm in (3.0, 20.0, 111.0):
-        f = subjects.bar_frequencies_lp_mm(width_mm=width_mm)
+        f = bar_frequencies_lp_mm(width_mm=width_mm)
         assert 6 * np.log2(f) == pytest.approx(np.rint(6 * np.log2(f)), abs=1e-9)
         assert f[1:] / f[:-1] == pytest.approx(np.full(9, 2 ** (1 / 3)))
         assert 1.0 <= f[0] * 2 * width_mm / 34 < 2 ** (1 / 6)
@@ -71,7 +72,7 @@ def test_the_coarsest_bars_have_their_period_and_are_five_times_as_long_as_wide(
     width_mm, pixels = 20.0, 2000
     bars = subjects.bar_target(width_mm=width_mm, pixels=pixels, contrast=1.0)
     step = width_mm / pixels
-    bar = 0.5 / subjects.bar_frequencies_lp_mm(width_mm=width_mm)[0]
+    bar = 0.5 / bar_frequencies_lp_mm(width_mm=width_mm)[0]
     rows = np.flatnonzero((bars < 0.5).any(axis=1))
     top = rows[-1]
     line = bars[top - int(0.5 * bar / step)] < 0.5  # through the upright bars and one level bar
