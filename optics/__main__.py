@@ -11,7 +11,8 @@ from optics.spec import OutOfRange
 COMMANDS = {
     "list": "the demo designs and the presets",
     "size": "light on the target, smallest detail, fit and caveats of one design",
-    "check": "the published values that the formulas are held against",
+    "check": "the published values that the formulas are held against, or one design traced ray by ray",
+    "draw": "one picture of one design, as PNG, SVG or PDF",
 }
 
 

@@ -329,3 +329,9 @@ FORMS: dict[str, dict[str, tuple[type[Spec], dict[str, Any]]]] = {
         "eye": (EyeViewer, {"eye": {"preset": "eyepiece_25mm"}}),
     },
 }
+
+# What a change of one form means for another table: a chip needs no viewer, a bundle needs one.
+COMPANIONS: dict[tuple[str, str], dict[str, dict[str, Any] | None]] = {
+    ("image.form", "chip"): {"viewer": None},
+    ("image.form", "bundle"): {"viewer": {"form": "camera", "camera": {"preset": "mono_3um45"}}},
+}

@@ -14,7 +14,7 @@ from typing import Any
 
 from pydantic import BaseModel, ValidationError
 
-from optics.fiberscope import FORMS, Fiberscope
+from optics.fiberscope import COMPANIONS, FORMS, Fiberscope
 from optics.spec import OutOfRange, refusal
 from optics.tables import PRESETS, Sourced, nearest, preset, preset_names, read_toml
 
@@ -187,8 +187,18 @@ def edited(document: Document, settings: Mapping[str, Any]) -> Document:
         else:
             if last == "form" and holder.get("form", value) != value:
                 _change_form(holder, path.removesuffix(".form"), value)
+                for other, table in COMPANIONS.get((path, value), {}).items():
+                    _put(fresh, other, table)
             holder[last] = copy.deepcopy(value)
     return fresh
+
+
+def _put(document: Document, key: str, table: dict[str, Any] | None) -> None:
+    """A top-level table that another form needs, where there is none; or none, where it has no place (None)."""
+    if table is None:
+        document.pop(key, None)
+    else:
+        document.setdefault(key, copy.deepcopy(table))
 
 
 def _holder(document: Document, path: str) -> tuple[Any, str]:

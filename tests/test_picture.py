@@ -223,6 +223,7 @@ def test_an_eye_sees_luminance_without_noise():
     told = float(evaluate(columns([design])).value["seen_cd_m2"][0])
     alive = 1 - one.dead / one.cores
     assert round_mean(one, 0.2) == pytest.approx(told * alive, rel=0.03)
+    assert any("is resolved on axis" in said for said in one.words)
 
 
 def test_a_bore_is_dark_down_its_axis_and_has_no_scale():
@@ -262,6 +263,12 @@ def test_a_bundle_of_too_many_cores_shows_its_middle_and_says_so():
     picture = view_of(scope("turbine_casing", image__bundle__diameter_mm=5.0), **{**RAW, "width_px": 600})
     assert 190_000 < picture.cores <= 200_500
     assert any(said.startswith("Only the middle") for said in picture.words)
+
+
+def test_a_diameter_that_is_solved_for_is_the_chains():
+    design = scope(image__bundle__diameter_mm="solve", body__section__outer_diameter_mm=4.2)
+    picture = view_of(design, **RAW)
+    assert picture.field_mm == pytest.approx(2 * size(design).target.field_radius_mm, rel=1e-6)
 
 
 def test_the_same_seed_gives_the_same_picture():

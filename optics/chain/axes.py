@@ -16,8 +16,9 @@ from optics.chain.evaluate import STEPS, Figures
 from optics.chain.fit import TABLES as SECTION
 from optics.chain.fit import fit
 from optics.chain.light import Light, light
+from optics.chain.solve import solved
 from optics.chain.target import Lit, field_of_view, pupil_depth_mm, target
-from optics.fiberscope import RULES
+from optics.fiberscope import RULES, SOLVE
 from optics.spec import OutOfRange
 from optics.units import Flags
 
@@ -66,7 +67,10 @@ def holding(columns: Columns) -> Flags:
             if found is None:
                 there[:] = False
                 break
-            present = found != "" if found.dtype == object else ~np.isnan(found).reshape(columns.count, -1).all(axis=1)
+            texts = found.dtype == object
+            present = (
+                (found != "") & (found != SOLVE) if texts else ~np.isnan(found).reshape(columns.count, -1).all(axis=1)
+            )
             there &= present
             values.append(found)
         rows = np.flatnonzero(there)
@@ -81,6 +85,7 @@ def evaluate_axes(columns: Columns, progress: Progress | None = None) -> tuple[F
     `progress` is called with the share done after each block; when it returns False the rest is left out and its numbers
     are nan. Raises OutOfRange where a stage refuses a design.
     """
+    columns = solved(columns)
     codes = _codes(columns)
     seen = field_of_view(columns)
     body, ports, ports_row = _fitted(columns, codes, seen)
@@ -97,6 +102,7 @@ def evaluate_axes(columns: Columns, progress: Progress | None = None) -> tuple[F
     value.update({name: found[landed_row] for name, found in landed.value.items()})
     value.update({name: found[told_row] for name, found in told.items()})
     value["frame_hz"] = 1.0 / value["exposure_s"]
+    value["guide_diameter_mm"] = columns["guide.bundle.diameter_mm"]
     after = {step: lit.after_lm[step][lit_row] for step in STEPS if step in lit.after_lm}
     return Figures({**seen, **body, **value}, after, {}), ready[told_row]
 

@@ -139,6 +139,7 @@ def way_back(columns, target_w_m2_nm, seen):
         "pitch_at_target_mm": mm_from_um(pitch) / seen["image_over_target_ratio"],
         "lattice_limit_lp_mm": limit * seen["image_over_target_ratio"],
         "snr": np.where(eye, np.nan, numbers["snr"]),
+        "signal_e": np.where(eye, np.nan, numbers["signal_e"]),
         "exposure_s": np.where(eye, np.nan, numbers["exposure_s"]),
         "near_mm": np.maximum((depth_of.near_mm - depth) * index, 0.0),
         "far_mm": (depth_of.far_mm - depth) * index,
@@ -205,6 +206,7 @@ def _signal(columns, bundle, core_w_m2_nm, pixel_um, pitch_um, core_um, cone):
             **noise, transmission_spread=0.0, dark_noise_e=camera["dark_noise_e"], gain_dn_e=camera["gain_dn_e"]
         ),
         "exposure_s": time,
+        "signal_e": noise["photons"] * camera["quantum_efficiency"],
     }
 
 

@@ -20,7 +20,7 @@ def add_design(parser: argparse.ArgumentParser) -> None:
         action="append",
         default=[],
         metavar="PATH=VALUE",
-        help="change one value, as in guide.bundle.length_m=3; may be repeated",
+        help="change one value, as in guide.bundle.length_m=3 (absent removes it); may be repeated",
     )
 
 
@@ -30,6 +30,7 @@ def opened(options: argparse.Namespace) -> presets.Design:
     if not options.settings:
         return design
     settings = dict(presets.parse_setting(text) for text in options.settings)
+    settings = {path: None if value == "absent" else value for path, value in settings.items()}
     return presets.resolve(presets.edited(design.document, settings), str(options.design))
 
 

@@ -19,7 +19,7 @@ from optics.viewer.sensor import smoothed
 from optics.viewer.subjects import require_subject
 
 MOST_CORES, MOST_SAMPLES, LEAST_SAMPLES = 200_000, 2048, 800
-SAMPLES_PER_PITCH = 5.0
+SAMPLES_PER_PITCH, SAMPLES_PER_PIXEL = 5.0, 2.5  # of the subject: for each core of a bundle, each pixel of a sensor
 MARGIN = 1.05  # width of what is drawn over the image's
 JITTER_SHARE = 0.02  # rms place error of a core over the pitch: a house choice, less where cores would touch
 WHITE_SHARE = 0.995  # of the pixels inside the image that are no brighter than white
@@ -81,7 +81,8 @@ def view_of(
     image_um = _image_um(back)
     rows, columns, summed, pixel_um = _frame(back, image_um, width_px)
     side_um = MARGIN * max(image_um if back.bundle else 0.0, pixel_um * max(rows, columns))
-    samples = int(np.clip(SAMPLES_PER_PITCH * side_um / back.pitch_um, LEAST_SAMPLES, MOST_SAMPLES))
+    finest = SAMPLES_PER_PITCH / back.pitch_um if back.bundle else SAMPLES_PER_PIXEL / pixel_um
+    samples = int(np.clip(finest * side_um, LEAST_SAMPLES, MOST_SAMPLES))
     front = front_of(fiberscope, back, subject=subject, side_um=side_um, samples=samples, seed=seed)
     view = _rendered(back, front, image_um, pixel_um, rows, columns, summed, noise, seed)
     out = None

@@ -8,18 +8,17 @@ from optics.chain.columns import Columns, columns
 from optics.chain.evaluate import evaluate
 from optics.chain.fit import fit
 from optics.chain.light import Light, light, medium_index
+from optics.chain.solve import solved
 from optics.chain.target import field_of_view, port_objects, pupil_depth_mm, target
 from optics.chain.way_back import Parts, way_back
 from optics.fiberscope import Fiberscope
 from optics.image.contrast import aberration_mtf, cutoff_lp_mm, diffraction_mtf
 from optics.image.field import Mapping
 from optics.image.lattice import core_area_fraction
-from optics.image.objective import apparent_distance_mm, magnification
 from optics.image.tip import mirror_image
 from optics.scene.ports import Port
 from optics.spectrum import GRID_NM, chromaticity, luminous_flux_lm, on_grid
 from optics.units import AnyUnit
-from optics.viewer.sight import target_magnification
 
 LENS_NODES = 400
 # CIE 1931 XYZ to linear red, green, blue of sRGB (source: iec_61966_2_1)
@@ -86,18 +85,16 @@ class Back:
 
 def back_of(fiberscope: Fiberscope) -> Back:
     """Everything that does not depend on the subject, by the chain's own stages."""
-    table = columns([fiberscope])
+    table = solved(columns([fiberscope]))
     figures, lit, seen = evaluate(table), light(table), field_of_view(table)
     value = {name: float(found[0]) for name, found in figures.value.items()}
     placed = fit(table, seen["image_mm"])[1]
     landed = target(table, lit, placed, seen)
     lux = value["center_lux"]
     falling, lux = (landed.center_w_m2_nm, lux) if lux > 0 else _even(lit, value)
-    size = magnification(focal_mm=table["image.objective.focal_mm"], focus_mm=seen["focus_from_pupil_mm"])
-    parts, numbers = way_back(table, falling, seen, size)
+    parts, numbers = way_back(table, falling, seen)
     bundle, eye = bool(parts.bundle[0]), bool(parts.eye[0])
     index, depth = float(medium_index(table)[0]), float(pupil_depth_mm(table)[0])
-    apparent = apparent_distance_mm(distance_mm=fiberscope.scene.target.distance_mm, pupil_depth_mm=depth, index=index)
     lens_lp_mm, lens_mtf = _lens(parts)
     sensor = _sensor(table, parts, bundle, eye)
     exposure = value["exposure_s"]
@@ -115,7 +112,7 @@ def back_of(fiberscope: Fiberscope) -> Back:
         mirrored=tip is not None and mirror_image(view_deg=tip.view_deg, reflections=tip.reflections),
         image_mm=float(min(seen["image_mm"][0], table.get("viewer.eye.field_stop_mm", np.inf)[0] if eye else np.inf)),
         image_distance_mm=value["image_distance_mm"],
-        magnification=float(target_magnification(image_distance_mm=value["image_distance_mm"], distance_mm=apparent)),
+        magnification=value["image_over_target_ratio"],
         mapping=fiberscope.image.objective.mapping,
         distance_mm=fiberscope.scene.target.distance_mm,
         pupil_depth_mm=depth,

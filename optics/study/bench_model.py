@@ -13,6 +13,7 @@ import numpy as np
 from optics.chain.columns import Columns, Curves, columns
 from optics.chain.evaluate import evaluate
 from optics.chain.light import light
+from optics.chain.solve import solved
 from optics.presets import Design, edited, resolve
 from optics.spec import Curve, OutOfRange
 from optics.study.bench_readings import Readings
@@ -67,7 +68,7 @@ class Model:
 
     def __init__(self, design: Design, readings: Readings, aim: Sought | None):
         self._readings, self._aim = readings, aim
-        self._table = _setup(columns([design.fiberscope]), readings)
+        self._table = _setup(solved(columns([design.fiberscope])), readings)
         self._known: dict[float, tuple[np.ndarray, np.ndarray]] = {}
 
     def at(self, value: float) -> tuple[np.ndarray, np.ndarray]:

@@ -3,7 +3,7 @@
 from collections.abc import Mapping
 from typing import Any
 
-from optics.fiberscope import Fiberscope
+from optics.fiberscope import SOLVE, Fiberscope
 from optics.image.bundle import ImageBundle
 from optics.presets import Design, edited, resolve
 from optics.spec import OutOfRange
@@ -48,9 +48,11 @@ def family_settings(document: dict[str, Any], scope: Fiberscope, family: str) ->
     if scope.guide.fiber.material != family:
         settings |= preset_settings(document, "guide.fiber", "fibers", guide)
         fiber = resolve(edited(document, settings)).fiberscope.guide.fiber
-        settings["guide.bundle.packing_fraction"] = packed_fraction(
-            scope.guide.bundle.diameter_mm, mm_from_um(fiber.fiber_um), PACKING[family]
+        bundle = scope.guide.bundle.diameter_mm  # where it is solved for, the usual packing must do
+        packing = (
+            PACKING[family] if bundle == SOLVE else packed_fraction(bundle, mm_from_um(fiber.fiber_um), PACKING[family])
         )
+        settings["guide.bundle.packing_fraction"] = packing
     if scope.image is not None and scope.image.form == "bundle" and image_family(scope.image.bundle) != family:
         settings |= preset_settings(document, "image.bundle", "image_bundles", image)
     return settings

@@ -174,7 +174,7 @@ def _outer(first: Told, other: Told) -> str:
     rows = []
     for name, of in (
         ("the image part", lambda each: np.nan_to_num(each["value"]["image_mm"])),
-        ("the light guide", lambda each: each["scope"].guide.bundle.diameter_mm),
+        ("the light guide", lambda each: each["value"]["guide_diameter_mm"]),
         ("both walls", lambda each: 2 * each["scope"].body.section.wall_mm),
         (
             "the channels",

@@ -14,7 +14,7 @@ from pydantic import BaseModel
 from pydantic.fields import FieldInfo
 
 from optics.chain.columns import Columns, Curves, columns
-from optics.fiberscope import RULES, Fiberscope
+from optics.fiberscope import RULES, SOLVE, Fiberscope
 from optics.presets import Design
 from optics.spec import Curve, OutOfRange, allowed
 from optics.tables import nearest
@@ -194,9 +194,9 @@ def _column(table: Columns, path: str) -> np.ndarray | None:
 
 
 def _present(column: np.ndarray) -> np.ndarray:
-    """Which designs have this value; of a list: any item of it."""
+    """Which designs have this value (what is to be solved for is not there yet); of a list: any item of it."""
     if column.dtype == object:
-        return column != ""
+        return (column != "") & (column != SOLVE)
     return (~np.isnan(column)).reshape(len(column), -1).any(axis=1)
 
 

@@ -13,6 +13,7 @@ from typing import Any
 from optics.chain.axes import Axis
 from optics.chain.columns import columns
 from optics.chain.fit import fit
+from optics.chain.solve import solved
 from optics.chain.target import field_of_view, image_size_mm
 from optics.fiberscope import Fiberscope
 from optics.guide.packing import disc_count
@@ -233,7 +234,7 @@ def _fields_deg(scope: Fiberscope) -> list[float]:
     """Fields of view to choose lenses for: just over the need, or the design's own and a narrower one."""
     if scope.needs.field_of_view_deg is not None:
         return [scope.needs.field_of_view_deg * FIELD_MARGIN]
-    own = float(field_of_view(columns([scope]))["field_of_view_deg"][0])
+    own = float(field_of_view(solved(columns([scope])))["field_of_view_deg"][0])
     return [own * share for share in FIELDS]
 
 

@@ -18,7 +18,7 @@ from optics.chain.axes import evaluate_possible, holding
 from optics.chain.columns import Columns
 from optics.fiberscope import Fiberscope
 from optics.needs import Needs
-from optics.study.pick_needs import margins, meeting
+from optics.study.pick_needs import BESIDES, margins, meeting
 from optics.units import AnyUnit, Flags
 
 LIGHT = ("target_center_lux", "target_min_lux", "target_uva_w_m2")
@@ -71,6 +71,7 @@ KNOBS = (
         up=("target_min_lux", "evenness", "field_of_view_deg", *SEEN),
         down=("target_min_lux", "evenness", "field_of_view_deg", *SEEN),
     ),
+    Knob("image.bundle.core_um", up=SEEN, down=DETAIL),
     Knob("image.bundle.pitch_um", up=SEEN, down=(*SEEN, "bend_radius_mm", "passes")),
     Knob(
         "image.bundle.diameter_mm",
@@ -122,24 +123,28 @@ class _Asked:
 
     needs: Needs
     table: Columns
-    failing: dict[str, Flags]
+    margin: dict[str, np.ndarray]
 
-    def at(self, lanes: _Lanes, value: np.ndarray) -> tuple[Flags, Flags]:
-        """(what failed is met, everything is met) with each lane's knob at a value [lane]."""
+    def at(self, lanes: _Lanes, value: np.ndarray) -> tuple[Flags, Flags, Flags]:
+        """(what failed is met, everything is met, what failed got better) with each lane's knob at a value [lane]."""
         moved, changed = self.table.take(lanes.row), {}
         for number in np.unique(lanes.knob):
             path = KNOBS[number].path
             changed[path] = np.where(lanes.knob == number, value, moved[path])
         moved = moved.replaced(changed)
-        helped, whole = np.zeros(len(value), bool), np.zeros(len(value), bool)
+        helped, whole, better = (np.zeros(len(value), bool) for _ in range(3))
         possible = np.flatnonzero(holding(moved))
         figures, ready = evaluate_possible(moved.take(possible))
         if figures.value:
-            margin = margins(self.needs, moved.take(possible), figures)
-            lacking = {name: fails[lanes.row[possible]] for name, fails in self.failing.items()}
-            helped[possible] = ready & np.logical_and.reduce([(margin[n] >= 0) | ~lacks for n, lacks in lacking.items()])
-            whole[possible] = ready & meeting(margin)
-        return helped, whole
+            now = margins(self.needs, moved.take(possible), figures)
+            before = {name: found[lanes.row[possible]] for name, found in self.margin.items()}
+            helped[possible] = ready & np.logical_and.reduce(
+                [(now[name] >= 0) | (was >= 0) for name, was in before.items()]
+            )
+            whole[possible] = ready & meeting(now)
+            numbers = [(now[name] > was) | (was >= 0) for name, was in before.items() if name not in BESIDES]
+            better[possible] = ready & np.logical_and.reduce(numbers) if numbers else ready
+        return helped, whole, better
 
 
 def smallest_changes(
@@ -149,7 +154,7 @@ def smallest_changes(
 
     `margin` as `pick_needs.margins` gives it for the whole table.
     """
-    asked = _Asked(needs, table.take(rows), {name: found[rows] < 0 for name, found in margin.items()})
+    asked = _Asked(needs, table.take(rows), {name: found[rows] for name, found in margin.items()})
     lanes = _lanes(asked)
     found: list[_Lanes] = [lanes.take(np.zeros(0, int))]
     for rung in RUNGS:
@@ -157,9 +162,10 @@ def smallest_changes(
             break
         ratio = np.minimum(rung, lanes.moved(lanes.end))
         lanes.good = lanes.start * np.exp(np.sign(lanes.end - lanes.start) * ratio)
-        helped, lanes.whole = asked.at(lanes, lanes.good)
+        helped, lanes.whole, better = asked.at(lanes, lanes.good)
         found.append(lanes.take(helped))
-        done = helped | np.isin(lanes.row, lanes.row[lanes.whole]) | (ratio < rung)
+        # A knob that does not move every failing number the right way at first is left alone.
+        done = helped | ~better | np.isin(lanes.row, lanes.row[lanes.whole]) | (ratio < rung)
         lanes = lanes.take(~done)
         lanes.bad = lanes.good
     near = _Lanes(*(np.concatenate([getattr(each, name) for each in found]) for name in _Lanes.__slots__))
@@ -192,7 +198,7 @@ def _lanes(asked: _Asked) -> _Lanes:
         start = asked.table[knob.path]
         low, high = usual_bounds(knob.path)
         for helped, end in ((knob.up, np.fmax(high, start)), (knob.down, np.fmin(low, start))):
-            hopeless = np.logical_or.reduce([fails for name, fails in asked.failing.items() if name not in helped])
+            hopeless = np.logical_or.reduce([found < 0 for name, found in asked.margin.items() if name not in helped])
             row = np.flatnonzero(~np.isnan(start) & (start > 0) & (end > 0) & (end != start) & ~hopeless)
             none = np.zeros(len(row), bool)
             parts.append((row, np.full(len(row), number), start[row], end[row], start[row], end[row], none))
@@ -212,7 +218,7 @@ def _closed_in(asked: _Asked, lanes: _Lanes) -> _Lanes:
         if not rows.size:
             break
         middle = np.sqrt(lanes.good[rows] * lanes.bad[rows])
-        helped, whole = asked.at(lanes.take(rows), middle)
+        helped, whole, _ = asked.at(lanes.take(rows), middle)
         lanes.bad[rows] = np.where(helped, lanes.bad[rows], middle)
         lanes.good[rows] = np.where(helped, middle, lanes.good[rows])
         lanes.whole[rows] = np.where(helped, whole, lanes.whole[rows])

@@ -15,6 +15,7 @@ import numpy as np
 from optics.chain.axes import evaluate_possible, holding
 from optics.chain.columns import Columns, columns
 from optics.chain.evaluate import evaluate
+from optics.chain.solve import with_solved
 from optics.fiberscope import Fiberscope
 from optics.presets import Design, edited, resolve
 from optics.spec import OutOfRange, require
@@ -154,8 +155,9 @@ def fixed_tube(scope: Fiberscope) -> Tube:
         raise OutOfRange(
             "scene.ports.form is 'placed'; split changes the size of the ports, so they must follow the guide."
         )
+    figures = evaluate(columns([scope]))
+    scope = with_solved(scope, {name: float(figures[name][0]) for name in ("guide_diameter_mm", "image_mm")})
     table = columns([scope])
-    figures = evaluate(table)
     section = scope.body.section
     others = [channel.inner_mm + 2 * channel.wall_mm for channel in section.channels]
     others += [wire.diameter_mm for wire in section.wires for _ in range(wire.count)]

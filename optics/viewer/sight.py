@@ -107,16 +107,3 @@ def _ray(x_mm, y_mm, image_distance_mm, mapping, pupil_depth_mm, index):
     inside = refracted_half_angle_deg(half_angle_deg=half, index=index)
     start = pupil_depth_mm * np.tan(rad_from_deg(half))
     return np.where(height > 0, x / safe, 1.0), y / safe, half, start, np.tan(rad_from_deg(inside))
-
-
-def target_magnification(*, image_distance_mm: Numbers, distance_mm: Numbers) -> Numbers:
-    """Size in the image over size at a target in or out of focus, on axis: v/w, by the ray through the pupil's middle.
-
-    v lens to image, w the target as the pupil sees it (`apparent_distance_mm`). In focus this is f/(s - f).
-    References: closed_form.
-
-    >>> round(target_magnification(image_distance_mm=1.0526316, distance_mm=20.0), 6)
-    0.052632
-    """
-    positive(image_distance_mm=image_distance_mm, distance_mm=distance_mm)
-    return image_distance_mm / distance_mm

@@ -177,8 +177,8 @@ SUBJECTS = {
 def subject_reflectance(*, subject: str, width_mm: float, pixels: int, contrast: float, seed: int) -> np.ndarray:
     """One of SUBJECTS by name.
 
-    >>> subject_reflectance(subject="flat", width_mm=10.0, pixels=64, contrast=0.3, seed=1).mean()
-    np.float64(1.0)
+    >>> float(subject_reflectance(subject="flat", width_mm=10.0, pixels=64, contrast=0.3, seed=1).mean())
+    1.0
     """
     require_subject(subject)
     size = {"width_mm": float(width_mm), "pixels": int(pixels)}

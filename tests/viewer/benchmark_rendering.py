@@ -25,7 +25,8 @@ def given(cores: int, pixels: int) -> dict:
     image = pitch * float(np.sqrt(cores / HEXAGONAL_FRACTION))
     side = int(1.05 * image / pitch * samples) // 32 * 32
     return {
-        "reflectance": np.random.default_rng(0).random((side, side)), "light_ratio": np.ones((65, 65)), "sample_um": pitch / samples,
+        "reflectance": np.random.default_rng(0).random((side, side)), "light_ratio": np.ones((65, 65)),
+        "sample_um": pitch / samples,
         "lens_lp_mm": np.array([0.0, 400.0]), "lens_mtf": np.array([1.0, 0.0]), "defocus_um": 3.0, "image_um": image,
         "pitch_um": pitch, "core_um": 7.5, "turn_deg": 7.0, "jitter_share": 0.02, "dead_fraction": 0.002,
         "transmission_spread": 0.05, "veil_ratio": 0.03,
