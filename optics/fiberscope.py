@@ -14,8 +14,8 @@ from pydantic import BaseModel, Discriminator, Field, model_validator
 from optics.body.handling import Handling
 from optics.body.passage import Passage
 from optics.body.section import Section
-from optics.guide.bundle import Cable, GuideBundle
 from optics.guide import fiber
+from optics.guide.bundle import Cable, GuideBundle
 from optics.guide.fiber import Fiber
 from optics.guide.joint import Joint
 from optics.image.bundle import ImageBundle
@@ -159,6 +159,7 @@ class Rule:
 
 
 LEAST_CORES = 7
+LARGEST_SPREAD = 0.98
 SOLVE = "solve"  # stands for a diameter that the section decides
 COMPARISONS = {"below": np.less, "at most": np.less_equal}
 LAMP = ("source.lamp.emitter_mm", "source.lamp.cone_na")
@@ -196,6 +197,11 @@ RULES = (
         ("guide.bundle.exit_mm", "guide.bundle.diameter_mm", "guide.fiber.na"),
         lambda face, bundle, na: na * bundle <= 0.97 * np.asarray(face),
         "such a taper would need an exit NA above 0.97, which etendue forbids in air: widen the exit face",
+    ),
+    Rule(
+        ("scene.cover.spread_na", "guide.fiber.na"),
+        lambda spread, na: spread + na < LARGEST_SPREAD,
+        f"the guide's NA and the spread together must stay below {LARGEST_SPREAD:g}: no light leaves beyond 90 degrees",
     ),
     Rule(
         ("guide.bundle.diameter_mm", "guide.fiber.fiber_um"),
@@ -271,7 +277,8 @@ def broken_tables(fiberscope: Fiberscope) -> Iterator[str]:
         yield "guide.bundle.diameter_mm and image.bundle.diameter_mm cannot both be solved for: give one of them"
     if guide.bundle.exit_tilt_deg > 0 and fiberscope.scene is not None:
         ports = fiberscope.scene.ports
-        if ports.form not in ("round", "placed") or getattr(ports, "tilt_deg", 0.0) > 0:
+        own = [getattr(ports, "tilt_deg", 0.0), *(port.tilt_deg for port in getattr(ports, "ports", ()))]
+        if ports.form not in ("round", "placed") or max(own) > 0:
             yield "guide.bundle.exit_tilt_deg is given; it needs round ports without a tilt of their own"
     if fiberscope.image is not None and fiberscope.scene is None:
         yield "scene is missing; an image needs a target to look at"

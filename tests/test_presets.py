@@ -125,6 +125,10 @@ REFUSALS = [
         r"source.launch.spot_mm is 0.5 and source.launch.cone_na is 0.55; such a spot is brighter than its lamp allows",
     ),
     ({"source.launch.form": "laser"}, r"source.launch.form is 'laser'; it must be one of butt, matched, rated, spot"),
+    (
+        {"scene.cover": {"index": 1.5, "thickness_mm": 0.3, "spread_na": 0.45}},
+        r"scene.cover.spread_na is 0.45 and guide.fiber.na is 0.57; the guide's NA and the spread together",
+    ),
     ({"setting": "office"}, r"setting is 'office'; it must be 'industrial' or 'clinical'"),
     ({"scene.target.medium": "mud"}, r"scene.target.medium is 'mud'"),
     ({"body.section.outer_diameter_mm": "wide"}, r"body.section.outer_diameter_mm is 'wide'"),

@@ -13,7 +13,7 @@ from optics.chain.columns import Columns, written_out
 from optics.chain.launch import filled_na, lamp_spectrum, launch
 from optics.guide.bend import bend_matrix, relative_bend_ratio
 from optics.guide.bundle import fiber_area_mm2
-from optics.guide.ends import reflection_transmission, tapered_na
+from optics.guide.ends import reflection_transmission, tapered_na, tilted_face_transmission
 from optics.guide.fiber import ray_stretch
 from optics.guide.joint import joint_share
 from optics.guide.packing import core_share
@@ -198,7 +198,12 @@ def _out(columns: Columns, way: Way, edges: np.ndarray) -> None:
     medium, cover = medium_index(columns)[:, None], columns.has("scene.cover.index")
     before = np.where(cover[:, None], 1.0, medium)  # a cover stands in air before the exit face
     core = columns["guide.fiber.core_index"][:, None]
-    way.bins("exit face", ray_face_transmission(core_index=core, outside_index=before, ray_na=na))
+    leaves = ray_face_transmission(core_index=core, outside_index=before, ray_na=na)
+    ground = columns.get("guide.bundle.exit_tilt_deg", 0.0)[:, None]
+    if (ground > 0).any():
+        tilted = tilted_face_transmission(core_index=core, outside_index=before, ray_na=na, tilt_deg=ground)
+        leaves = np.where(ground > 0, tilted, leaves)
+    way.bins("exit face", leaves)
     if not cover.any():
         return
     spread = columns.get("scene.cover.spread_na", 0.0)

@@ -10,6 +10,7 @@ from optics.image.chip import diagonal_mm
 from optics.image.field import field_half_angle_deg, field_radius_mm
 from optics.image.objective import apparent_distance_mm, image_distance_mm
 from optics.image.tip import reduced_path_mm
+from optics.scene.cover import apparent_thickness_mm
 from optics.scene.field import Lighting, field_irradiance
 from optics.scene.ports import Annulus, Crescent, Disc, Port
 from optics.scene.surface import bore_field, plane_field, seen_wall_mm
@@ -17,6 +18,7 @@ from optics.spectrum import GRID_NM, integral, luminous_flux_lm
 from optics.units import deg_from_rad, m2_from_mm2
 
 UVA_NM = (320.0, 400.0)
+NEAREST_MM = 1e-6  # a bore without a near end is looked at from the tip on
 
 
 @dataclass(frozen=True, slots=True)
@@ -105,15 +107,12 @@ def target(columns: Columns, lit: Light, ports: dict[str, np.ndarray], seen: dic
         edges = np.minimum(lit.beam.sine2_edges[rows] / medium_index(columns)[rows, None] ** 2, 1.0)
         radius = seen["field_radius_mm"][rows]
         field = np.where(np.isnan(radius), 1.0, radius)  # a guide without an image: only the center counts
-        per_mm2, over = lighting(
-            columns.take(rows),
-            {name: found[rows] for name, found in ports.items()},
-            edges,
-            luminous_flux_lm(power),
-            field,
-        )
+        placed = {name: found[rows] for name, found in ports.items()}
+        behind = _behind_cover_mm(columns, lit)[rows]
+        per_mm2, over = lighting(columns.take(rows), placed, edges, luminous_flux_lm(power), field, behind)
         center[rows] = np.einsum("db,dbw->dw", per_mm2, power) / m2_from_mm2(1.0)
-        value["center_lux"][rows], value["first_lit_mm"][rows] = over.center_lux, over.first_lit_mm
+        value["center_lux"][rows] = over.center_lux
+        value["first_lit_mm"][rows] = np.maximum(over.first_lit_mm - behind, 0.0)
         over_field = {"mean_lux": over.mean_lux, "min_lux": over.least_lux, "evenness": over.evenness}
         for name, found in {**over_field, "unlit_fraction": over.unlit_share}.items():
             value[name][rows] = np.where(np.isnan(radius), np.nan, found)
@@ -128,23 +127,41 @@ def _needs_surface(columns: Columns, ports: dict[str, np.ndarray]) -> np.ndarray
     return tilted | (columns.texts("scene.target.form") == "bore") | (columns.get("scene.target.tilt_deg", 0.0) != 0)
 
 
-def _facing(columns, ports, edges, lumens, field_mm):
+def _behind_cover_mm(columns: Columns, lit: Light) -> np.ndarray:
+    """How far the ports seem to stand behind the distal face, which is the cover's outer one [design]; 0 without a cover.
+
+    Taken for a ray in the middle of the flux: over a cone it varies by a few percent of the cover's thickness.
+    """
+    cover = columns.has("scene.cover.index")
+    if not cover.any():
+        return np.zeros(columns.count)
+    deep = apparent_thickness_mm(
+        thickness_mm=columns.get("scene.cover.thickness_mm", 0.0),
+        na=lit.value["exit_na"] / np.sqrt(2),
+        index=columns.get("scene.cover.index", 1.5),
+        outside_index=medium_index(columns),
+    )
+    return np.where(cover, deep, 0.0)
+
+
+def _facing(columns, ports, edges, lumens, field_mm, behind_mm):
     """A plane that faces the ports: all designs at once. Returns the center per unit flux [design, bin] and the field."""
     light = field_irradiance(
         port_x_mm=ports["x_mm"],
         port_y_mm=ports["y_mm"],
         port_radius_mm=ports["radius_mm"],
         sine2_edges=edges,
-        distance_mm=columns["scene.target.distance_mm"],
+        distance_mm=columns["scene.target.distance_mm"] + behind_mm,
         field_radius_mm=field_mm,
     )
     return light.center_per_mm2, light.under(lumens)
 
 
-def _surface(columns, ports, edges, lumens, field_mm):
-    """A tilted plane or a bore wall, or tilted ports: design by design."""
+def _surface(columns, ports, edges, lumens, field_mm, behind_mm):
+    """A tilted plane or a bore wall, or tilted ports: design by design, distances counted from the ports."""
     per_mm2, found = np.zeros_like(lumens), {name: np.zeros(columns.count) for name in Lighting.__slots__}
-    distance, depth = columns["scene.target.distance_mm"], pupil_depth_mm(columns)
+    distance = columns["scene.target.distance_mm"] + behind_mm
+    depth = np.maximum(pupil_depth_mm(columns) - behind_mm, 0.0)
     for form, rows in columns.split("scene.target.form"):
         common = {
             "ports": [port_objects({name: all_of[row] for name, all_of in ports.items()}) for row in rows],
@@ -159,8 +176,10 @@ def _surface(columns, ports, edges, lumens, field_mm):
                 field_radius_mm=field_mm[rows],
                 distance_mm=distance[rows],
                 pupil_depth_mm=depth[rows],
-                near_mm=columns.get("scene.target.near_mm", 0.0)[rows],
-                far_mm=np.where(columns.has("scene.target.far_mm"), columns["scene.target.far_mm"], 2 * distance)[rows],
+                near_mm=(columns.get("scene.target.near_mm", NEAREST_MM) + behind_mm)[rows],
+                far_mm=np.where(
+                    columns.has("scene.target.far_mm"), columns["scene.target.far_mm"] + behind_mm, 2 * distance
+                )[rows],
             )
             light = bore_field(**common, bore_mm=bore, from_mm=start, to_mm=end)
         else:

@@ -10,7 +10,7 @@ from optics.spec import OutOfRange
 from optics.study.margins import SAMPLES, SEED, margins
 from optics.study.margins_aging import aged_from, finite
 from optics.study.margins_answer import DISTRIBUTION, METHOD, Causes, Condition, Distribution, Driver, Margins, NeedOdds
-from optics.study.margins_draw import GIVEN, Tolerance, tolerances
+from optics.study.margins_ranges import GIVEN, Tolerance, tolerances
 
 SHOWN_SHARE = 0.005  # smaller shares are left to --json
 BLOCKS, PLAIN = " ▁▂▃▄▅▆▇█", " .:-=+*#@"

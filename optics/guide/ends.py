@@ -2,10 +2,12 @@
 
 import numpy as np
 
+from optics.media.face import ray_face_transmission
 from optics.spec import not_negative, positive, require, within
 from optics.units import Numbers, deg_from_rad, m_from_um, rad_from_deg
 
 # Gauss nodes over the offset of a chord from the axis: how often a ray meets the wall depends on it.
+_AZIMUTHS = (np.arange(16) + 0.5) * np.pi / 16  # half a turn; the other half mirrors it
 _NODES, _WEIGHTS = np.polynomial.legendre.leggauss(12)
 _HALF_CHORD = np.sqrt(1 - _NODES**2)
 _CHORD_WEIGHT = _WEIGHTS * _HALF_CHORD / (_WEIGHTS * _HALF_CHORD).sum()
@@ -37,6 +39,25 @@ def tilt_deviation_deg(*, core_index: Numbers, outside_index: Numbers, tilt_deg:
     sine = np.asarray(core_index) / outside_index * np.sin(rad_from_deg(np.asarray(tilt_deg, float)))
     require("tilt_deg", tilt_deg, "small enough that the axial ray gets out", sine < 1)
     return deg_from_rad(np.arcsin(sine)) - tilt_deg
+
+
+def tilted_face_transmission(
+    *, core_index: Numbers, outside_index: Numbers, ray_na: Numbers, tilt_deg: Numbers
+) -> np.ndarray:
+    """Transmission of a face ground at an angle for rays of one NA, averaged over their azimuth, unpolarized.
+
+    The ray meets the face at i with cos i = cos(theta) cos(tilt) + sin(theta) sin(tilt) cos(azimuth); where
+    n1 sin(i) exceeds the outside index it is totally reflected. References: fresnel_equations; closed_form.
+
+    >>> round(float(tilted_face_transmission(core_index=1.5, outside_index=1.0, ray_na=0.0, tilt_deg=0.0)), 2)
+    0.96
+    """
+    sine = (np.asarray(ray_na, float) / core_index)[..., None]
+    tilt = rad_from_deg(np.asarray(tilt_deg, float))[..., None]
+    cosine = np.sqrt(1 - sine**2) * np.cos(tilt) + sine * np.sin(tilt) * np.cos(_AZIMUTHS)
+    met = np.asarray(core_index)[..., None] * np.sqrt(np.maximum(1 - cosine**2, 0.0))
+    index, outside = np.asarray(core_index)[..., None], np.asarray(outside_index)[..., None]
+    return ray_face_transmission(core_index=index, outside_index=outside, ray_na=met).mean(axis=-1)
 
 
 def reflection_transmission(

@@ -130,6 +130,8 @@ def exit_cone(lit: Light, index: float) -> ExitCone:
     flux, wide = np.maximum(lit.beam.bin_lm[0], 0.0), np.diff(edges) > 0
     if flux.sum() <= 0:  # no visible light: the shape of the watts
         flux = np.maximum(lit.beam.bin_w[0], 0.0)
+    if flux.sum() <= 0:  # no light at all: any shape serves, as nothing is drawn with it
+        flux = np.ones_like(flux)
     return ExitCone(tuple(edges[np.concatenate([[True], wide])]), tuple(flux[wide] / flux[wide].sum()))
 
 

@@ -61,13 +61,12 @@ def spread_share(*, sine2_edges: np.ndarray, spread_na: Numbers, spread_edges: n
     each bin is an even mean over sin^2. Rows add up to 1 when the last edge reaches (NA + q)^2.
 
     Parameters: sine2_edges [..., bin + 1], spread_edges [..., new bin + 1], both sin^2 in air; spread_na q [...],
-    above 0. Returns [..., bin, new bin]. Raises OutOfRange: a cone spread beyond 90 degrees.
+    above 0. Returns [..., bin, new bin]; what is spread beyond the last edge is lost.
     References: closed_form (area of a circular lens).
     """
     q = np.asarray(spread_na, float)
     positive(spread_na=q)
     edges, wanted = np.asarray(sine2_edges, float), np.asarray(spread_edges, float)
-    require("spread_na", q, "below 1 less the NA of the cone", np.sqrt(edges[..., -1]) + q < 1)
     part = (np.arange(RAYS_PER_BIN) + 0.5) / RAYS_PER_BIN
     ray = np.sqrt(edges[..., :-1, None] + np.diff(edges, axis=-1)[..., None] * part)[..., None]
     disc = q[..., None, None, None]

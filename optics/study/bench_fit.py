@@ -12,6 +12,7 @@ from optics.units import AnyUnit
 LEVEL = 0.95  # of the stated intervals
 UNLIKELY = 0.01  # a fit, or an outlier among all readings, is called so below this probability
 ALIKE = 1e-5  # of the slopes of two numbers: nearer to parallel than this they tell one number
+ROUNDING = 1e-9  # readings of less scatter were computed, not measured
 EDGE = 1e-6  # a number this near to what it may be at most or least stands at the edge
 
 
@@ -143,7 +144,7 @@ def _scale(readings: Readings, squares: float, freedom: int, moved: np.ndarray):
 
     if freedom == 0:
         return 1.0, None, None, False
-    spread = np.sqrt(squares / freedom)
+    spread = np.sqrt(squares / freedom) if readings.error is not None else max(np.sqrt(squares / freedom), ROUNDING)
     if readings.error is not None:
         probability = float(chdtrc(freedom, squares))
         widened = probability < UNLIKELY
@@ -185,7 +186,7 @@ def _apart(model: Model, readings: Readings, aim: Sought | None) -> np.ndarray:
         return residual
     squares = float(np.sum(((readings.got - moved) / weight) ** 2))
     freedom = len(readings.at) - slopes.shape[1]
-    if squares <= 1e-20 * freedom or freedom < 2:
+    if squares <= ROUNDING**2 * freedom or freedom < 2:
         return np.zeros_like(residual)
     others = np.maximum(squares - residual**2, 1e-12 * squares) / (freedom - 1)
     return residual / np.sqrt(others)

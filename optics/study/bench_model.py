@@ -10,14 +10,14 @@ from typing import Any
 
 import numpy as np
 
-from optics.chain.columns import Columns, Curves, columns
+from optics.chain.columns import Columns, Curves
 from optics.chain.evaluate import evaluate
 from optics.chain.light import light
-from optics.chain.solve import solved
 from optics.presets import Design, edited, resolve
 from optics.spec import Curve, OutOfRange
 from optics.study.bench_readings import Readings
 from optics.study.margins_draw import scaled_curve
+from optics.study.margins_ranges import nominal_columns
 from optics.units import AnyUnit, mw_from_w
 
 ATTENUATION, NA = "guide.fiber.attenuation", "guide.fiber.na"
@@ -68,7 +68,7 @@ class Model:
 
     def __init__(self, design: Design, readings: Readings, aim: Sought | None):
         self._readings, self._aim = readings, aim
-        self._table = _setup(solved(columns([design.fiberscope])), readings)
+        self._table = _setup(nominal_columns(design.fiberscope), readings)
         self._known: dict[float, tuple[np.ndarray, np.ndarray]] = {}
 
     def at(self, value: float) -> tuple[np.ndarray, np.ndarray]:

@@ -3,7 +3,7 @@
 import numpy as np
 
 from optics.presets import Design
-from optics.study.bench_fit import UNLIKELY, Fit
+from optics.study.bench_fit import ROUNDING, UNLIKELY, Fit
 from optics.study.bench_model import AT_NM, NA, Sought, loss_db_m
 from optics.study.bench_readings import Readings
 
@@ -83,6 +83,8 @@ def _quality(readings: Readings, fit: Fit) -> str:
     if fit.freedom == 0:
         return "As many readings as numbers: nothing is left to test the model with."
     scatter = float(np.sqrt(np.mean(((readings.got - fit.model) / readings.got) ** 2)))
+    if readings.error is None and scatter < ROUNDING:
+        return "The readings scatter not at all, as computed ones do: the intervals mean nothing."
     if readings.error is None:
         told = f"No standard errors are stated; the scatter is {100 * scatter:.2g} % of a reading."
         if fit.fit_probability is None:

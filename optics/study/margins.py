@@ -6,7 +6,7 @@ what tolerances do to ports and fit is counted too. Values vary each on its own.
 
 import numpy as np
 
-from optics.chain.columns import Columns, columns
+from optics.chain.columns import Columns
 from optics.chain.evaluate import evaluate
 from optics.needs import Needs, need_margin
 from optics.presets import Design
@@ -14,7 +14,8 @@ from optics.spec import OutOfRange
 from optics.study.margins_aging import Aged, aged_columns
 from optics.study.margins_answer import Causes, Condition, Distribution, Driver, Margins, NeedOdds, Tightened
 from optics.study.margins_causes import binomial_error, halved, halving_gains, variance_shares
-from optics.study.margins_draw import Tolerance, applied, broken_rules, drawn, tolerances
+from optics.study.margins_draw import applied, broken_rules, drawn
+from optics.study.margins_ranges import Tolerance, nominal_columns, tolerances
 from optics.viewer.detail import PARTS
 
 SAMPLES, SEED = 2000, 0
@@ -60,7 +61,7 @@ def margins(
     ranges = tolerances(design) if ranges is None else ranges
     if not ranges:
         raise OutOfRange("The design states no tolerances; give some with --tolerance path=low:high.")
-    needs, nominal = design.fiberscope.needs, columns([design.fiberscope])
+    needs, nominal = design.fiberscope.needs, nominal_columns(design.fiberscope)
     found = drawn(nominal, ranges, samples, seed)
     table = applied(nominal, ranges, found.values)
     numbers, plain = numbers_of(table), numbers_of(nominal)

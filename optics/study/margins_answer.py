@@ -5,7 +5,8 @@ from dataclasses import dataclass
 from typing import Any
 
 from optics.study.margins_aging import Aged
-from optics.study.margins_draw import Drawn, Tolerance
+from optics.study.margins_draw import Drawn
+from optics.study.margins_ranges import Tolerance
 from optics.units import AnyUnit
 
 DISTRIBUTION = (

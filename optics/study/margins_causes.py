@@ -11,7 +11,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optics.study.margins_draw import Tolerance
+from optics.study.margins_ranges import Tolerance
 from optics.units import AnyUnit, Flags
 
 DEGREES = (3, 2, 1)  # of the polynomials: the highest for which the samples suffice

@@ -105,8 +105,8 @@ def widest_mm(scope: Fiberscope) -> float:
     if known:
         return min(known)
     table = columns([scope])
-    solved = float(fit(table, image_size_mm(table))[0]["outer_diameter_mm"][0])
-    return solved if math.isfinite(solved) else scope.guide.bundle.diameter_mm / GUIDE_SHARES[2]
+    outer = float(fit(table, image_size_mm(table))[0]["outer_diameter_mm"][0])
+    return outer if math.isfinite(outer) else scope.guide.bundle.diameter_mm / GUIDE_SHARES[2]
 
 
 def preferred(number: float) -> float:

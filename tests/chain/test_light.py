@@ -225,7 +225,8 @@ def test_a_tilted_exit_face_moves_the_brightest_point(document):
     straight, _ = answered(document, {"guide.bundle.bends": []})
     tilted, _ = answered(document, {"guide.bundle.bends": [], "guide.bundle.exit_tilt_deg": 15.0})
     assert tilted.target.center_lux < straight.target.center_lux
-    assert tilted.light.delivered_lm == pytest.approx(straight.light.delivered_lm)
+    # 15 degrees: steep rays are totally reflected, a few percent of the light
+    assert 0.9 < tilted.light.delivered_lm / straight.light.delivered_lm < 1.0
 
 
 @pytest.mark.parametrize(

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from optics.guide.ends import reflection_transmission, tapered_na, tilt_deviation_deg
+from optics.guide.ends import reflection_transmission, tapered_na, tilt_deviation_deg, tilted_face_transmission
 from optics.guide.fiber import bounces_per_m
 from optics.spec import OutOfRange
 
@@ -51,3 +51,18 @@ def test_refusals(wrong):
         reflection_transmission(**wrong, **CASE)
     with pytest.raises(OutOfRange, match="axial ray"):
         tilt_deviation_deg(core_index=1.8, outside_index=1.0, tilt_deg=40.0)
+
+
+def test_a_tilted_face_without_tilt_is_a_face():
+    from optics.media.face import ray_face_transmission
+
+    for na in (0.0, 0.3, 0.57):
+        flat = ray_face_transmission(core_index=1.62, outside_index=1.0, ray_na=na)
+        assert tilted_face_transmission(core_index=1.62, outside_index=1.0, ray_na=na, tilt_deg=0.0) == pytest.approx(
+            flat, abs=1e-12
+        )
+
+
+def test_a_tilted_face_reflects_steep_rays_wholly():
+    steep = {"core_index": 1.62, "outside_index": 1.0, "ray_na": 0.57}
+    assert tilted_face_transmission(**steep, tilt_deg=25.0) < tilted_face_transmission(**steep, tilt_deg=10.0) - 0.02

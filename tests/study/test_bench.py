@@ -240,6 +240,26 @@ def test_an_outlier_is_named_and_kept_unless_asked(cut_back):
     assert "row 5" in unstated.verdict
 
 
+def test_readings_without_scatter_are_told_apart(cut_back):
+    """Computed readings: the truth, no interval to speak of, and plain numbers in the answer."""
+    found = bench(cut_back[0], cut_back[1], source="r.csv")
+    assert of(found, ATTENUATION).value == pytest.approx(LOSS, rel=1e-7)
+    assert "scatter not at all" in found.verdict
+    json.dumps(found.as_dict(), allow_nan=False)
+
+
+def test_a_solved_diameter_stays_that_of_the_nominal_design(document):
+    settings = {"guide.bundle.diameter_mm": "solve", "body.section.outer_diameter_mm": 4.2}
+    design = resolved(document, settings)
+    lit = [
+        size(resolved(design.document, {"guide.bundle.length_m": at}).fiberscope).light.delivered_w for at in (1.0, 4.0)
+    ]
+    data = readings("length_m", "power_mw", (1.0, 4.0), [900 * one for one in lit], [1.0, 1.0])
+    found = bench(design, data, source="r.csv")
+    assert found.launch_factor == pytest.approx(0.9, rel=1e-6)
+    assert of(found, ATTENUATION).value == pytest.approx(1.0, rel=1e-6)
+
+
 def test_honest_scatter_has_no_outliers(cut_back):
     design, true = cut_back
     named = sum("Apart" in bench(design, noisy(true, 0.01, seed), source="r.csv").verdict for seed in range(8))

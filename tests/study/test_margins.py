@@ -16,7 +16,8 @@ from optics.spec import OutOfRange
 from optics.study.margins import margins, met, numbers_of
 from optics.study.margins_aging import Aged, aged_columns, aged_from
 from optics.study.margins_causes import halved, halved_weight, halving_gains, orthonormal, variance_shares
-from optics.study.margins_draw import Tolerance, applied, broken_rules, drawn, tolerances, triangular_quantile
+from optics.study.margins_draw import applied, broken_rules, drawn, triangular_quantile
+from optics.study.margins_ranges import Tolerance, nominal_columns, tolerances
 
 BARE = {"scene": None, "image": None, "viewer": None, "body": None, "needs": None}
 FLUX, PACKING, LENGTH = "source.lamp.flux_lm", "guide.bundle.packing_fraction", "guide.bundle.length_m"
@@ -99,7 +100,7 @@ def test_a_product_of_two_against_closed_form(document):
 
 
 def test_one_linear_need_and_its_halving_in_closed_form(document):
-    """Light on the target is linear in the lamp: 90 % of it is met with 0.82 under (300, 400, 500), 0.98 under (350, 400, 450)."""
+    """Light is linear in the lamp: 90 % of it is met with 0.82 under (300, 400, 500), with 0.98 under (350, 400, 450)."""
     lux = size(changed(document).fiberscope).summary.target_center_lux
     design = changed(document, needs={"target_center_lux": 0.9 * lux})
     found = margins(design, ranges=(of(FLUX, 300.0, 400.0, 500.0),), samples=400)
@@ -288,6 +289,19 @@ def test_tolerances_that_leave_nothing_are_refused(gearbox):
 def test_impossible_tolerances_are_refused(gearbox, path, ends, said):
     with pytest.raises(OutOfRange, match=said):
         tolerances(gearbox, {path: ends})
+
+
+def test_a_diameter_to_be_solved_for_is_settled_once(document):
+    """The guide is built to the nominal section; a thicker wall then makes the tube no longer hold it."""
+    design = changed(document, guide__bundle__diameter_mm="solve", body__section__outer_diameter_mm=4.2)
+    ranges = tolerances(design, {"body.section.wall_mm": (0.44, 0.46)}, only=True)
+    table = nominal_columns(design.fiberscope)
+    figures = evaluate(applied(table, ranges, np.array([[0.44], [0.46]])))
+    assert figures["guide_diameter_mm"][0] == figures["guide_diameter_mm"][1]
+    assert figures["fits"].tolist() == [1.0, 0.0]
+    assert figures["guide_diameter_mm"][0] == pytest.approx(
+        float(evaluate(columns([design.fiberscope]))["guide_diameter_mm"][0])
+    )
 
 
 # Aging
