@@ -12,6 +12,8 @@ COMMANDS = {
     "list": "the demo designs and the presets",
     "size": "light on the target, smallest detail, fit and caveats of one design",
     "check": "the published values that the formulas are held against, or one design traced ray by ray",
+    "margins": "how sure a design is to meet its needs within its tolerances, and what decides",
+    "bench": "readings from a bench, fitted by the design's own model",
     "draw": "one picture of one design, as PNG, SVG or PDF",
 }
 

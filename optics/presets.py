@@ -30,6 +30,7 @@ FOLDERS = {
     "viewer.camera": "cameras",
     "viewer.eye": "eyepieces",
 }
+CURVE = {"wavelength_nm", "value"}
 HEADER = {"format": 1, "kind": "fiberscope"}
 
 Document = dict[str, Any]
@@ -93,7 +94,10 @@ def _expanded(table: Mapping[str, Any], path: str, sourced: dict[str, Sourced], 
         at = f"{path}.{key}" if path else key
         if key == "preset":
             continue
-        if isinstance(value, Mapping):
+        if isinstance(value, Mapping) and CURVE.issuperset(value):  # an own curve stands for the preset's, tolerance and all
+            full[key] = dict(value)
+            sourced[at] = Sourced("curve", None, None, "own_scenario", where, "assumed")
+        elif isinstance(value, Mapping):
             full[key] = _expanded(value, at, sourced, where)
         else:
             full[key] = [_item(item) for item in value] if isinstance(value, list) else value

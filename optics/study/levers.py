@@ -1,6 +1,6 @@
 """Which single change would give most light: sensible changes of one thing each, evaluated together and ranked."""
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import Any
 
@@ -68,7 +68,7 @@ def levers(design: Design) -> tuple[Lever, ...]:
     base = evaluate(now)
     scope = with_solved(design.fiberscope, {name: float(found[0]) for name, found in base.value.items()})
     tried = [(change, changed) for change in changes(design.document, scope) if (changed := _changed(design, change))]
-    tried, table, figures = _standing([pair for pair in tried if _overstrained(scope) or not _overstrained(pair[1])])
+    tried, table, figures = _answered([pair for pair in tried if _overstrained(scope) or not _overstrained(pair[1])])
     if not tried:
         return ()
     measure = "delivered_w" if scope.source.lamp.flux_lm is None else "delivered_lm"
@@ -103,17 +103,13 @@ def _changed(design: Design, change: Change) -> Fiberscope | None:
         return None
 
 
-def _standing(tried: Sequence[Pair]) -> tuple[list[Pair], Columns, Figures]:
-    """The changes that the chain does not refuse, with the columns and the numbers of their designs."""
-
-    def answered(pairs: Sequence[Pair]) -> tuple[list[Pair], Columns, Figures]:
-        table = columns([scope for _, scope in pairs])
-        return list(pairs), table, evaluate(table)
-
+def _answered(tried: list[Pair]) -> tuple[list[Pair], Columns, Figures]:
+    """The changes whose designs the chain does not refuse, with columns and numbers: all at once, one by one if it must be."""
     try:
-        return answered(tried)
+        table = columns([changed for _, changed in tried])
+        return tried, table, evaluate(table)
     except OutOfRange:
-        return answered([pair for pair in tried if _answers(pair[1])])
+        return _answered([pair for pair in tried if _answers(pair[1])])
 
 
 def _answers(scope: Fiberscope) -> bool:

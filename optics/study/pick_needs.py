@@ -35,9 +35,13 @@ ORDER = (
 )
 STEAM_C = 134.0
 # What is asked besides the needs: the parts must fit, the scope must pass, its materials must stand the job.
-BESIDES = ("fits", "passes", "heat", "steam")
+BESIDES = ("fits", "enters", "tip", "elbow", "passes", "heat", "steam")
+FLAGS = ("passes", "heat", "steam")  # of these, what has no number but yes or no
 SHORT = {
     "fits": "the parts do not fit the tube",
+    "enters": "the tube is wider than the bore",
+    "tip": "the rigid tip does not pass the bend of the bore",
+    "elbow": "the tube does not bend as the bore does",
     "passes": "it does not pass the bore",
     "heat": "a material does not stand the heat",
     "steam": "a material does not stand steam",
@@ -50,15 +54,28 @@ def number(figures: Figures, name: str) -> np.ndarray:
 
 
 def margins(needs: Needs, table: Columns, figures: Figures) -> dict[str, np.ndarray]:
-    """Relative margins [design] of all that is asked, in the order of the light; what besides needs is asked is 0 or -1."""
+    """Relative margins [design] of all that is asked, in the order of the light; what has no number is 0 or -1."""
     wanted = needs.wanted()
     found = {
         name: need_margin(name=name, wanted=np.float64(wanted[name]), got=number(figures, name))
         for name in ORDER
         if name in wanted
     }
-    good = {"fits": figures["fits"] != 0, "passes": figures["passes"] != 0, **_stands(table)}
-    return found | {name: np.where(good[name], 0.0, -1.0) for name in BESIDES}
+    good = {"passes": figures["passes"] != 0, **_stands(table)}
+    return found | _passing(table, figures) | {name: np.where(good[name], 0.0, -1.0) for name in good}
+
+
+def _passing(table: Columns, figures: Figures) -> dict[str, np.ndarray]:
+    """Relative margins of what must fit and pass [design]; infinite where nothing is asked or a wider tube hides it."""
+    pairs = {
+        "enters": (figures["outer_diameter_mm"], table["body.passage.bore_mm"]),
+        "tip": (figures["rigid_tip_mm"], figures["longest_rigid_tip_mm"]),
+        "elbow": (figures["bend_radius_mm"], figures["passable_radius_mm"]),
+    }
+    room = 1.0 - figures["needed_lumen_mm"] / np.where(figures["lumen_mm"] > 0, figures["lumen_mm"], np.nan)
+    fits = np.where(figures["fits"] == 0, np.minimum(np.nan_to_num(room, nan=-1.0), -1e-12), np.maximum(room, 0.0))
+    found = {"fits": fits, **{name: 1.0 - has / limit for name, (has, limit) in pairs.items()}}
+    return {name: np.where(np.isnan(margin), np.inf, margin) for name, margin in found.items()}
 
 
 def meeting(margin: Mapping[str, np.ndarray]) -> Flags:
@@ -75,16 +92,13 @@ def first_failing(margin: Mapping[str, np.ndarray]) -> np.ndarray:
 def shortfall(margin: Mapping[str, np.ndarray], needs: Needs) -> np.ndarray:
     """How far a design is from meeting all [design]: the sum of the factors' logarithms that its numbers lack.
 
-    What is not a number's matter (a part that does not fit, a material) counts as a factor e; nothing resolved as infinite.
+    What has no number (a material) counts as a factor of 2; nothing resolved as infinite.
     """
     total = np.zeros(len(next(iter(margin.values()))))
     for name, found in margin.items():
         lacks = np.minimum(found, 0.0)
-        if name in BESIDES:
-            total += -lacks
-        else:
-            with np.errstate(divide="ignore"):
-                total += np.log1p(-lacks) if name in AT_MOST else -np.log1p(np.maximum(lacks, -1.0))
+        with np.errstate(divide="ignore"):
+            total += np.log1p(-lacks) if name in AT_MOST or name in BESIDES else -np.log1p(np.maximum(lacks, -1.0))
     return total
 
 
@@ -108,22 +122,16 @@ def reason(name: str, needs: Needs, table: Columns, figures: Figures, row: int) 
     if name == "fits":
         needed, has = (float(figures[key][row]) for key in ("needed_lumen_mm", "lumen_mm"))
         return f"{SHORT[name]}: they need a lumen of {needed:.3g} mm, it has {has:.3g} mm"
-    if name == "passes":
-        return f"{SHORT[name]}: {_stuck(table, figures, row)}"
+    if name == "enters":
+        tube, bore = float(figures["outer_diameter_mm"][row]), float(table["body.passage.bore_mm"][row])
+        return f"{SHORT[name]}: {tube:.3g} mm against {bore:.3g} mm"
+    if name == "tip":
+        tip, longest = (float(figures[key][row]) for key in ("rigid_tip_mm", "longest_rigid_tip_mm"))
+        return f"{SHORT[name]}: {tip:.3g} mm long, at most {longest:.3g} mm pass"
+    if name == "elbow":
+        least, takes = (float(figures[key][row]) for key in ("bend_radius_mm", "passable_radius_mm"))
+        return f"{SHORT[name]}: to {least:.3g} mm, the bore asks for {takes:.3g} mm"
     return SHORT[name]
-
-
-def _stuck(table: Columns, figures: Figures, row: int) -> str:
-    value = {name: float(figures[name][row]) for name in ("outer_diameter_mm", "rigid_tip_mm", "bend_radius_mm")}
-    longest, takes = (float(figures[key][row]) for key in ("longest_rigid_tip_mm", "passable_radius_mm"))
-    bore = float(table["body.passage.bore_mm"][row])
-    if value["outer_diameter_mm"] > bore:
-        return f"the tube of {value['outer_diameter_mm']:.3g} mm is wider than the bore of {bore:.3g} mm"
-    if value["rigid_tip_mm"] > longest:
-        return f"a rigid tip of {value['rigid_tip_mm']:.3g} mm is longer than the {longest:.3g} mm that pass the bend"
-    if value["bend_radius_mm"] > takes:
-        return f"the tube bends to {value['bend_radius_mm']:.3g} mm, the bore asks for {takes:.3g} mm"
-    return "its parts do not fit the tube"
 
 
 def told(name: str, wanted: float, got: float) -> str:

@@ -12,11 +12,12 @@ from optics.chain.columns import Columns
 from optics.chain.evaluate import Figures
 from optics.needs import AT_MOST, Needs
 from optics.report.verdict import NAMES
-from optics.study.pick_needs import BESIDES, margins, meeting, number, spoken
+from optics.study.pick_needs import BESIDES, number, spoken
 from optics.study.smallest_change import Change
 
 BORE, OUTER = "body.passage.bore_mm", "body.section.outer_diameter_mm"
 DIGITS = 6
+PASSING = {"fits", "enters", "tip", "elbow", "passes"}
 WIDER = 4.0  # the widest bore tried, over the one asked for
 HALVINGS = 40
 
@@ -74,7 +75,7 @@ def _relaxed(table: Columns, needs: Needs, figures: Figures, margin, row: int) -
         if needs.outer_diameter_mm is not None and changes[OUTER].after > needs.outer_diameter_mm:
             path = "needs.outer_diameter_mm"
             changes[path] = Change(path, needs.outer_diameter_mm, changes[OUTER].after)
-    if {"passes", "fits"} & set(lacking):
+    if PASSING & set(lacking):
         bore = _bore(one)
         if bore is None:
             return ()
@@ -122,6 +123,3 @@ def _said(change: Change) -> str:
     name = change.path.removeprefix("needs.")
     what = {BORE: "the bore", OUTER: "the tube's outer diameter"}.get(change.path) or NAMES[name]
     return f"relax {what} from {spoken(change.before)} to {spoken(change.after)}"
-
-
-assert margins, meeting  # the words of the needs live next door

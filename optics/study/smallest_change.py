@@ -18,13 +18,13 @@ from optics.chain.axes import evaluate_possible, holding
 from optics.chain.columns import Columns
 from optics.fiberscope import Fiberscope
 from optics.needs import Needs
-from optics.study.pick_needs import BESIDES, margins, meeting
+from optics.study.pick_needs import FLAGS, margins, meeting
 from optics.units import AnyUnit, Flags
 
 LIGHT = ("target_center_lux", "target_min_lux", "target_uva_w_m2")
 DETAIL = ("smallest_gap_mm", "smallest_line_mm")
 SEEN = (*DETAIL, "frame_hz")
-SIZE = ("fits", "outer_diameter_mm", "passes")
+SIZE = ("fits", "outer_diameter_mm", "enters", "tip", "elbow", "passes")
 RUNGS = np.log([1.03, 1.08, 1.17, 1.35, 1.7, 2.5, 4.0])
 BISECTIONS = 40
 CLOSE = 0.004  # of the change: how near the edge is found
@@ -72,7 +72,7 @@ KNOBS = (
         down=("target_min_lux", "evenness", "field_of_view_deg", *SEEN),
     ),
     Knob("image.bundle.core_um", up=SEEN, down=DETAIL),
-    Knob("image.bundle.pitch_um", up=SEEN, down=(*SEEN, "bend_radius_mm", "passes")),
+    Knob("image.bundle.pitch_um", up=SEEN, down=(*SEEN, "bend_radius_mm", "elbow", "passes")),
     Knob(
         "image.bundle.diameter_mm",
         up=("target_min_lux", "evenness", "field_of_view_deg"),
@@ -86,11 +86,11 @@ KNOBS = (
     Knob("image.chip.longest_exposure_s", up=DETAIL, down=("frame_hz",)),
     Knob("viewer.camera.longest_exposure_s", up=DETAIL, down=("frame_hz",)),
     Knob("viewer.camera.relay_na", up=SEEN),
-    Knob("body.section.outer_diameter_mm", up=("fits",), down=("outer_diameter_mm", "passes")),
+    Knob("body.section.outer_diameter_mm", up=("fits",), down=SIZE),
     Knob("body.section.wall_mm", down=SIZE),
     Knob("body.section.clearance_mm", down=SIZE),
-    Knob("body.passage.rigid_tip_mm", down=("rigid_tip_mm", "passes")),
-    Knob("body.handling.bend_radius_mm", down=("bend_radius_mm", "passes")),
+    Knob("body.passage.rigid_tip_mm", down=("rigid_tip_mm", "tip", "passes")),
+    Knob("body.handling.bend_radius_mm", down=("bend_radius_mm", "elbow", "passes")),
 )
 
 
@@ -142,7 +142,7 @@ class _Asked:
                 [(now[name] >= 0) | (was >= 0) for name, was in before.items()]
             )
             whole[possible] = ready & meeting(now)
-            numbers = [(now[name] > was) | (was >= 0) for name, was in before.items() if name not in BESIDES]
+            numbers = [(now[name] > was) | (was >= 0) for name, was in before.items() if name not in FLAGS]
             better[possible] = ready & np.logical_and.reduce(numbers) if numbers else ready
         return helped, whole, better
 
