@@ -1,6 +1,7 @@
 """Levers: each is what `size` says of the changed design, ranked, possible, and the ones that hand calculation expects."""
 
 import math
+from functools import lru_cache
 
 import pytest
 from random_designs import BARE, CABLE, drawn
@@ -47,33 +48,38 @@ def named(found, path: str):
     return [lever for lever in found if lever.path == path]
 
 
+def design_with(here: presets.Design, settings: dict) -> presets.Design:
+    return presets.resolve(presets.edited(here.document, settings))
+
+
+@lru_cache
+def answers(variant: str):
+    """The design's report, and each lever with the report of its changed design."""
+    here = design(*VARIANTS[variant])
+    return size(here.fiberscope), [
+        (lever, size(design_with(here, lever.settings).fiberscope)) for lever in levers(here)
+    ]
+
+
 @pytest.mark.parametrize("variant", VARIANTS)
 def test_each_is_what_size_says_of_the_changed_design(variant):
-    here = design(*VARIANTS[variant])
-    now = size(here.fiberscope).light
-    found = levers(here)
+    now, found = answers(variant)
     assert found
-    by_watts = here.fiberscope.source.lamp.flux_lm is None
-    for lever in found:
-        then = size(design_with(here, lever.settings).fiberscope)
+    by_watts = design(*VARIANTS[variant]).fiberscope.source.lamp.flux_lm is None
+    for lever, then in found:
         assert lever.delivered_lm == pytest.approx(then.light.delivered_lm, rel=1e-9)
         assert lever.delivered_w == pytest.approx(then.light.delivered_w, rel=1e-9)
-        gain = (
-            then.light.delivered_w / now.delivered_w if by_watts else then.light.delivered_lm / now.delivered_lm
-        ) - 1
+        measure = "delivered_w" if by_watts else "delivered_lm"
+        gain = getattr(then.light, measure) / getattr(now.light, measure) - 1
         assert lever.gain_share == pytest.approx(gain, rel=1e-9)
         assert lever.gain_share > 0
         if then.target:
             assert lever.center_lux == pytest.approx(then.target.center_lux, rel=1e-9)
 
 
-def design_with(here: presets.Design, settings: dict) -> presets.Design:
-    return presets.resolve(presets.edited(here.document, settings))
-
-
 @pytest.mark.parametrize("variant", VARIANTS)
 def test_sorted_and_said_once(variant):
-    found = levers(design(*VARIANTS[variant]))
+    found = [lever for lever, _ in answers(variant)[1]]
     assert [lever.gain_share for lever in found] == sorted((lever.gain_share for lever in found), reverse=True)
     assert len({lever.words for lever in found}) == len(found)
 
@@ -81,11 +87,8 @@ def test_sorted_and_said_once(variant):
 @pytest.mark.parametrize("variant", VARIANTS)
 def test_none_spoils_what_stood(variant):
     """What is lost of the needs is named; fitting, passing, heat, steam and the strain of bends are kept."""
-    here = design(*VARIANTS[variant])
-    before = size(here.fiberscope)
-    for lever in levers(here):
-        changed = design_with(here, lever.settings)
-        after = size(changed.fiberscope)
+    before, found = answers(variant)
+    for lever, after in found:
         met = {line.name for line in before.needs if line.met}
         assert set(lever.breaks) == {line.name for line in after.needs if line.name in met and not line.met}
         if before.fit and before.fit.passes:
@@ -146,7 +149,7 @@ def test_thick_fibers_are_packed_no_tighter_than_they_go():
             assert lever.settings.get("guide.bundle.packing_fraction", 0.3) <= 2 * 1.0**2 / 2.0**2
 
 
-@pytest.mark.parametrize("seed", range(12))
+@pytest.mark.parametrize("seed", range(6))
 def test_random_designs(seed):
     document = presets.edited(presets.open("gearbox_tooth").document, drawn(seed))
     try:
