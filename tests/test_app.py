@@ -133,6 +133,14 @@ def test_a_pinned_reference_shows_the_change():
     assert not any(item.delta for item in app.metric)
 
 
+def test_what_was_added_is_not_marked_value_by_value():
+    app = opened()
+    click(app, "guide.bundle.bends:add")
+    assert "●" not in app.number_input(key="guide.bundle.bends.1.radius_mm").label
+    click(app, "guide.bundle.bends:back")
+    assert app.session_state["sketch"].document == DEMO
+
+
 @pytest.mark.parametrize("name", preset_names("fiberscopes"))
 def test_every_section_of_every_demo_is_shown(name):
     app = opened(drawn=True, d=link.written(name, {}))

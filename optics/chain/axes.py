@@ -5,12 +5,23 @@ the rules across fields as masks; `evaluate_axes` gives the numbers that `evalua
 the body, the light, the target and the detail only on distinct inputs and gathers at the end.
 """
 
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
 
-from optics.chain.columns import ABSENT, Columns, distinct_rows
+from optics.chain.axes_parts import (
+    Codes,
+    code_of,
+    codes_of,
+    grouped,
+    joined,
+    joined_light,
+    joined_lit,
+    lit_rows,
+    taken_rows,
+)
+from optics.chain.columns import Columns, distinct_rows
 from optics.chain.detail import detail
 from optics.chain.evaluate import STEPS, Figures
 from optics.chain.fit import TABLES as SECTION
@@ -86,17 +97,17 @@ def evaluate_axes(columns: Columns, progress: Progress | None = None) -> tuple[F
     are nan. Raises OutOfRange where a stage refuses a design.
     """
     columns = solved(columns)
-    codes = _codes(columns)
+    codes = codes_of(columns)
     seen = field_of_view(columns)
     body, ports, ports_row = _fitted(columns, codes, seen)
     lit, lit_row = _lit(columns, codes)
-    numbers = [_code(seen["field_radius_mm"]), _code(pupil_depth_mm(columns))]
-    first, landed_row = _grouped([lit_row, ports_row, *numbers, codes.of(TARGET)])
-    landed = _joined_lit(
-        target(columns.take(rows), _lit_rows(lit, lit_row[rows]), _taken(ports, rows), _taken(seen, rows))
+    numbers = [code_of(seen["field_radius_mm"]), code_of(pupil_depth_mm(columns))]
+    first, landed_row = grouped([lit_row, ports_row, *numbers, codes.of(TARGET)])
+    landed = joined_lit(
+        target(columns.take(rows), lit_rows(lit, lit_row[rows]), taken_rows(ports, rows), taken_rows(seen, rows))
         for rows in _blocks(first)
     )
-    first, told_row = _grouped([landed_row, codes.of(DETAIL)])
+    first, told_row = grouped([landed_row, codes.of(DETAIL)])
     told, ready = _told(columns, landed, landed_row, seen, first, progress)
     value = {name: found[lit_row] for name, found in lit.value.items()}
     value.update({name: found[landed_row] for name, found in landed.value.items()})
@@ -118,7 +129,7 @@ def evaluate_possible(columns: Columns) -> tuple[Figures, Flags]:
         return Figures({}, {}, {}), np.zeros(columns.count, bool)
     half = columns.count // 2
     parts = [evaluate_possible(columns.take(rows)) for rows in np.split(np.arange(columns.count), [half])]
-    return _joined([figures for figures, _ in parts], [len(good) for _, good in parts]), np.concatenate(
+    return joined([figures for figures, _ in parts], [len(good) for _, good in parts]), np.concatenate(
         [good for _, good in parts]
     )
 
@@ -127,56 +138,8 @@ def distinct_inputs(columns: Columns) -> dict[str, int]:
     """How many distinct sections and lights a set of designs has."""
     return {
         "sections": len(distinct_rows(columns, SECTION)[0]),
-        "lights": len(_grouped([_codes(columns).of(LIGHT)])[0]),
+        "lights": len(grouped([codes_of(columns).of(LIGHT)])[0]),
     }
-
-
-# Which designs share an input: whole numbers that tell the distinct values of a column apart
-
-
-class _Codes:
-    """Codes of the columns that are not the same in all designs, joined on demand."""
-
-    def __init__(self, count: int, found: dict[str, np.ndarray]):
-        self.count, self.found = count, found
-
-    def of(self, prefixes: tuple[str, ...]) -> np.ndarray:
-        """One code for everything under these tables."""
-        parts = [code for path, code in self.found.items() if path.startswith(prefixes)]
-        return _grouped(parts)[1] if parts else np.zeros(self.count, int)
-
-
-def _codes(columns: Columns) -> _Codes:
-    found = {}
-    for path, column in sorted(columns.number.items()):
-        filled = np.where(np.isnan(column), ABSENT, column).reshape(columns.count, -1)
-        for item in range(filled.shape[1]):
-            if (filled[:, item] != filled[0, item]).any():
-                found[f"{path}.{item}"] = _code(filled[:, item])
-    for path, column in sorted(columns.text.items()):
-        if (column != column[0]).any():
-            order = {text: place for place, text in enumerate(sorted(set(column.tolist())))}
-            found[f"{path}.text"] = np.array([order[text] for text in column.tolist()])
-    for path, curves in sorted(columns.curve.items()):
-        if (curves.row != curves.row[0]).any():
-            found[f"{path}.curve"] = curves.row - curves.row.min()
-    return _Codes(columns.count, found)
-
-
-def _code(column: np.ndarray) -> np.ndarray:
-    return np.unique(np.where(np.isnan(column), ABSENT, column), return_inverse=True)[1].ravel()
-
-
-def _grouped(parts: list[np.ndarray]) -> tuple[np.ndarray, np.ndarray]:
-    """(first row of each distinct combination, for every row which of them it is)."""
-    code = np.zeros(len(parts[0]), np.int64)
-    for part in parts:
-        size = int(part.max()) + 1
-        if int(code.max()) >= (1 << 62) // size:
-            code = np.unique(code, return_inverse=True)[1].ravel().astype(np.int64)
-        code = code * size + part
-    _, first, inverse = np.unique(code, return_index=True, return_inverse=True)
-    return first, inverse.ravel()
 
 
 def _blocks(rows: np.ndarray) -> Iterator[np.ndarray]:
@@ -184,20 +147,17 @@ def _blocks(rows: np.ndarray) -> Iterator[np.ndarray]:
         yield rows[start : start + BLOCK]
 
 
-# The stages on distinct inputs
-
-
-def _fitted(columns: Columns, codes: _Codes, seen: dict[str, np.ndarray]):
+def _fitted(columns: Columns, codes: Codes, seen: dict[str, np.ndarray]):
     """Numbers of the body, the ports, and a code of the ports alone [design]."""
-    first, row = _grouped([codes.of(BODY), _code(seen["image_mm"])])
+    first, row = grouped([codes.of(BODY), code_of(seen["image_mm"])])
     body, ports = fit(columns.take(first), seen["image_mm"][first])
     layout = np.concatenate([ports[name] for name in sorted(ports)], axis=1)
-    return _taken(body, row), _taken(ports, row), np.unique(layout, axis=0, return_inverse=True)[1].ravel()[row]
+    return taken_rows(body, row), taken_rows(ports, row), np.unique(layout, axis=0, return_inverse=True)[1].ravel()[row]
 
 
-def _lit(columns: Columns, codes: _Codes) -> tuple[Light, np.ndarray]:
-    first, row = _grouped([codes.of(LIGHT)])
-    return _joined_light([light(columns.take(rows)) for rows in _blocks(first)]), row
+def _lit(columns: Columns, codes: Codes) -> tuple[Light, np.ndarray]:
+    first, row = grouped([codes.of(LIGHT)])
+    return joined_light([light(columns.take(rows)) for rows in _blocks(first)]), row
 
 
 def _told(columns, landed: Lit, landed_row, seen, first, progress):
@@ -206,58 +166,9 @@ def _told(columns, landed: Lit, landed_row, seen, first, progress):
     for start in range(0, len(first), BLOCK):
         rows = first[start : start + BLOCK]
         lit = Lit(landed.center_w_m2_nm[landed_row[rows]], {})
-        for name, part in detail(columns.take(rows), lit, _taken(seen, rows)).items():
+        for name, part in detail(columns.take(rows), lit, taken_rows(seen, rows)).items():
             found.setdefault(name, np.full(len(first), np.nan))[start : start + BLOCK] = part
         ready[start : start + BLOCK] = True
         if progress is not None and progress((start + len(rows)) / len(first)) is False:
             break
     return found, ready
-
-
-def _taken(table: dict[str, np.ndarray], rows: np.ndarray) -> dict[str, np.ndarray]:
-    return {name: found[rows] for name, found in table.items()}
-
-
-def _lit_rows(lit: Light, rows: np.ndarray) -> Light:
-    return replace(
-        lit, beam=replace(lit.beam, power_w_nm=lit.beam.power_w_nm[rows], sine2_edges=lit.beam.sine2_edges[rows])
-    )
-
-
-def _joined_light(parts: list[Light]) -> Light:
-    """Blocks of light as one; a step that a block does not have is nan there."""
-    counts = [len(part.lamp_w_nm) for part in parts]
-    beam = replace(
-        parts[0].beam,
-        power_w_nm=np.concatenate([part.beam.power_w_nm for part in parts]),
-        sine2_edges=np.concatenate([part.beam.sine2_edges for part in parts]),
-    )
-    after = _stacked([part.after_lm for part in parts], counts)
-    return Light(
-        np.concatenate([part.lamp_w_nm for part in parts]),
-        beam,
-        after,
-        _stacked([part.value for part in parts], counts),
-    )
-
-
-def _joined_lit(parts: Iterable[Lit]) -> Lit:
-    parts = list(parts)
-    counts = [len(part.center_w_m2_nm) for part in parts]
-    return Lit(
-        np.concatenate([part.center_w_m2_nm for part in parts]), _stacked([part.value for part in parts], counts)
-    )
-
-
-def _joined(parts: list[Figures], counts: list[int]) -> Figures:
-    return Figures(
-        _stacked([part.value for part in parts], counts), _stacked([part.after_lm for part in parts], counts), {}
-    )
-
-
-def _stacked(tables: list[dict[str, np.ndarray]], counts: list[int]) -> dict[str, np.ndarray]:
-    names = dict.fromkeys(name for table in tables for name in table)
-    return {
-        name: np.concatenate([table.get(name, np.full(count, np.nan)) for table, count in zip(tables, counts)])
-        for name in names
-    }

@@ -7,6 +7,8 @@ from optics import presets
 from optics.commands.terminal import as_json, paragraph, rounded, table
 from optics.spec import OutOfRange
 from optics.study.compare import Comparison, Difference, compare
+from optics.study.compare_cross import ALONG, RANGES, Crossover
+from optics.study.compare_cross import WORDS as GAIN
 from optics.study.compare_families import in_families
 from optics.units import unit_of
 
@@ -68,16 +70,30 @@ def written(found: Comparison, title: str, called: list[str]) -> str:
             continue
         parts += [f"  {_words(quantity)}"]
         parts += [paragraph(f"{row.of} {_by(row)}: {row.because}", lead="    ") for row in told]
-    parts += ["", "Where one overtakes the other (both moved alike, all else as it is)"]
-    for path, group in itertools.groupby(
-        sorted(found.crossovers, key=lambda row: row.path != "guide.bundle.length_m"), lambda row: row.path
-    ):
-        parts += [f"  {path}"]
-        parts += [
-            paragraph(f"{_words(row.quantity)}, {row.between[0]} and {row.between[1]}: {row.words}", lead="    ")
-            for row in group
-        ]
+    parts += ["", "Where one overtakes the other (both moved alike, all else as it is)", _crossings(found)]
     return "\n".join(parts)
+
+
+def _crossings(found: Comparison) -> str:
+    """A table for each path: a column for each pair, a row for each number."""
+    pairs = list(dict.fromkeys(row.between for row in found.crossovers))
+    said = []
+    for path, (low, high) in RANGES.items():
+        what, unit = ALONG[path]
+        rows = []
+        for quantity in dict.fromkeys(row.quantity for row in found.crossovers):
+            mine = [row for row in found.crossovers if (row.quantity, row.path) == (quantity, path)]
+            cells = (", ".join(_crossing(row, unit) for row in mine if row.between == pair) for pair in pairs)
+            rows.append((GAIN[quantity], *cells))
+        said += [paragraph(f"{what} ({path}), {low:g} to {high:g} {unit}")]
+        said += [table([("", *(f"{one} | {other}" for one, other in pairs)), *rows], indent=4, wrap=False)]
+    return "\n".join(said)
+
+
+def _crossing(row: Crossover, unit: str) -> str:
+    if row.value is None:
+        return f"{row.ahead} all along" if row.ahead else "none"
+    return f"{row.ahead} beyond {rounded(row.value)} {unit}"
 
 
 def _row(quantity: str, group: list[Difference]) -> tuple[str, ...]:

@@ -9,7 +9,7 @@ from optics import presets
 from optics.commands.terminal import add_design, as_json, paragraph, rounded, table
 from optics.report.verdict import NAMES
 from optics.study.pick import MOST, NEAREST, SEED, Failed, Pick, Picked, pick
-from optics.study.pick_needs import SHORT, spoken
+from optics.study.pick_needs import SHORT
 from optics.study.smallest_change import Change
 from optics.units import unit_of
 
@@ -79,7 +79,9 @@ def written(found: Picked, name: str, shown: int) -> str:
     if found.picks:
         rows = [_row(number, each) for number, each in enumerate(found.picks[:shown], 1)]
         head = ("", "gap mm", "center lx", "outer mm", "bend mm", "margin", "cost", "")
-        parts += ["Picks: none is better in everything (cost class 1 cheap to 5 dear, by rules of the trade)"]
+        parts += [
+            "Picks: none beats another in everything (margin: of the closest need; cost: 1 cheap to 5 dear, trade rules)"
+        ]
         parts += [table([head, *rows], right=(0, 1, 2, 3, 4, 5, 6)), ""]
         if len(found.picks) > shown:
             parts += [paragraph(f"{len(found.picks) - shown} more; --show or --json lists them all."), ""]
@@ -87,7 +89,7 @@ def written(found: Picked, name: str, shown: int) -> str:
     if found.failing:
         rows = [(f"{count:,}", _short(name)) for name, count in found.failing.items()]
         parts += ["What fails first, in the order of the light", table(rows, right=(0,)), ""]
-    near = [each for each in found.failed[:SHOWN_FAILED]]
+    near = _unlike(found)
     if near:
         parts += ["Nearest misses"]
         for each in near:
@@ -106,6 +108,16 @@ def written(found: Picked, name: str, shown: int) -> str:
     return "\n".join(parts).rstrip()
 
 
+def _unlike(found: Picked) -> list[Failed]:
+    """The nearest failures that differ in what fails, in what would help, or in the image."""
+    seen: dict[tuple[str, ...], Failed] = {}
+    for each in found.failed[:NEAREST]:
+        image = str(each.set.get("image.bundle.preset")), str(each.set.get("image.chip.preset"))
+        kind = each.first_reason.split(":")[0], each.smallest_change.path if each.smallest_change else ""
+        seen.setdefault((*kind, *image), each)
+    return list(seen.values())[:SHOWN_FAILED]
+
+
 def _sentence(found: Picked) -> str:
     said = f"{found.met:,} of {found.candidates:,} candidates meet everything; {len(found.picks)} of them are picked."
     if found.combinations > found.candidates + found.impossible:
@@ -116,7 +128,8 @@ def _sentence(found: Picked) -> str:
 
 
 def _row(number: int, each: Pick) -> tuple[str, ...]:
-    worst = min((line.margin for line in each.needs if line.margin is not None), default=None)
+    # The lens is chosen for the field of view, so that margin says nothing.
+    worst = min((line.margin for line in each.needs if line.name != "field_of_view_deg"), default=None)
     summary = each.summary
     light = summary.target_center_lux
     return (
@@ -173,7 +186,9 @@ def _change(change: Change | None) -> str:
         unit_of(change.path) or "", ""
     )
     ratio = change.after / change.before - 1
-    return f"passes with {change.path} {spoken(change.after)}{unit} instead of {spoken(change.before)}{unit} ({ratio:+.1%})"
+    digits = next((n for n in range(3, 9) if f"{change.after:.{n}g}" != f"{change.before:.{n}g}"), 9)
+    after, before = (f"{number:.{digits}g}" for number in (change.after, change.before))
+    return f"passes with {change.path} = {after}{unit} instead of {before}{unit} ({ratio:+.2%})"
 
 
 def _bar(share_done: float) -> None:

@@ -44,8 +44,8 @@ def written(found: Split, name: str) -> str:
     parts += [table([head, *rows], right=(0, 1, 2, 3, 4)), ""]
     parts += [
         paragraph(
-            f"Shares are of {rounded(found.shared_area_mm2)} mm2: what fibers may take of the lumen beside channels and wires. The "
-            "image's share counts its jacket. The field of view stays as it is: the focal length follows the image."
+            f"Shares are of {rounded(found.shared_area_mm2)} mm2, what fibers may take of this tube; that of the image counts "
+            "its jacket. The field of view stays as it is: the focal length follows the image."
         )
     ]
     if found.best:
@@ -70,7 +70,7 @@ def _sentence(found: Split) -> str:
     now = "nothing is resolved" if found.now_gap_mm is None else f"a gap of {rounded(found.now_gap_mm)} mm"
     said += f" As it stands the design gives {found.now_fraction:.0%} to the image: {now}."
     if not best.fits:
-        said += " Its ports, shaped as they are, do not lie in the tube side by side: a ring, a crescent or more and smaller ports would."
+        said += " Its ports as they are do not lie beside the image in this tube: a ring, a crescent or smaller ports would."
     return said
 
 

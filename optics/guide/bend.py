@@ -185,11 +185,12 @@ def bends_cone_na(
 
 
 def _behind_bends(core_index, clad_index, core_um, bend_radius_mm, bend_deg, launch_na):
-    """Edges of angle bins (24 inside the launch cone, 24 above, to 2.4 NA^2) and the light left in each."""
+    """Edges of angle bins (24 inside the launch cone, 32 above it, narrow at first) and the light left in each."""
     na = float(numerical_aperture(core_index=core_index, clad_index=clad_index))
     require("launch_na", launch_na, "above 0 and at most the NA", 0 < launch_na <= na * (1 + 1e-6))
     top = min(2.4 * na**2, 0.999 * core_index**2)
-    edges = np.concatenate([np.linspace(0, launch_na**2, 25), np.linspace(launch_na**2, top, 25)[1:]])
+    above = launch_na**2 + (top - launch_na**2) * np.linspace(0, 1, 33)[1:] ** 2
+    edges = np.concatenate([np.linspace(0, launch_na**2, 25), above])
     bends = {"bend_radius_mm": np.atleast_1d(bend_radius_mm), "bend_deg": np.atleast_1d(bend_deg)}
     matrix = bend_matrix(sine2_edges=edges, na=na, core_index=core_index, core_um=core_um, **bends)
     return edges, matrix[:24].mean(axis=0)

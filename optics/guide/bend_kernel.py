@@ -23,14 +23,18 @@ from optics.units import AnyUnit
 # Nodes of the table: relative bend Xe = X (1 - m), angle tau/sqrt(Xe) with tau = phi sqrt((1 - m)/m), and m.
 # Dense around Xe 0.45, where long bends turn from keeping to losing their middle angles.
 BEND_NODES = np.array(
-    [0.02, 0.035, 0.055, 0.08, 0.115, 0.16, 0.21, 0.27, 0.34, 0.41, 0.49, 0.58, 0.7, 0.85, 1.05, 1.35, 1.75]
+    """0.02 0.035 0.06 0.1 0.15 0.21 0.27 0.32 0.36 0.39 0.415 0.44 0.465 0.49 0.515 0.545 0.585 0.64 0.72 0.85
+    1.05 1.35 1.75""".split(),
+    dtype=float,
 )
 ANGLE_NODES = np.array(
-    [0.12, 0.2, 0.3, 0.4, 0.5, 0.62, 0.76, 0.93, 1.15, 1.45, 1.85, 2.4, 3.2, 4.5, 6.5, 10, 16, 26, 45, 80, 140, 260]
+    """0.12 0.2 0.3 0.4 0.5 0.6 0.7 0.82 0.95 1.1 1.25 1.45 1.65 1.9 2.15 2.45 2.8 3.2 3.7 4.4 5.5 7.5 11 17 28 50
+    110 260""".split(),
+    dtype=float,
 )
-SHARE_NODES = np.array([0.001, 0.1, 0.22, 0.36])
+SHARE_NODES = np.array([0.001, 0.12, 0.24, 0.36])
 MOMENTS = 3  # of the skewness
-DEGREES = 9  # of the step in zeta
+DEGREES = 11  # of the step in zeta
 FINE = (12, 4, 5)  # level intervals within reach of the limit, below, above: of the survival
 COARSE = (5, 3, 4)  # of the spread
 LEVEL_SCALE = 0.05  # levels above the limit lie at s = 1 + 0.05 (2^k - 1)
@@ -142,7 +146,7 @@ def unpacked(flat: np.ndarray) -> Kernel:
     return Kernel(survival.reshape(count, fine), guided.reshape(count, fine), scores, by_kind)
 
 
-def step_moments(scores: AnyUnit) -> np.ndarray:
+def step_moments(scores):
     """[design, level, pair, degree]: the Legendre moments of the step that these scores stand for."""
     vectors = kernel().vectors["between"] @ np.linalg.pinv(_step_powers())
     return np.tensordot(scores, vectors, axes=1)

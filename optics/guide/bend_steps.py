@@ -13,7 +13,7 @@ import numpy as np
 
 from optics.guide import bend_kernel as table
 
-BLOCK = 16  # designs worked on at a time: their arrays stay in the cache
+BLOCK_CELLS = 9_200  # bins^2 times designs worked on at a time: their arrays stay in the cache
 SCALINGS = 4  # of rows and columns together; the last errors go to the rows
 _GAUSS = np.array([0.5 - np.sqrt(1 / 12), 0.5 + np.sqrt(1 / 12)])
 
@@ -22,7 +22,7 @@ def bend_rows(edges, x, turn, share):
     """Matrix [design, bin in, bin out] of each design's row of separate bends.
 
     edges [design, bin + 1] in s; x, turn (in radians) [design, k]; share [design]. Designs with equally many
-    bends that act go together, BLOCK at a time, each by the same operations as if it were alone.
+    bends that act go together, a block at a time, each by the same operations as if it were alone.
     """
     out = np.tile(np.eye(edges.shape[1] - 1), (len(edges), 1, 1))
     acts = (x > 0) & (turn > 0)
@@ -32,9 +32,10 @@ def bend_rows(edges, x, turn, share):
     kept = survival * guided
     count = acts.sum(axis=1)
     first = np.cumsum(count) - count
+    block = max(BLOCK_CELLS // out.shape[1] ** 2, 1)
     for bends in np.unique(count[count > 0]):
         rows = np.flatnonzero(count == bends)
-        for some in np.split(rows, np.arange(BLOCK, len(rows), BLOCK)):
+        for some in np.split(rows, np.arange(block, len(rows), block)):
             parts = (first[some] + k for k in range(bends))
             ones = ((x[design[at], bend[at]], kept[at], partly[at], scores[at]) for at in parts)
             out[some] = _row(edges[some], share[some, None], ones, bends)

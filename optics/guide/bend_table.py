@@ -18,7 +18,7 @@ from optics.guide import raytrace
 RAYS = 120_000  # a pair of bend and share; all angles are stops on the way of the same rays
 SEED = 20_261_201
 HIGHEST = 2.6  # s up to which rays are launched
-RANK = 28  # singular vectors kept of the spread
+RANK = 32  # singular vectors kept of the spread
 SMOOTHING = 1e-3  # weight of the first differences in a fit
 
 
@@ -150,8 +150,8 @@ def table_values(survival: np.ndarray, guided: np.ndarray, spread: np.ndarray, r
 def document(values: np.ndarray) -> str:
     """The text of presets/tables/bend_kernel.toml."""
     held = tables.pack(values, -1.0, 1.0)
-    return f"""source = "independent_trace"
-at = "made by optics/guide/bend_table.py with seed {SEED}, {RAYS} rays a node; checked against the source's values"
+    return f"""source = "bend_trace"
+at = "made by optics/guide/bend_table.py with seed {SEED}, {RAYS} rays a node, from the exact trace"
 basis = "derived"
 note = "survival and spread of light in bends, see optics/guide/bend_kernel.py"
 shape = {held["shape"]}

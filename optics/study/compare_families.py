@@ -7,8 +7,9 @@ from optics.fiberscope import SOLVE, Fiberscope
 from optics.image.bundle import ImageBundle
 from optics.presets import Design, edited, resolve
 from optics.spec import OutOfRange
-from optics.study.pick_axes import PACKING, packed_fraction, preset_settings
 from optics.study.pick_cost import PLASTIC_C
+from optics.study.pick_parts import PACKING, packed_fraction
+from optics.study.pick_settings import preset_settings
 from optics.units import mm_from_um
 
 # Guide and image bundle that stand for each family.

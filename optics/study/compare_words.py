@@ -188,7 +188,10 @@ def _outer(first: Told, other: Told) -> str:
 
 
 def _bend(first: Told, other: Told) -> str:
-    return f"set by {_bender(other)} against {_bender(first)}"
+    least = [digits(each["value"]["bend_radius_mm"], "bend_radius_mm") for each in (first, other)]
+    if _bender(first) == _bender(other):
+        return f"{_bender(first)} in both, {least[1]} against {least[0]}"
+    return f"set by {_bender(other)}, {least[1]}, against {_bender(first)}, {least[0]}"
 
 
 def _bender(told: Told) -> str:

@@ -5,7 +5,7 @@ pass the bore and stand heat and steam, the Pareto set in detail, light, outer d
 is picked. Of those that fail, the nearest ones get the smallest single change that would make them pass.
 """
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -15,14 +15,16 @@ from optics.chain.axes import Progress, crossed, distinct_inputs, evaluate_axes,
 from optics.chain.columns import Columns, columns
 from optics.chain.evaluate import Figures
 from optics.needs import NeedLine, Needs, Summary
-from optics.presets import Design, resolve
-from optics.spec import OutOfRange, require
-from optics.study.pick_axes import Choices, Settings, applied, axes
+from optics.presets import Design, edited, resolve
+from optics.spec import require
+from optics.study.pick_axes import Choices, axes
 from optics.study.pick_cost import cost_class
 from optics.study.pick_front import pareto_rows
 from optics.study.pick_needs import first_failing, margins, meeting, number, reason, shortfall, summary_of
 from optics.study.pick_relax import Relaxation, nearest_relaxation
+from optics.study.pick_settings import Settings
 from optics.study.smallest_change import Change, smallest_changes
+from optics.units import Flags
 
 MOST, SEED = 12_000, 0
 NEAREST = 200  # failing candidates that get a smallest change
@@ -94,7 +96,7 @@ class Failures(Sequence[Failed]):
 
 @dataclass(frozen=True, slots=True)
 class Picked:
-    """The answer: picks (cheapest and best balanced first), failures (nearest first), and what was looked at.
+    """The answer: picks (cheapest, then thinnest first), failures (nearest first), and what was looked at.
 
     `failing` counts what fails first; `sections` and `lights` are how many distinct ones the candidates share;
     `impossible` combinations were masked by the rules; `stopped`: the caller stopped it, the rest was not looked at.
@@ -137,7 +139,7 @@ def pick(
     stopped = not done.all()
     if stopped:
         found, figures = found.take(np.flatnonzero(done)), taken(figures, done)
-    needs = resolve(applied(design.document, given or {})).fiberscope.needs
+    needs = resolve(edited(design.document, given or {})).fiberscope.needs
     margin = margins(needs, found.table, figures)
     met, place = meeting(margin), first_failing(margin)
     names = list(margin)
@@ -147,7 +149,7 @@ def pick(
     near = [] if stopped else failing[np.isfinite(short[failing])][:nearest]
     changes = smallest_changes(needs, found.table, margin, np.asarray(near, int))
     return Picked(
-        picks=_picks(found, needs, figures, margin, met),
+        picks=_picks(found, needs, figures, met),
         failed=Failures(found, needs, figures, failing, [(*names, "")[at] for at in place], changes),
         candidates=len(found.choice),
         met=int(met.sum()),
@@ -162,10 +164,8 @@ def pick(
 
 def candidates(design: Design, given: Settings, *, most: int, seed: int) -> tuple[Candidates, int]:
     """All candidates of a design, and how many combinations there were: a seeded choice of more than `most`."""
-    document = applied(design.document, given)
+    document = edited(design.document, given)
     scope = resolve(document).fiberscope
-    if scope.scene is not None and scope.image is None and not scope.needs.wanted():
-        raise OutOfRange("needs is empty; pick needs at least one need to choose by.")
     found = tuple(axes(document, scope))
     sizes = [max(len(axis.settings) - 1, 1) for axis in found]
     total = int(np.prod(sizes))
@@ -194,16 +194,13 @@ def _dropped(path: str, made: Settings) -> bool:
     )
 
 
-def _picks(found: Candidates, needs: Needs, figures: Figures, margin, met) -> tuple[Pick, ...]:
-    """The Pareto set, cheapest first, then by the worst margin."""
+def _picks(found: Candidates, needs: Needs, figures: Figures, met: Flags) -> tuple[Pick, ...]:
+    """The Pareto set, cheapest first, then the thinnest."""
     rows, cost = np.flatnonzero(met), cost_class(found.table)
     if not rows.size:
         return ()
     rows = rows[pareto_rows(objectives(figures, cost, rows))]
-    worst = np.min(
-        [np.where(np.isfinite(each), each, 0.0)[rows] for each in margin.values()] or [np.zeros(len(rows))], axis=0
-    )
-    order = rows[np.lexsort((rows, -worst.round(FINEST), cost[rows]))]
+    order = rows[np.lexsort((rows, objectives(figures, cost, rows)[:, 2], cost[rows]))]
     return tuple(_pick(found, needs, figures, int(cost[row]), int(row)) for row in order)
 
 
@@ -225,8 +222,3 @@ def _rounded(numbers: np.ndarray) -> np.ndarray:
 def _pick(found: Candidates, needs: Needs, figures: Figures, cost: int, row: int) -> Pick:
     summary, lines = summary_of(needs, figures, row)
     return Pick(found.settings(row), summary, lines, cost, float(figures["delivered_lm"][row]))
-
-
-def documents(found: Candidates, design: Design, rows: Sequence[int]) -> Iterator[dict[str, Any]]:
-    """The documents of some candidates, as `size` would read them."""
-    yield from (applied(design.document, found.settings(row)) for row in rows)

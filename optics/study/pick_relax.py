@@ -11,15 +11,15 @@ from optics.chain.axes import evaluate_possible
 from optics.chain.columns import Columns
 from optics.chain.evaluate import Figures
 from optics.needs import AT_MOST, Needs
-from optics.report.verdict import NAMES
+from optics.report.verdict import NAMES, UNITS
 from optics.study.pick_needs import BESIDES, number, spoken
 from optics.study.smallest_change import Change
+from optics.units import unit_of
 
 BORE, OUTER = "body.passage.bore_mm", "body.section.outer_diameter_mm"
 DIGITS = 6
 PASSING = {"fits", "enters", "tip", "elbow", "passes"}
 WIDER = 4.0  # the widest bore tried, over the one asked for
-HALVINGS = 40
 
 
 @dataclass(frozen=True, slots=True)
@@ -122,4 +122,5 @@ def outward(limit: float, up: bool) -> float:
 def _said(change: Change) -> str:
     name = change.path.removeprefix("needs.")
     what = {BORE: "the bore", OUTER: "the tube's outer diameter"}.get(change.path) or NAMES[name]
-    return f"relax {what} from {spoken(change.before)} to {spoken(change.after)}"
+    unit = UNITS.get(unit_of(name) or "", "")
+    return f"relax {what} from {spoken(change.before)} to {spoken(change.after)} {unit}".rstrip()

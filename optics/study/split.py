@@ -1,8 +1,9 @@
 """How to share a tube between image and light: the share at which the finest detail is seen at the target.
 
-The tube is fixed. Its free area is the lumen less channels and wires; fibers may take `free_fill_fraction` of it.
-Of that the image part (bundle and jacket) gets the share `image_fraction` and the light fibers the rest. The field of
-view stays as it is, so the focal length follows the image: more cores over the same field see finer until the light
+The tube is fixed, and with it the area that fibers may take: in a tube of given diameter `free_fill_fraction` of the
+lumen beside channels and wires, in one that is solved for just what the design's fibers take there now. Of this area
+the image part (bundle and jacket) gets the share `image_fraction` and the light fibers the rest. The field of view
+stays as it is, so the focal length follows the image: more cores over the same field see finer, until the light
 that is left starves the camera. All else stays: pitch, stop, lamp, launch.
 """
 
@@ -16,7 +17,7 @@ from optics.chain.axes import evaluate_possible, holding
 from optics.chain.columns import Columns, columns
 from optics.chain.evaluate import evaluate
 from optics.chain.solve import with_solved
-from optics.fiberscope import Fiberscope
+from optics.fiberscope import SOLVE, Fiberscope
 from optics.presets import Design, edited, resolve
 from optics.spec import OutOfRange, require
 from optics.units import AnyUnit
@@ -139,7 +140,7 @@ def split(design: Design, given: Mapping[str, Any] | None = None, *, step: float
         now_fraction=image / (image + light),
         now_gap_mm=gap if np.isfinite(gap) else None,
         outer_diameter_mm=tube.outer_diameter_mm,
-        solved=scope.body.section.outer_diameter_mm == "solve",
+        solved=scope.body.section.outer_diameter_mm == SOLVE,
         shared_area_mm2=tube.usable_mm2,
     )
 
@@ -162,9 +163,10 @@ def fixed_tube(scope: Fiberscope) -> Tube:
     others = [channel.inner_mm + 2 * channel.wall_mm for channel in section.channels]
     others += [wire.diameter_mm for wire in section.wires for _ in range(wire.count)]
     free = np.pi / 4 * (float(figures["lumen_mm"][0]) ** 2 - sum(each**2 for each in others))
+    given = section.free_fill_fraction * max(free, 0.0)
     return Tube(
         table,
-        float(section.free_fill_fraction * max(free, 0.0)),
+        float(sum(_taken_mm2(table, figures)) if section.outer_diameter_mm == SOLVE else given),
         float(figures["outer_diameter_mm"][0]),
         float(figures["image_distance_mm"][0]),
         float(figures["focus_from_pupil_mm"][0]),

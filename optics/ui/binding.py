@@ -24,8 +24,14 @@ def bound_to(key: str, value: Any) -> str:
 
 
 def is_changed(path: str) -> bool:
-    """Whether the document says something else at a path, or below it, than the design that was opened."""
+    """Whether the document says something else at a path, or below it, than the design that was opened.
+
+    Within a table or list item that was added as a whole, nothing is: what changed is that it is there.
+    """
     here = sketch.current()
+    table = path.rpartition(".")[0]
+    if "." in table and value_at(here.opened, table) is None:
+        return False
     return value_at(here.document, path) != value_at(here.opened, path)
 
 

@@ -4,12 +4,13 @@ import streamlit as st
 
 STYLE = """
 <style>
-.st-key-strip-narrow { display: none; }
+.st-key-strip-narrow, .st-key-view-narrow { display: none; }
 @media (max-width: 640px) {
-  .st-key-strip-wide { display: none; }
-  .st-key-strip-narrow { display: block; }
+  .st-key-strip-wide, .st-key-view-wide { display: none; }
+  .st-key-strip-narrow, .st-key-view-narrow { display: block; }
 }
 [data-testid="stTabPanel"] [data-testid="stImage"] { max-width: 640px; }
+[data-testid="stTabPanel"] .st-key-view-wide [data-testid="stImage"] { max-width: 960px; }
 [data-testid="stSliderTickBar"] { display: none; }
 [data-testid="stSliderThumbValue"] { opacity: 0; }
 [data-testid="stSlider"]:is(:hover, :focus-within) [data-testid="stSliderThumbValue"] { opacity: 1; }

@@ -4,7 +4,7 @@ from collections.abc import Callable
 
 import streamlit as st
 
-from optics.ui import pictures, provenance, rows
+from optics.ui import pictures, provenance, rows, view
 from optics.ui.names import place, spoken
 from optics.ui.sketch import Sketch
 from optics.ui.words import plain, sentence_case
@@ -124,6 +124,7 @@ SECTIONS: dict[str, Callable[[Sketch], None]] = {
     "Light": light,
     "Target": target,
     "Detail": detail,
+    "View": view.section,
     "Fit": fit,
     "Working range": working_range,
     "Screening": screening,

@@ -153,7 +153,7 @@ def test_a_change_reaches_the_answer_the_picture_and_the_link(browser, address):
     page.wait_for_function("old => location.href !== old", arg=first)
     assert light.inner_text() != before
     assert "d=" in page.url
-    for tab in ("Target", "Detail", "Fit", "Working range", "Screening", "Needs", "Sources", "Caveats"):
+    for tab in ("Target", "Detail", "View", "Fit", "Working range", "Screening", "Needs", "Sources", "Caveats"):
         page.get_by_role("tab", name=tab).click()
         seen.settled()
     seen.check()
