@@ -72,7 +72,7 @@ def find(path_or_name: str | Path) -> Path:
 def resolve(document: Document, where: str = "the design") -> Design:
     """The design that a document stands for: presets expanded, validated once, every value sourced."""
     for key, value in HEADER.items():
-        if document.get(key) != value:
+        if document.get(key) != value or isinstance(document.get(key), bool):
             raise OutOfRange(f"{where}: {key} is {document.get(key)!r}; it must be {value!r}.")
     sourced: dict[str, Sourced] = {}
     given = {key: value for key, value in document.items() if key not in HEADER}
@@ -94,7 +94,9 @@ def _expanded(table: Mapping[str, Any], path: str, sourced: dict[str, Sourced], 
         at = f"{path}.{key}" if path else key
         if key == "preset":
             continue
-        if isinstance(value, Mapping) and CURVE.issuperset(value):  # an own curve stands for the preset's, tolerance and all
+        if isinstance(value, Mapping) and CURVE.issuperset(
+            value
+        ):  # an own curve stands for the preset's, tolerance and all
             full[key] = dict(value)
             sourced[at] = Sourced("curve", None, None, "own_scenario", where, "assumed")
         elif isinstance(value, Mapping):
@@ -189,7 +191,7 @@ def edited(document: Document, settings: Mapping[str, Any]) -> Document:
         elif value is None:
             holder.pop(last, None)
         else:
-            if last == "form" and holder.get("form", value) != value:
+            if last == "form" and holder.get("form", _first_form(path)) != value:
                 _change_form(holder, path.removesuffix(".form"), value)
                 for other, table in COMPANIONS.get((path, value), {}).items():
                     _put(fresh, other, table)
@@ -224,6 +226,11 @@ def _index(items: list, part: str, path: str) -> None:
     if not part.isdigit() or int(part) >= len(items):
         allowed = f"0 to {len(items) - 1}" if items else "none, the list is empty"
         raise OutOfRange(f"{path} names the list item {part!r}; allowed: {allowed}.")
+
+
+def _first_form(path: str) -> str | None:
+    """The form of a table that does not say it: the first, which is the default where there is one."""
+    return next(iter(FORMS.get(path.removesuffix(".form"), {})), None)
 
 
 def _change_form(table: dict[str, Any], path: str, form: str) -> None:

@@ -11,7 +11,7 @@ from optics.image.field import field_half_angle_deg, field_radius_mm
 from optics.image.objective import apparent_distance_mm, image_distance_mm
 from optics.image.tip import reduced_path_mm
 from optics.scene.cover import apparent_thickness_mm
-from optics.scene.field import Lighting, field_irradiance
+from optics.scene.field import Lighting, field_irradiance, lit_tangents
 from optics.scene.ports import Annulus, Crescent, Disc, Port
 from optics.scene.surface import bore_field, plane_field, seen_wall_mm
 from optics.spectrum import GRID_NM, integral, luminous_flux_lm
@@ -95,6 +95,9 @@ def target(columns: Columns, lit: Light, ports: dict[str, np.ndarray], seen: dic
         "center_w_m2",
         "first_lit_mm",
         "uva_w_m2",
+        "fully_lit_mm",
+        "nearest_port_mm",
+        "port_gap_mm",
     )
     value = {name: np.full(columns.count, np.nan) for name in names}
     center = np.zeros((columns.count, lit.beam.power_w_nm.shape[-1]))
@@ -116,9 +119,22 @@ def target(columns: Columns, lit: Light, ports: dict[str, np.ndarray], seen: dic
         over_field = {"mean_lux": over.mean_lux, "min_lux": over.least_lux, "evenness": over.evenness}
         for name, found in {**over_field, "unlit_fraction": over.unlit_share}.items():
             value[name][rows] = np.where(np.isnan(radius), np.nan, found)
+        value["fully_lit_mm"][rows] = np.maximum(_fully_lit_mm(placed, edges, luminous_flux_lm(power)) - behind, 0.0)
+        away = np.where(placed["radius_mm"] > 0, np.hypot(placed["x_mm"], placed["y_mm"]), np.inf)
+        value["nearest_port_mm"][rows] = away.min(axis=1)
+        value["port_gap_mm"][rows] = (away - placed["radius_mm"]).min(axis=1)
         value["center_w_m2"][rows] = integral(center[rows])
         value["uva_w_m2"][rows] = integral(center[rows] * ((UVA_NM[0] <= GRID_NM) & (UVA_NM[1] >= GRID_NM)))
     return Lit(center, value)
+
+
+def _fully_lit_mm(ports: dict[str, np.ndarray], edges: np.ndarray, flux: np.ndarray) -> np.ndarray:
+    """From where on every port lights the axis, by the outermost light: (s + a)/tan alpha of the farthest port edge."""
+    _, tangent = lit_tangents(sine2_edges=edges, flux=flux)
+    reach = np.where(ports["radius_mm"] > 0, np.hypot(ports["x_mm"], ports["y_mm"]) + ports["radius_mm"], 0.0).max(
+        axis=1
+    )
+    return np.where(tangent > 0, reach / np.where(tangent > 0, tangent, 1.0), np.inf)
 
 
 def _needs_surface(columns: Columns, ports: dict[str, np.ndarray]) -> np.ndarray:

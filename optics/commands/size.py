@@ -103,6 +103,7 @@ def _target_rows(report: Report):
         ("irradiance at the center", target.center_w_m2, "W/m2"),
         ("radius of the field", target.field_radius_mm, "mm"),
         ("light reaches the axis from", target.first_lit_mm, "mm"),
+        ("every port lights the axis from", target.fully_lit_mm, "mm"),
     ]
 
 

@@ -35,7 +35,7 @@ def sections(view: TubeView, *, palette: Palette = LIGHT, width_in: float = WIDT
     """The tip's face and the tube behind it at one scale, each part in the key below; fibers at their own size."""
     across = (width_in - 2 * MARGIN - BETWEEN) / 2
     keys = [list(_key(view, view.tip, tube=False)), list(_key(view, view.tube, tube=True))]
-    foot = 0.42 + ROW * max(len(key) for key in keys)
+    foot = 0.5 + ROW * max(len(key) for key in keys)
     figure, axes = sheet(width_in, across + foot + 0.34, palette)
     scale = across / max(view.outer_diameter_mm, view.needed_lumen_mm)
     for side, (parts, key, title) in enumerate(
@@ -52,14 +52,15 @@ def sections(view: TubeView, *, palette: Palette = LIGHT, width_in: float = WIDT
             left + across / 2, foot + across + 0.12, title, color=palette.ink, fontsize=TEXT, ha="center", va="bottom"
         )
         for row, (kind, said) in enumerate(key):
-            y = foot - 0.28 - ROW * row
+            y = foot - 0.36 - ROW * row
             axes.add_patch(
                 Circle((left + 0.07, y), 0.055, facecolor=_fill(palette, kind), edgecolor=palette.ink, linewidth=THIN)
             )
             axes.text(left + 0.19, y, said, color=palette.ink, fontsize=SMALL, va="center_baseline")
     bar = round_length(view.outer_diameter_mm / 3)
-    axes.plot([MARGIN, MARGIN + bar * scale], [foot, foot], color=palette.ink, linewidth=2.0, solid_capstyle="butt")
-    axes.text(MARGIN + bar * scale + 0.07, foot, f"{three(bar)} mm", color=palette.ink, fontsize=SMALL, va="center")
+    low = foot - 0.1
+    axes.plot([MARGIN, MARGIN + bar * scale], [low, low], color=palette.ink, linewidth=2.0, solid_capstyle="butt")
+    axes.text(MARGIN + bar * scale + 0.07, low, f"{three(bar)} mm", color=palette.ink, fontsize=SMALL, va="center")
     return figure
 
 
@@ -129,6 +130,20 @@ def _key(view: TubeView, parts: Sequence[Part], *, tube: bool) -> Iterator[tuple
         yield "fiber", f"{view.fibers_count:,} light fibers ⌀ {three(view.fiber_mm)} mm"
 
 
+def _light(parts: Sequence[Part], same: Sequence[Part]) -> str:
+    """What light parts are called that are not round ports beside the objective; nothing for all others."""
+    if same[0].kind != "light" or len(same) > 1:
+        return ""
+    port = same[0]
+    inner = next((part for part in parts if part.kind == "image"), None)
+    if inner is None:
+        return port.name
+    away = float(np.hypot(inner.x_mm - port.x_mm, inner.y_mm - port.y_mm))
+    if away + inner.diameter_mm / 2 > port.diameter_mm / 2 * (1 + 1e-6):
+        return ""
+    return "light ring" if away < 1e-6 * port.diameter_mm else "light crescent"
+
+
 def limit(view: LimitCurve, *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) -> Figure:
     """What just passes the bend over what is varied: below the line it passes; the design as a dot, the needs dashed."""
     figure, axes = chart(width_in, 3.2, palette, left=0.72, right=0.22, bottom=0.52, top=0.36)
@@ -137,20 +152,8 @@ def limit(view: LimitCurve, *, palette: Palette = LIGHT, width_in: float = WIDTH
     top = 1.12 * max(float(y.max()), own_y, view.needed[1] or 0.0)
     axes.fill_between(x, y, color=palette.back, alpha=0.13, linewidth=0)
     axes.plot(x, np.where(y > 0, y, np.nan), color=palette.back, linewidth=1.4 * LINE)
-    if view.stiff_mm is not None and view.stiff_mm < x[-1]:
-        axes.axvspan(view.stiff_mm, x[-1], facecolor=palette.accent, alpha=0.13, linewidth=0)
-        axes.axvline(view.stiff_mm, color=palette.accent, linewidth=THIN * 1.5)
-        _said(
-            axes,
-            palette,
-            view.stiff_mm,
-            0.97 * top,
-            "too stiff for the bend",
-            x,
-            width_in - 0.94,
-            palette.accent,
-            top=True,
-        )
+    if view.stiff_mm is not None:
+        _stiff(axes, palette, view, top, width_in - 0.94)
     for along, value in zip((axes.axvline, axes.axhline), view.needed):
         if value is not None:
             along(value, color=palette.ink, linewidth=THIN * 1.3, linestyle=(0, (4, 2)))
@@ -159,21 +162,33 @@ def limit(view: LimitCurve, *, palette: Palette = LIGHT, width_in: float = WIDTH
         axes.plot(*view.own, "o", color=palette.ink if good else palette.accent, markersize=7, zorder=5, clip_on=False)
         said = f"{'✓' if good else '✗'} this design"
         ink = palette.ink if good else palette.accent
-        _said(axes, palette, *view.own, said, x, width_in - 0.94, ink, top=False)
+        _said(axes, palette, *view.own, said, x, width_in - 0.94, ink, below=good)
     axes.set(xlim=(x[0], x[-1]), ylim=(0, top), xlabel=AXES[view.vary], ylabel=AXES[view.limit])
     key = "shaded: passes the bend" + ("; dashed: the most that is wanted" if any(view.needed) else "")
     figure.text(0.12 / width_in, 1 - 0.17 / 3.2, key, color=palette.soft, fontsize=SMALL, va="center")
     return figure
 
 
+def _stiff(axes: Axes, palette: Palette, view: LimitCurve, top: float, room: float) -> None:
+    """From which tube on the bore gives less than its least bend radius, on the axis that has the tube's diameter."""
+    across = view.vary == "outer_diameter_mm"
+    if view.stiff_mm >= (view.varied[-1] if across else top):
+        return
+    span, line = (axes.axvspan, axes.axvline) if across else (axes.axhspan, axes.axhline)
+    span(view.stiff_mm, view.varied[-1] if across else top, facecolor=palette.accent, alpha=0.13, linewidth=0)
+    line(view.stiff_mm, color=palette.accent, linewidth=THIN * 1.5)
+    at = (view.stiff_mm, 0.02 * top) if across else (view.varied[0], view.stiff_mm)
+    _said(axes, palette, *at, "too stiff for the bend", view.varied, room, palette.accent, below=False)
+
+
 def _said(
-    axes: Axes, palette: Palette, x: float, y: float, said: str, span: np.ndarray, room: float, ink: str, *, top: bool
+    axes: Axes, palette: Palette, x: float, y: float, said: str, span: np.ndarray, room: float, ink: str, *, below: bool
 ) -> None:
     """Words beside a place, on the side that has room."""
     inch = room / (span[-1] - span[0])
     left = (x - span[0]) * inch + width_of(said, SMALL, True) + 0.2 > room
     axes.annotate(
-        said, (x, y), (-7 if left else 7, 0 if top else 7), textcoords="offset points", color=ink, fontsize=SMALL, weight="bold",
-        ha="right" if left else "left", va="top" if top else "bottom",
+        said, (x, y), (-7 if left else 7, -5 if below else 5), textcoords="offset points", color=ink, fontsize=SMALL,
+        weight="bold", ha="right" if left else "left", va="top" if below else "bottom",
         bbox={"facecolor": palette.paper, "edgecolor": "none", "pad": 1.0, "alpha": 0.75},
     )  # fmt: skip

@@ -1,4 +1,4 @@
-"""Pictures of what makes the image sharp: the contrast of each part against what is needed, and what is resolved over one number of the design."""
+"""Pictures of what makes the image sharp: each part's contrast against what is needed, and what is resolved over one number."""
 
 from collections.abc import Sequence
 from itertools import groupby
@@ -8,24 +8,27 @@ from matplotlib.axes import Axes
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 
-from optics.figures.canvas import chart, panel, spread, three, width_of
+from optics.figures.canvas import chart, panel, spread, three
 from optics.figures.palette import BOLD, LIGHT, LINE, SMALL, TEXT, THIN, WIDTH_IN, Palette
-from optics.study.sharper import Sharpness
+from optics.study.sharper import FLAT, Sharpness
 from optics.study.sharper_curves import Contrasts
 
 # Inches: of the chart of contrasts; of the panels of sharpness, their gap and margins
-HIGH, RIGHT = 3.5, 1.02
-PANEL, GAP, TOP, FOOT, LEFT, EDGE = 1.5, 0.62, 0.42, 0.5, 0.62, 0.2
-CORES = 0.34  # above the panel of the pitch, for the scale of cores
+HIGH, RIGHT, HEAD = 3.5, 0.9, 0.3
+PANEL, GAP, TOP, FOOT, LEFT, EDGE = 1.5, 0.95, 0.36, 0.5, 0.62, 0.2
+CORES = 0.26  # above the panel of the pitch, for the scale of cores
 SERIES = {"lattice": 0, "crosstalk": 1, "camera": 2, "light": 3, "objective": 4, "focus": 5}
-WHOLE = 0.97  # a part that leaves more than this wherever detail is resolved is not drawn in color
+WHOLE = 0.97  # a part that leaves more than this wherever detail is resolved is drawn in soft ink
+ROOM = 0.8  # inches of a line that can carry its name
+# Of each number: its name, its unit, the word for more of it, and how a value of it is written
 NAMES = {
-    "image.bundle.pitch_um": ("core pitch", "µm"),
-    "image.chip.pixel_um": ("pixel pitch", "µm"),
-    "image.objective.f_number": ("f-number", ""),
-    "source.lamp.flux_lm": ("the lamp's light", "lm"),
-    "source.lamp.flux_w": ("the lamp's light", "W"),
+    "image.bundle.pitch_um": ("core pitch", "µm", "Smaller", "{} µm"),
+    "image.chip.pixel_um": ("pixel pitch", "µm", "Smaller", "{} µm"),
+    "image.objective.f_number": ("f-number", "", "Wider", "f/{}"),
+    "source.lamp.flux_lm": ("the lamp's light", "lm", "More light", "{} lm"),
+    "source.lamp.flux_w": ("the lamp's light", "W", "More light", "{} W"),
 }
+CALLED = {"lattice": "the lattice", "objective": "the objective", "camera": "the camera", "eye": "the eye"}
 STEPS = ((1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 6.0, 8.0), (1.0, 2.0, 5.0), (1.0, 3.0), (1.0,))
 
 
@@ -38,10 +41,11 @@ def part_color(part: str | None, palette: Palette) -> str:
 
 def contrasts(seen: Contrasts, *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) -> Figure:
     """Each part's contrast (thin), all together (bold), what is needed (dashed); resolved where the last two meet."""
-    figure, axes = chart(width_in, HIGH, palette, left=LEFT, right=RIGHT, bottom=FOOT, top=0.3)
-    f, lowest = seen.frequency_lp_mm, min(float(seen.product_mtf.min()), 0.0)
-    axes.set(xlim=(f[0], f[-1]), ylim=(max(1.1 * lowest, -0.5), 1.02))
+    figure, axes = chart(width_in, HIGH, palette, left=LEFT, right=RIGHT, bottom=FOOT, top=HEAD)
+    f, lowest = seen.frequency_lp_mm, float(seen.product_mtf.min())
+    axes.set(xlim=(f[0], f[-1]), ylim=(max(1.1 * lowest, -0.5) if lowest < 0 else 0.0, 1.02))
     axes.set(xlabel="line pairs per mm, at the target", ylabel="contrast left")
+    axes.xaxis.set_major_formatter(lambda value, _: three(value))
     if lowest < 0:
         axes.axhline(0, color=palette.grid, linewidth=THIN)
     _beyond_lattice(axes, seen, palette)
@@ -51,27 +55,21 @@ def contrasts(seen: Contrasts, *, palette: Palette = LIGHT, width_in: float = WI
     axes.plot(f, seen.needed_mtf, color=palette.accent, linewidth=LINE, linestyle=(0, (4, 2)))
     axes.plot(f, seen.product_mtf, color=palette.ink, linewidth=BOLD)
     ends += [("all parts", float(seen.product_mtf[-1]), palette.ink, "bold")]
-    ends += [(f"needed of {three(seen.detail_contrast)}", float(seen.needed_mtf[-1]), palette.accent, "bold")]
-    _named(axes, ends, f[-1], HIGH - FOOT - 0.3)
+    ends += [("needed", float(seen.needed_mtf[-1]), palette.accent, "bold")]
+    _named(axes, ends, f[-1], HIGH - FOOT - HEAD)
     _crossing(axes, seen, palette)
     return figure
 
 
 def _lines(axes: Axes, seen: Contrasts, palette: Palette) -> list[tuple[str, float, str, str]]:
-    """The parts that take something, each in its color; those that take next to nothing as one name."""
-    named, quiet, inside = [], [], seen.frequency_lp_mm <= max(seen.resolved_lp_mm, 0.5 * seen.frequency_lp_mm[-1])
+    """The parts that take something, each in its color; those that take next to nothing in soft ink."""
+    named, f = [], seen.frequency_lp_mm
+    inside = f <= max(seen.resolved_lp_mm, 0.5 * f[-1])
     for part, left in seen.mtf.items():
-        if left[inside].min() > WHOLE:
-            quiet.append(part)
-            continue
-        color = part_color(part, palette)
-        axes.plot(seen.frequency_lp_mm, left, color=color, linewidth=LINE)
+        quiet = left[inside].min() > WHOLE
+        color = palette.soft if quiet else part_color(part, palette)
+        axes.plot(f, left, color=color, linewidth=THIN if quiet else LINE)
         named.append((part, float(left[-1]), color, "normal"))
-    if quiet:
-        height = float(np.mean([seen.mtf[part][-1] for part in quiet]))
-        for part in quiet:
-            axes.plot(seen.frequency_lp_mm, seen.mtf[part], color=palette.soft, linewidth=THIN)
-        named.append(("\n".join(quiet), height, palette.soft, "normal"))
     return named
 
 
@@ -79,46 +77,38 @@ def _named(axes: Axes, ends: list[tuple[str, float, str, str]], right: float, hi
     """Names beside the ends of the lines, kept apart."""
     low, top = axes.get_ylim()
     inch = high_in / (top - low)
-    order = sorted(ends, key=lambda end: -end[1])
-    rows, taken = [], 0
-    for name, *_ in order:
-        rows.append(taken + name.count("\n") / 2)
-        taken += 1 + name.count("\n")
-    wanted = [(top - min(max(at, low), top)) * inch for _, at, *_ in order]
-    lines = [name.count("\n") for name, *_ in order]
-    placed = spread([w - 0.0 for w in wanted], 0.17 * (1 + max(lines) / 2), 0.05, high_in - 0.05)
-    for (name, _, color, weight), at in zip(order, placed):
-        axes.text(
-            right, top - at / inch, f" {name}", color=color, fontsize=SMALL, weight=weight, va="center", linespacing=1.1
-        )
+    places = spread([(top - min(max(at, low), top)) * inch for _, at, *_ in ends], 0.165, 0.03, high_in)
+    for (name, _, color, weight), at in zip(ends, places):
+        axes.text(right, top - at / inch, f" {name}", color=color, fontsize=SMALL, weight=weight, va="center")
 
 
 def _beyond_lattice(axes: Axes, seen: Contrasts, palette: Palette) -> None:
-    limit, end = seen.lattice_limit_lp_mm, seen.frequency_lp_mm[-1]
+    limit, end = seen.lattice_limit_lp_mm, float(seen.frequency_lp_mm[-1])
     if limit >= end:
         return
     axes.axvspan(limit, end, facecolor="none", edgecolor=palette.grid, hatch="///", linewidth=0, zorder=0)
     axes.axvline(limit, color=palette.soft, linewidth=THIN)
+    side = "right" if limit > 0.7 * end else "center"
     axes.annotate(
-        f"lattice ends at {three(limit)}", (limit, 1.02), (0, 4), textcoords="offset points",
-        xycoords=("data", "data"), ha="center", color=palette.soft, fontsize=SMALL,
+        f"the lattice ends at {three(limit)}", (limit, 1.0), (3 if side == "right" else 0, 5), ha=side,
+        xycoords=("data", "axes fraction"), textcoords="offset points", color=palette.soft, fontsize=SMALL,
     )  # fmt: skip
 
 
 def _crossing(axes: Axes, seen: Contrasts, palette: Palette) -> None:
-    at = seen.resolved_lp_mm
+    at, paper = seen.resolved_lp_mm, {"facecolor": palette.paper, "edgecolor": "none", "pad": 1.5, "alpha": 0.85}
     if at <= 0:
-        axes.text(0.5, 0.5, "nothing is resolved:\nmore is needed than is left", transform=axes.transAxes, ha="center",
-                  va="center", color=palette.accent, fontsize=TEXT, weight="bold")  # fmt: skip
+        axes.text(0.5, 0.3, "nothing is resolved: at every frequency\nmore is needed than is left", ha="center",
+                  transform=axes.transAxes, color=palette.accent, fontsize=TEXT, weight="bold", bbox=paper)  # fmt: skip
         return
-    height = float(np.interp(at, seen.frequency_lp_mm, seen.product_mtf))
+    height, low = float(np.interp(at, seen.frequency_lp_mm, seen.product_mtf)), max(axes.get_ylim()[0], 0.0)
     axes.plot([at, at], [axes.get_ylim()[0], height], color=palette.ink, linewidth=THIN)
-    axes.plot(at, height, "o", color=palette.ink, markersize=6, markeredgecolor=palette.paper, clip_on=False)
-    right = at < 0.55 * seen.frequency_lp_mm[-1]
+    axes.plot(at, height, "o", color=palette.ink, markersize=6, markeredgecolor=palette.paper, clip_on=False, zorder=5)
+    right = at < 0.62 * seen.frequency_lp_mm[-1]
     axes.annotate(
-        f"resolved {three(at)} lp/mm,\na gap of {three(0.5 / at)} mm", (at, max(axes.get_ylim()[0], 0.0)),
-        (7 if right else -7, 8), textcoords="offset points", ha="left" if right else "right", va="bottom",
-        color=palette.ink, fontsize=SMALL, weight="bold",
+        f"resolved {three(at)} lp/mm:\na gap of {three(0.5 / at)} mm", (at, low), (7 if right else -7, 7),
+        textcoords="offset points", ha="left" if right else "right", va="bottom", color=palette.ink, fontsize=SMALL,
+        weight="bold", bbox=paper,
     )  # fmt: skip
 
 
@@ -136,125 +126,120 @@ def sharper(
 ) -> Figure:
     """One panel for each number on one scale of line pairs per mm; the line's color is the part that limits.
 
-    Ring: the design; dot: the sharpest; shaded: going on makes it no sharper; dashed: what is asked.
+    Ring: the design; dot: the sharpest; shaded: going on gains under 5 %; dashed: what is asked; dotted: the lattice limit.
     """
-    tops = [TOP + (CORES if np.isfinite(curve.core_count).any() and _is_pitch(curve) else 0.0) for curve in curves]
-    high = sum(tops) + len(curves) * panel_in + (len(curves) - 1) * GAP + FOOT - 0.1 * (len(curves) - 1)
-    figure = Figure(figsize=(width_in, high), facecolor=palette.paper)
+    tops = [TOP + CORES * _has_cores(curve) for curve in curves]
+    high = sum(tops) + len(curves) * panel_in + (len(curves) - 1) * (GAP - TOP) + FOOT
+    figure, above = Figure(figsize=(width_in, high), facecolor=palette.paper), 0.0
     FigureCanvasAgg(figure)
-    above = 0.0
     for curve, top in zip(curves, tops):
         above += top
         axes = panel(figure, palette, left=LEFT, right=EDGE, top=above, bottom=high - above - panel_in)
-        _sharpness(axes, curve, palette, top_lp_mm, wanted_lp_mm, width_in - LEFT - EDGE)
-        above += panel_in + GAP - 0.1
+        axes.set(ylim=(0, 1.2 * top_lp_mm), ylabel="lp/mm at the target" if panel_in > PANEL else "lp/mm")
+        _panel(axes, curve, palette, wanted_lp_mm, width_in - LEFT - EDGE)
+        above += panel_in + GAP - TOP
     return figure
 
 
-def _is_pitch(curve: Sharpness) -> bool:
-    return curve.path.endswith("pitch_um")
-
-
-def _sharpness(
-    axes: Axes, curve: Sharpness, palette: Palette, top: float, wanted: float | None, wide_in: float
-) -> None:
-    name, unit = NAMES[curve.path]
-    x, y = curve.value, curve.resolved_lp_mm
-    axes.set(xscale="log", xlim=(x[0], x[-1]), ylim=(0, 1.16 * top), ylabel="lp/mm")
+def _panel(axes: Axes, curve: Sharpness, palette: Palette, wanted: float | None, wide_in: float) -> None:
+    (name, unit, *_), x = NAMES[curve.path], curve.value
+    axes.set(xscale="log", xlim=(x[0], x[-1]))
     places = round_places(x[0], x[-1], 9 if wide_in > 4 else 6)
     axes.set_xticks(places, [three(place) for place in places])
     axes.set_xticks([], minor=True)
     axes.set_xlabel(f"{name}, {unit}" if unit else name)
     axes.yaxis.set_major_formatter(lambda value, _: three(value))
-    if curve.stops:
-        beyond = (x[0], curve.best) if curve.toward < 0 else (curve.best, x[-1])
-        axes.axvspan(*beyond, color=palette.ghost, linewidth=0, zorder=0)
-    if _is_pitch(curve):
-        axes.plot(x, curve.lattice_limit_lp_mm, color=palette.soft, linewidth=THIN, linestyle=(0, (1, 2)))
-        _beats(axes, curve, palette)
+    if curve.best_lp_mm > 0:
+        axes.axvspan(curve.enough, x[0] if curve.toward < 0 else x[-1], color=palette.ghost, linewidth=0, zorder=0)
+    if _has_cores(curve):
+        axes.plot(x, curve.lattice_limit_lp_mm, color=palette.soft, linewidth=1.3 * THIN, linestyle=(0, (1, 2)))
+        _few_pixels(axes, curve, palette)
         _cores(axes, curve, palette)
     if wanted is not None:
         axes.axhline(wanted, color=palette.ink, linewidth=THIN, linestyle=(0, (4, 2)))
     _colored(axes, curve, palette, wide_in)
-    _marks(axes, curve, palette, top)
-    _said(axes, curve, palette, unit)
+    _marks(axes, curve, palette)
+    axes.set_title(what_it_says(curve), loc="left", color=palette.ink, fontsize=TEXT, pad=23 if _has_cores(curve) else 6)
+
+
+def _has_cores(curve: Sharpness) -> bool:
+    """Whether the pitch of cores is what is moved."""
+    return curve.path.endswith("pitch_um")
 
 
 def _colored(axes: Axes, curve: Sharpness, palette: Palette, wide_in: float) -> None:
     """The line in runs of one limiting part each; a run that has room carries its name."""
     x, y, row = curve.value, curve.resolved_lp_mm, 0
-    whole = np.log(x[-1] / x[0])
     for part, group in groupby(curve.limited_by):
-        count = len(list(group))
-        run = slice(row, min(row + count + 1, len(x)))
-        seen = np.where(y[run] > 0, y[run], np.nan) if part is None else y[run]
-        axes.plot(x[run], seen, color=part_color(part, palette), linewidth=BOLD, solid_capstyle="round")
-        row += count
-    del whole, wide_in
+        run = slice(row, row + len(list(group)) + 1)  # up to the first of the next
+        row = run.stop - 1
+        color = part_color(part, palette)
+        axes.plot(x[run], y[run], color=color, linewidth=BOLD, solid_capstyle="round")
+        long = wide_in * np.log(x[run][-1] / x[run][0]) / np.log(x[-1] / x[0])
+        if part and long > ROOM and y[run].max() > 0:
+            middle = row - len(x[run]) // 2
+            low = y[middle] < 0.25 * axes.get_ylim()[1]
+            axes.annotate(part, (x[middle], y[middle]), (-3, 6 if low else -6), textcoords="offset points", ha="right",
+                          va="bottom" if low else "top", color=color, fontsize=SMALL)  # fmt: skip
 
 
-def _marks(axes: Axes, curve: Sharpness, palette: Palette, top: float) -> None:
-    axes.plot(curve.now, curve.now_lp_mm, "o", color=palette.paper, markeredgecolor=palette.ink, markersize=7,
-              markeredgewidth=LINE, clip_on=False, zorder=5)  # fmt: skip
-    near = abs(np.log(curve.best / curve.now)) < 0.03 * np.log(curve.value[-1] / curve.value[0])
-    if curve.best_lp_mm > 0 and not near:
-        axes.plot(curve.best, curve.best_lp_mm, "o", color=palette.ink, markersize=6, markeredgecolor=palette.paper,
-                  clip_on=False, zorder=5)  # fmt: skip
-    marks = [("now", curve.now, curve.now_lp_mm)] + ([] if near else [("sharpest", curve.best, curve.best_lp_mm)])
+def _marks(axes: Axes, curve: Sharpness, palette: Palette) -> None:
+    x = curve.value
+    ring = {"color": palette.paper, "markeredgecolor": palette.ink, "markersize": 7, "markeredgewidth": LINE}
+    axes.plot(curve.now, curve.now_lp_mm, "o", clip_on=False, zorder=5, **ring)
+    share = {at: float(np.log(at / x[0]) / np.log(x[-1] / x[0])) for at in (curve.now, curve.best)}
+    marks = [("now", curve.now, curve.now_lp_mm)]
+    if curve.best_lp_mm > 1.02 * curve.now_lp_mm and abs(share[curve.best] - share[curve.now]) > 0.03:
+        dot = {"color": palette.ink, "markersize": 6, "markeredgecolor": palette.paper}
+        axes.plot(curve.best, curve.best_lp_mm, "o", clip_on=False, zorder=5, **dot)
+        marks.append(("sharpest", curve.best, curve.best_lp_mm))
     for said, at, height in marks:
-        share = np.log(at / curve.value[0]) / np.log(curve.value[-1] / curve.value[0])
-        side = "left" if share < 0.2 else "right" if share > 0.8 else "center"
+        here = int(np.argmin(np.abs(np.log(x / at))))
+        rises = curve.resolved_lp_mm[min(here + 1, len(x) - 1)] > 1.002 * curve.resolved_lp_mm[max(here - 1, 0)]
+        left = share[at] < (0.25 if rises else 0.72)
         gap = f"{three(0.5 / height)} mm" if height > 0 else "nothing"
-        axes.annotate(f"{said} {gap}", (at, height), (0, 8), textcoords="offset points", ha=side, va="bottom",
-                      color=palette.ink, fontsize=SMALL, weight="bold" if said == "now" else "normal")  # fmt: skip
+        axes.annotate(f"{said} {gap}", (at, height), (5 if left else -5, 6), textcoords="offset points", va="bottom",
+                      ha="left" if left else "right", color=palette.ink, fontsize=SMALL,
+                      weight="bold" if said == "now" else "normal")  # fmt: skip
 
 
-def _beats(axes: Axes, curve: Sharpness, palette: Palette) -> None:
+def _few_pixels(axes: Axes, curve: Sharpness, palette: Palette) -> None:
     """A bar along the foot where the camera has too few pixels a pitch."""
-    few = curve.pixels_per_pitch < 4 / np.sqrt(3)
-    if not few.any():
-        return
-    low, high = curve.value[few][0], curve.value[few][-1]
-    axes.axvspan(low, high, 0, 0.03, color=palette.accent, linewidth=0)
-    axes.annotate("under 2.31 pixels a core", (low, 0), (2, 5), textcoords="offset points", color=palette.accent,
-                  fontsize=SMALL)  # fmt: skip
+    few = curve.few_pixels
+    if few.any():
+        low, high = curve.value[few][[0, -1]]
+        axes.axvspan(low, high, 0, 0.02, color=palette.soft, linewidth=0)
+        axes.annotate("pixels beat with cores", (low, 0), (3, 6), textcoords="offset points", color=palette.soft,
+                      fontsize=SMALL)  # fmt: skip
 
 
 def _cores(axes: Axes, curve: Sharpness, palette: Palette) -> None:
     """A second scale above: how many cores."""
     cores = curve.core_count
-    if not np.isfinite(cores).any():
-        return
-    counts = round_places(cores.min(), cores.max(), 6)
-    at = np.exp(np.interp(np.log(counts), np.log(cores[::-1]), np.log(curve.value[::-1])))
-    for place, count in zip(at, counts):
-        axes.annotate(f"{count:,.0f}", (place, 1), (0, 4), xycoords=("data", "axes fraction"), textcoords="offset points",
-                      ha="center", color=palette.soft, fontsize=SMALL)  # fmt: skip
+    counts = round_places(float(cores.min()), float(cores.max()), 6)
+    places = np.exp(np.interp(np.log(counts), np.log(cores[::-1]), np.log(curve.value[::-1])))
+    look = {"textcoords": "offset points", "color": palette.soft, "fontsize": SMALL}
+    for place, count in zip(places, counts):
+        axes.annotate(f"{count:,.0f}", (place, 1), (0, 4), xycoords=("data", "axes fraction"), ha="center", **look)
         axes.plot([place, place], [1, 1.02], transform=axes.get_xaxis_transform(), color=palette.soft, linewidth=THIN,
                   clip_on=False)  # fmt: skip
-    axes.annotate("cores", (0, 1), (-6, 4), xycoords="axes fraction", textcoords="offset points", ha="right",
-                  color=palette.soft, fontsize=SMALL)  # fmt: skip
+    axes.annotate("cores", (0, 1), (-6, 4), xycoords="axes fraction", ha="right", **look)
 
 
-def _said(axes: Axes, curve: Sharpness, palette: Palette, unit: str) -> None:
-    """Above the panel: where it stops, and what takes over."""
-    told = what_it_says(curve, unit)
-    pad = 22 if _is_pitch(curve) and np.isfinite(curve.core_count).any() else 6
-    axes.set_title(told, loc="left", color=palette.ink, fontsize=TEXT, pad=pad)
-
-
-def what_it_says(curve: Sharpness, unit: str) -> str:
-    """One line on a curve."""
-    best = f"{three(curve.best)} {unit}".rstrip()
+def what_it_says(curve: Sharpness) -> str:
+    """One line on a curve: where going on stops helping, and what takes over."""
+    name, _, more, written = NAMES[curve.path]
+    best, enough = (written.format(three(float(f"{value:.2g}"))) for value in (curve.best, curve.enough))
+    y, part = curve.resolved_lp_mm, CALLED.get(curve.because or "", curve.because)
     if curve.best_lp_mm <= 0:
-        return "Nothing is resolved anywhere here"
-    if curve.toward > 0:
-        return f"From {three(curve.enough)} {unit} on more light gains little: {curve.because} limits"
-    if curve.stops and curve.because == "crosstalk":
-        return f"Smaller stops being sharper at {best}: crosstalk takes over"
-    if curve.stops:
-        return f"Sharpest at {best}; then {curve.because} takes over"
-    return f"Smaller is sharper down to {best}; {curve.because} limits"
+        return f"Nothing is resolved at any {name}" if curve.toward < 0 else "Nothing is resolved in any of this light"
+    if y.min() >= FLAT * curve.best_lp_mm:
+        return f"It hardly matters here: {part} limits"
+    if y[0 if curve.toward < 0 else -1] < FLAT * curve.best_lp_mm:
+        return f"{more} stops being sharper near {best}: {part} takes over"
+    if curve.toward > 0 and part == "light":
+        return f"{more} is sharper still beyond {best}"
+    return f"{more} than {enough} gains little: {part} limits"
 
 
 def round_places(low: float, high: float, most: int) -> list[float]:
@@ -268,6 +253,3 @@ def round_places(low: float, high: float, most: int) -> list[float]:
         if len(places) <= most:
             return places
     return places[:: -(-len(places) // most)]
-
-
-assert width_of

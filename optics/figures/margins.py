@@ -130,7 +130,7 @@ def spread(
         worn = np.histogram(old, edges)[0]
         shown = max(shown, worn.max())
         axes.stairs(worn, edges, color=palette.ink, linewidth=THIN * 1.4)
-    axes.set(xlim=(low, high), ylim=(0, 1.12 * shown), yticks=[])
+    axes.set(xlim=(low, high), ylim=(0, (1.12 if wanted is None else 1.3) * shown), yticks=[])
     axes.spines["left"].set_visible(False)
     if nominal is not None:
         axes.plot(nominal, 0.0, marker="^", markersize=6, color=palette.ink, clip_on=False, zorder=5)

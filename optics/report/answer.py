@@ -35,6 +35,7 @@ class TargetAnswer:
     center_w_m2: float
     field_radius_mm: float | None
     first_lit_mm: float | None
+    fully_lit_mm: float | None
 
 
 @dataclass(frozen=True, slots=True)

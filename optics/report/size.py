@@ -91,7 +91,7 @@ def report_of(fiberscope: Fiberscope, figures: Figures, row: int, sourced: Mappi
         fit=_fit(fiberscope, number, value) if fiberscope.body else None,
         exposure=lines,
         needs=tuple(needs),
-        caveats=caveats(fiberscope, value, figures, row, sourced),
+        caveats=caveats(fiberscope, value, sourced),
     )
 
 
@@ -130,6 +130,7 @@ def _target(number: Mapping[str, Any]) -> TargetAnswer:
         number["center_w_m2"],
         number["field_radius_mm"],
         number["first_lit_mm"],
+        number["fully_lit_mm"],
     )
 
 

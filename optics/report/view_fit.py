@@ -83,7 +83,7 @@ def tube_view(fiberscope: Fiberscope) -> TubeView | None:
     fiber_mm, count = float(mm_from_um(scope.guide.fiber.fiber_um)), int(_body(scope)["fiber_count"])
     tube = _behind_the_tip(scope, view.parts)
     lumen = max(view.lumen_mm, view.needed_lumen_mm)
-    x, y = _spread(tube, lumen, fiber_mm, count)
+    x, y = _spread(tube, lumen, fiber_mm, count if view.fits else 0)
     tip = tuple(part for part in view.parts if part.kind != "wire")
     if scope.image is not None:
         axis, lens = next(part for part in tip if part.kind == "cores"), scope.image.objective

@@ -18,6 +18,7 @@ from optics.chain.fit import fit
 from optics.chain.target import field_of_view
 from optics.fiberscope import Fiberscope
 from optics.report.view_body import section_view
+from optics.report.view_fit import numbered
 from optics.units import mm_from_um, um_from_mm
 
 FRICTION = (0.2, 0.3, 0.4)  # of polymer coverings on metal and moist walls, common practice ("trade")
@@ -58,6 +59,7 @@ def bending_view(fiberscope: Fiberscope) -> BendingView | None:
     """Strain of guide fibers and image bundle, and the tube's own radius. None without a body."""
     if fiberscope.body is None:
         return None
+    fiberscope = numbered(fiberscope)
     fiber, handling = fiberscope.guide.fiber, fiberscope.body.handling
     asked, by = _asked(fiberscope)
     found = [("guide fibers", "each fiber", fiber.fiber_um, fiber.allowed_strain)]
@@ -120,7 +122,7 @@ class Slide:
 
 def slides(fiberscope: Fiberscope, bend_deg: float) -> tuple[Slide, ...]:
     """Slide of each group of parts in a bend toward its side, largest first."""
-    view = section_view(fiberscope)
+    view = section_view(numbered(fiberscope))
     if view is None:
         return ()
     names = {"image": "image bundle", "light": "light fibers", "channel": "channel", "wire": "wires"}

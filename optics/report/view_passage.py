@@ -7,6 +7,7 @@ import numpy as np
 
 from optics.body.passage import longest_rigid_tip_mm, port_tilt_deg
 from optics.fiberscope import Fiberscope
+from optics.report.view_fit import numbered
 from optics.report.view_handling import body_numbers
 from optics.units import AnyUnit, rad_from_deg
 
@@ -38,8 +39,8 @@ class PassageLimits:
 class LimitCurve:
     """The passable limit [point] over what is varied (nan: nothing passes), and the design's own point.
 
-    `stiff_mm`: on the scale of what is varied, from where on the tube is too stiff for the bend. `needed`: the most that
-    is wanted of what is varied and of what is limited.
+    `stiff_mm`: from which outer diameter on the tube is too stiff for the bend (None: not told, or all are). `needed`: the
+    most that is wanted of what is varied and of what is limited.
     """
 
     vary: Vary
@@ -84,7 +85,7 @@ def bend_of(fiberscope: Fiberscope) -> _Bend | None:
     asked = fiberscope.body and fiberscope.body.passage
     if not asked or None in (asked.bore_mm, asked.centerline_radius_mm, asked.bend_deg) or asked.bend_deg == 0:
         return None
-    body = body_numbers(fiberscope)
+    body = body_numbers(numbered(fiberscope))
     rigid = body["rigid_tip_mm"] if np.isfinite(body["rigid_tip_mm"]) else None
     bore = (asked.bore_mm, asked.centerline_radius_mm, asked.bend_deg, asked.edge_radius_mm)
     return _Bend(*bore, body["outer_diameter_mm"], rigid, body["bend_radius_mm"])
@@ -145,7 +146,11 @@ def limit_curve(fiberscope: Fiberscope, vary: Vary) -> LimitCurve | None:
     if bend is None or (vary == "centerline_radius_mm" and bend.tube_mm > bend.bore_mm):
         return None
     tube, tip, radius = bend.tube_mm, bend.rigid_mm, bend.centerline_radius_mm
-    wanted_tube, wanted_tip, stiff = fiberscope.needs.outer_diameter_mm, fiberscope.needs.rigid_tip_mm, None
+    wanted_tube, wanted_tip, stiff = (
+        fiberscope.needs.outer_diameter_mm,
+        fiberscope.needs.rigid_tip_mm,
+        stiff_tube_mm(bend),
+    )
     if vary == "rigid_tip_mm":
         longest = float(bend.longest_mm(0.05 * bend.bore_mm, radius))
         varied = np.linspace(0.02, 1.0, POINTS) * max(min(1.1 * longest, 4 * bend.bore_mm), 1.3 * (tip or 0.0))
@@ -154,11 +159,11 @@ def limit_curve(fiberscope: Fiberscope, vary: Vary) -> LimitCurve | None:
     elif vary == "outer_diameter_mm":
         varied = np.linspace(min(0.15, 0.8 * tube / bend.bore_mm), 1.0, POINTS) * bend.bore_mm
         passable, limit, needed = bend.longest_mm(varied, radius), "rigid_tip_mm", (wanted_tube, wanted_tip)
-        own, stiff = (tube, tip), stiff_tube_mm(bend)
+        own = (tube, tip)
     else:
         varied = np.linspace(bend.bore_mm / 2, max(2 * radius, 3 * bend.bore_mm), POINTS)
         passable, limit, needed = bend.longest_mm(tube, varied), "rigid_tip_mm", (None, wanted_tip)
-        own = (radius, tip)
+        own, stiff = (radius, tip), None
     if tip is None:
         return LimitCurve(vary, limit, varied, passable, None, True, stiff, needed)
     passes = tube <= bend.bore_mm and bool(bend.longest_mm(tube, radius) >= tip) and bend.flexes

@@ -13,6 +13,7 @@ from optics.report.size import report_of
 from optics.spec import OutOfRange
 from optics.study.compare_cross import Crossover, crossovers
 from optics.study.compare_words import because
+from optics.units import AnyUnit
 
 FEWEST, MOST = 2, 4
 # The numbers that are compared, in the order of the light, and where the report has them.
@@ -48,9 +49,9 @@ class Difference:
     quantity: str
     of: str
     against: str
-    value: float | None
-    reference: float | None
-    difference: Any
+    value: AnyUnit | None
+    reference: AnyUnit | None
+    difference: AnyUnit | None
     because: str
 
 
@@ -79,23 +80,28 @@ def compare(designs: Sequence[Design], names: Sequence[str] | None = None) -> Co
     """
     if not FEWEST <= len(designs) <= MOST:
         raise OutOfRange(f"{len(designs)} designs are given; compare takes {FEWEST} to {MOST}.")
+    called = distinct_names(names or [design.fiberscope.name for design in designs])
+    reports, rows = differences(designs, called)
+    return Comparison(reports, rows, crossovers([design.fiberscope for design in designs], called))
+
+
+def differences(designs: Sequence[Design], names: Sequence[str]) -> tuple[tuple[Report, ...], tuple[Difference, ...]]:
+    """The designs as reports, and the numbers of each against the first."""
     scopes = [design.fiberscope for design in designs]
-    called = distinct_names(names or [scope.name for scope in scopes])
     figures = evaluate(columns(scopes))
     reports = tuple(report_of(scope, figures, row, designs[row].sourced) for row, scope in enumerate(scopes))
-    values = [{name: float(found[row]) for name, found in figures.value.items()} for row in range(len(scopes))]
-    lamps = [figures.spectrum_w_nm["lamp"][row] for row in range(len(scopes))]
     told = [
-        dict(scope=s, report=r, value=v, lamp=w, name=n)
-        for s, r, v, w, n in zip(scopes, reports, values, lamps, called)
+        {
+            "scope": scope,
+            "report": reports[row],
+            "value": {name: float(found[row]) for name, found in figures.value.items()},
+            "lamp": figures.spectrum_w_nm["lamp"][row],
+            "name": names[row],
+        }
+        for row, scope in enumerate(scopes)
     ]
-    differences = tuple(
-        row
-        for quantity, part in QUANTITIES.items()
-        for other in told[1:]
-        if (row := _difference(quantity, part, told[0], other)) is not None
-    )
-    return Comparison(reports, differences, crossovers(scopes, called))
+    rows = (_difference(quantity, part, told[0], other) for quantity, part in QUANTITIES.items() for other in told[1:])
+    return reports, tuple(row for row in rows if row is not None)
 
 
 def distinct_names(names: Sequence[str]) -> list[str]:

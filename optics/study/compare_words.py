@@ -8,6 +8,7 @@ import numpy as np
 
 from optics.spectrum import GRID_NM, color_rendering_index, color_temperature_k
 from optics.units import unit_of
+from optics.viewer.detail import PARTS
 
 Told = Mapping[str, Any]  # scope, report, value, lamp (its spectrum), name
 
@@ -99,18 +100,19 @@ def _on_target(quantity: str) -> Callable[[Told, Told], str]:
         if light * total >= spread * total:
             return f"mostly {against('the lumens delivered', *lumens, 'delivered_lm')}: {light_step(first, other, lamp=True)}"
         per = [each / max(light_of, 1e-12) for each, light_of in zip(lux, lumens)]
-        return f"mostly {against('the lux for each lumen', *per)}: {_spread(first, other)}"
+        how = _spread(first, other, over_field=quantity != "target_center_lux")
+        return f"mostly {against('the lux for each lumen', *per)}: {how}"
 
     return said
 
 
-def _spread(first: Told, other: Told) -> str:
+def _spread(first: Told, other: Told, *, over_field: bool) -> str:
     """What makes the same lumens land otherwise: distance, cone, the field, or the ports."""
     rows = []
     for name, of in (
         ("the distance in mm", lambda each: each["scope"].scene.target.distance_mm),
         ("the exit cone's NA", lambda each: each["report"].light.exit_na),
-        ("the radius of the field in mm", lambda each: each["report"].target.field_radius_mm or 1.0),
+        ("the field's radius over its distance", _field_slope if over_field else lambda each: 1.0),
     ):
         pair = [of(each) for each in (first, other)]
         rows.append((abs(_log(pair[1]) - _log(pair[0])), against(name, *pair)))
@@ -118,11 +120,15 @@ def _spread(first: Told, other: Told) -> str:
     return said if size > 0.01 else "where the ports lie"
 
 
+def _field_slope(told: Told) -> float:
+    return (told["report"].target.field_radius_mm or 1.0) / told["scope"].scene.target.distance_mm
+
+
 def _evenness(first: Told, other: Told) -> str:
     dark = [each["report"].target.unlit_fraction for each in (first, other)]
     if max(dark) > 1e-3 and abs(dark[1] - dark[0]) > 1e-3:
         return f"mostly {against('the part of the field without light', *dark)}"
-    return f"mostly {_spread(first, other)}"
+    return f"mostly {_spread(first, other, over_field=True)}"
 
 
 def _field(first: Told, other: Told) -> str:
@@ -136,17 +142,32 @@ def _field(first: Told, other: Told) -> str:
 
 
 def _detail(first: Told, other: Told) -> str:
-    scale = [each["value"]["resolved_lp_mm"] and _scale(each) for each in (first, other)]
-    sharp = [each["value"]["resolved_lp_mm"] / max(_scale(each), 1e-12) for each in (first, other)]
+    if min(each["value"]["resolved_lp_mm"] for each in (first, other)) <= 0:
+        return "one resolves nothing"
+    scale = [_scale(each) for each in (first, other)]
+    sharp = [each["value"]["resolved_lp_mm"] / size for each, size in zip((first, other), scale)]
     gains = [_log(pair[1]) - _log(pair[0]) for pair in (scale, sharp)]
     total = sum(gains)
     if gains[0] * total >= gains[1] * total:
         return f"mostly {against('the scale of the picture, mm on the image for one at the target', *scale)}"
-    worse = other if total < 0 else first
-    part = worse["report"].summary.limited_by
+    left = {part: _without(part, first, other, sharp) for part in PARTS}
+    part = min(PARTS, key=lambda name: left[name])
     limits = [_limit(each, part) for each in (first, other)]
-    said = f"mostly the {part}, which limits {worse['name']}"
-    return said if limits[0] == limits[1] else f"{said}: alone it allows {limits[1]} against {limits[0]}"
+    allows = "" if limits[0] == limits[1] else f", which alone allows {limits[1]} against {limits[0]}"
+    return (
+        f"mostly the {part}{allows}: were it ideal in both, their detail would differ by {_percent(left[part])}, "
+        f"not by {_percent(abs(gains[1]))}"
+    )
+
+
+def _without(part: str, first: Told, other: Told, sharp: list[float]) -> float:
+    """How far apart two designs would resolve, on the image, with a part ideal in both: the logarithm of the ratio."""
+    gain = [max(float(np.nan_to_num(each["value"][f"gain.{part}"], neginf=0.0)), 0.0) for each in (first, other)]
+    return abs(_log(sharp[1] + gain[1]) - _log(sharp[0] + gain[0]))
+
+
+def _percent(log_ratio: float) -> str:
+    return f"{math.expm1(log_ratio):.0%}"
 
 
 def _scale(told: Told) -> float:

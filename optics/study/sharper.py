@@ -16,8 +16,8 @@ from optics.fiberscope import Fiberscope
 from optics.image.lattice import core_count
 from optics.spec import require
 from optics.study.sharper_curves import losses, numbered, way_of
-from optics.units import AnyUnit
-from optics.viewer.camera import WORST_PIXELS_PER_PITCH
+from optics.units import AnyUnit, Flags
+from optics.viewer.camera import LEAST_PIXELS_PER_PITCH, WORST_PIXELS_PER_PITCH
 from optics.viewer.detail import PARTS
 
 FLAT = 0.95  # as good as the best: what is resolved is at least this share of it
@@ -40,7 +40,8 @@ class Sharpness:
     `toward`: the direction that promises more, -1 for a smaller number. `best`: where most is resolved, of equal ones the
     nearest to now; `stops`: it lies inside the range, so going on makes it no better; `because`: the part that takes
     over there, or that limits where the range ends (None: nothing is resolved). `enough`: coming from the other end, the
-    first place within 5 % of the best. `core_count` nan without cores, `pixels_per_pitch` nan without a camera on them.
+    first place within 5 % of the best. `core_count` nan without cores, `pixels_per_pitch` nan without a camera on them;
+    `few_pixels` where they beat with the cores.
     """
 
     path: str
@@ -53,6 +54,7 @@ class Sharpness:
     limited_by: tuple[str | None, ...]
     core_count: np.ndarray
     pixels_per_pitch: np.ndarray
+    few_pixels: Flags
     best: AnyUnit
     best_lp_mm: float
     stops: bool
@@ -256,6 +258,7 @@ def _told(sweep: Sweep, drawn: dict[str, np.ndarray], found: dict[str, np.ndarra
         limited_by=tuple(None if np.isnan(code) else PARTS[int(code)] for code in drawn["limited_by"]),
         core_count=drawn["core_count"],
         pixels_per_pitch=drawn["pixels_per_pitch"],
+        few_pixels=drawn["pixels_per_pitch"] < LEAST_PIXELS_PER_PITCH,
         best=float(value[row]),
         best_lp_mm=float(height[row]),
         stops=bool(height[row] > 0 and abs(np.log(value[row] / end)) > END),

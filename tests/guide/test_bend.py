@@ -129,6 +129,25 @@ def test_light_of_low_angles_moves_by_the_step_it_may():
     assert found[0, EDGES[:-1] > 0.3].sum() == pytest.approx(0.0, abs=1e-12)
 
 
+def test_a_filled_cone_keeps_its_radiance():
+    # traced back, a ray of low angle comes from inside the filled cone and loses nothing (Liouville)
+    width = np.diff(EDGES)
+    for relative, angles in (([0.1], [90.0]), ([0.35], [30.0]), ([0.2, 0.2, 0.2], [120.0, 60.0, 90.0])):
+        found = matrix(relative, angles)
+        radiance = (width[:24, None] * found[:24]).sum(axis=0) / width
+        assert radiance.max() < 1.01
+        assert radiance[EDGES[1:] < 1 - 2.1 * sum(relative)] == pytest.approx(1.0, abs=0.015)
+
+
+def test_a_bend_is_the_same_backward():
+    found = matrix(0.4, 70.0)
+    middle = (EDGES[1:] + EDGES[:-1]) / 2
+    room = np.diff(EDGES) * (1 - bend_kernel.rank_share(1 - 1 / np.maximum(middle, 1.0)))
+    flow = room[:, None] * found
+    assert np.abs(flow - flow.T)[:-1, :-1].max() < 0.1 * flow.max()
+    assert np.abs(flow - flow.T)[:-1, :-1].sum() < 0.02 * flow.sum()
+
+
 def test_no_bend_is_the_unit_matrix():
     unit = np.eye(32)
     assert np.array_equal(matrix(0.3, 0.0), unit)

@@ -1,0 +1,251 @@
+"""The study of margins in words for the screen: the answer, what to tighten, what it rests on."""
+
+import re
+
+from optics.figures.margins import percent
+from optics.needs import AT_MOST
+from optics.presets import Design
+from optics.spec import OutOfRange
+from optics.study.margins_answer import DISTRIBUTION, METHOD, Causes, Condition, Distribution, Margins, NeedOdds
+from optics.study.margins_ranges import GIVEN
+from optics.ui.names import field_name, place, spoken
+from optics.ui.origin import SOFT
+from optics.ui.words import number, plain, sentence_case, unit
+
+NUMBERS = {  # headline numbers that no need names
+    "delivered_lm": "delivered light",
+    "target_mean_lux": "mean light in the field",
+    "resolved_lp_mm": "line pairs resolved",
+    "smallest_line_mm": "thinnest line",
+}
+SWITCHES = {  # what messages call by the name of a switch of the command
+    r"--tolerance path=low:high": "in the table of tolerances",
+    r"with --tolerance": "in the table of tolerances",
+    r"--tolerance ": "",
+    r"--samples": "the number of samples",
+    r"--aged broken_fraction": "the share of broken fibers",
+    r"--aged dead_fraction": "the share of dead cores",
+    r"--aged browning_db_m": "the browning",
+    r"--aged lamp": "the lamp's share",
+}
+NEVER = "that design"
+
+
+def called(name: str) -> str:
+    """A headline number in plain words.
+
+    >>> called("target_center_lux"), called("delivered_lm"), called("color_temperature_k")
+    ('light at the center', 'delivered light', 'color temperature')
+    """
+    if name in NUMBERS:
+        return NUMBERS[name]
+    try:
+        return field_name(name, f"needs.{name}")
+    except KeyError:
+        return field_name(name)
+
+
+def titled(name: str) -> str:
+    """A headline number with its unit: 'smallest gap, mm'."""
+    return f"{called(name)}, {unit(name)}" if unit(name) else called(name)
+
+
+def limit(name: str, wanted: float) -> str:
+    """A need's limit: 'at most 0.25 mm'."""
+    sign = unit(name)
+    return f"{'at most' if name in AT_MOST else 'at least'} {number(wanted, 4)}{'' if sign == '°' else ' '}{sign}".rstrip()
+
+
+def said(wrong: OutOfRange | str) -> str:
+    """A refusal as the screen says it: without the switches of the command.
+
+    >>> said("--tolerance guide.bundle.length_m is 2:3; it must be limits around the nominal value 1.8.")
+    'Bundle, length is 2:3; it must be limits around the nominal value 1.8.'
+    """
+    text = str(wrong)
+    for switch, words in SWITCHES.items():
+        text = text.replace(switch, words)
+    return sentence_case(spoken(re.sub(r"(?<=\d):(?=[\d.])", ":", text)))
+
+
+# The answer
+
+
+def headline(found: Margins) -> tuple[str, str]:
+    """(mark, the answer in one line) to: will all of them meet it?"""
+    new, count = found.new, len(found.new.needs)
+    if new.all_needs is None:
+        return "○", "No needs are set, so there is nothing to meet."
+    needs = "the one need" if count == 1 else f"all {count} needs"
+    if new.all_needs == 1:
+        return "✓", f"Every one of {found.samples:,} samples meets {needs}."
+    if new.all_needs == 0:
+        return "✗", f"Not one of {found.samples:,} samples meets {needs}."
+    return "✗", f"{odds(new)} meet {needs}."
+
+
+def odds(condition: Condition) -> str:
+    """The share that meets all needs with its standard error: '51.0 % (± 1.1)'."""
+    return _odds(condition.all_needs, condition.all_needs_standard_error)
+
+
+def _odds(share: float, error: float) -> str:
+    return f"{percent(share)} (± {_points(error)})" if error else percent(share)
+
+
+def _points(error: float) -> str:
+    return f"{100 * error:.1f}" if error >= 0.0005 else "<0.1"
+
+
+def sentences(found: Margins) -> list[str]:
+    """What stands behind the answer, most needed first, each a sentence for the screen."""
+    told = [_spread_words(found)] if found.new.all_needs is None else _missed(found.new)
+    if found.aged is not None:
+        told.append(_aged(found))
+    if found.new.passes is not None and found.new.passes < 1:
+        told.append(f"**The bore\\:** {percent(found.new.passes) if found.new.passes else 'none'} pass it.")
+    if found.new.all_needs is not None:
+        told.append(_tighten(found))
+    return [*told, *([_soft(found.causes[0])] if found.causes else [])]
+
+
+def _missed(new: Condition) -> list[str]:
+    never = [need for need in new.needs if need.probability == 0]
+    if never:
+        said = "; ".join(f"{called(need.name)} {plain(limit(need.name, need.wanted))}" for need in never)
+        return [f"**Never met\\:** {said}."]
+    worst = min(new.needs, key=lambda need: need.probability)
+    if worst.probability == 1:
+        return []
+    return [
+        f"**Most often missed\\:** {called(worst.name)}, {plain(limit(worst.name, worst.wanted))}, "
+        f"met in {_odds(worst.probability, worst.standard_error)}."
+    ]
+
+
+def _aged(found: Margins) -> str:
+    condition = f"**Aged** ({plain(found.aging.words())})"
+    if found.aged.all_needs is None:
+        return f"{condition}: see the lines in the histograms.".replace(":", "\\:")
+    return f"{condition}\\: {odds(found.aged)} meet them."
+
+
+def _tighten(found: Margins) -> str:
+    item = found.tighten
+    if item is None:
+        text = found.tighten_because
+        for need in found.new.needs:
+            text = text.replace(need.name, called(need.name))
+        return f"**Tighten\\:** {plain(text[:1].lower() + text[1:])}"
+    old = next(one for one in found.ranges if one.path == item.path)
+    of = "all needs are" if item.of == "all needs" else f"{called(item.of)} is"
+    gain = f"{100 * item.gain_probability:.1f} ± {100 * item.standard_error:.1f} points"
+    halved, whole = (f"{number(one.low)}–{number(one.high)}" for one in (item, old))
+    text = (
+        f"{driver(item.path, found)}, held to {halved} instead of {whole}: {of} then met in {percent(item.probability)}, "
+        f"a gain of {gain}. {found.tighten_because}"
+    )
+    return f"**Tighten first\\:** {plain(text.strip())}"
+
+
+def _soft(causes: Causes) -> str:
+    """How much of the answer rests on ranges that nobody measured."""
+    return (
+        f"**≈ Soft\\:** {percent(causes.soft_share)} of what moves the {called(causes.of)} comes from tolerances that are only "
+        "assumed or remembered; enter your own below."
+        if causes.soft_share >= 0.01
+        else f"**Firm\\:** hardly any of what moves the {called(causes.of)} is only assumed or remembered."
+    )
+
+
+def _spread_words(found: Margins) -> str:
+    shown = [item for item in found.new.figures if item.name in ("delivered_lm", "target_center_lux") and item.mean]
+    return " ".join(
+        f"{sentence_case(called(item.name))} {number(item.value)} {unit(item.name)}, nine in ten samples from "
+        f"{number(item.quantiles['p05'])} to {number(item.quantiles['p95'])} {unit(item.name)}."
+        for item in shown
+    )
+
+
+def driver(path: str, found: Margins) -> str:
+    """A tolerance in plain words, a curve as the factor that it is."""
+    curve = any(item.path == path and item.curve for item in found.ranges)
+    return f"{place(path)}{' (factor)' if curve else ''}"
+
+
+def need_label(need: NeedOdds) -> str:
+    """A need and its limit, in two lines."""
+    return f"{called(need.name)}\n{limit(need.name, need.wanted)}"
+
+
+def unclear(causes: Causes) -> str:
+    """A warning where the causes explain less than half."""
+    if causes.unexplained_share <= 0.5:
+        return ""
+    return "Less than half is explained: this number moves too seldom, or too abruptly, for shares to be told."
+
+
+# How it was found
+
+
+def run_words(found: Margins, seconds: float) -> str:
+    kinds = len(found.ranges)
+    return (
+        f"{found.samples:,} designs drawn from {kinds} tolerance{'s' if kinds > 1 else ''}, seed {found.seed}\\: "
+        "the same seed gives the same answer."
+    )
+
+
+def still(found: Margins) -> str:
+    """The numbers that no tolerance moves, and what limits the detail."""
+    fixed = [item for item in found.new.figures if not item.histogram and item.value is not None]
+    told = [f"{called(item.name)} {number(item.value)} {unit(item.name)}".rstrip() for item in fixed]
+    lines = [f"Hardly or not at all moved\\: {', '.join(map(plain, told))}."] if told else []
+    limited = ", ".join(f"{part} in {percent(share)}" for part, share in found.new.limited_by.items())
+    lines += [f"Detail is limited by\\: {plain(limited)}."] if limited else []
+    return "  \n".join(lines)
+
+
+def rests(found: Margins, design: Design) -> list[str]:
+    """What the answer rests on, each a sentence."""
+    told = [DISTRIBUTION, METHOD]
+    if found.drawn.redrawn:
+        why = "; ".join(f"{rule} ({count:,} times)" for rule, count in found.drawn.because)
+        told.append(
+            f"{found.drawn.redrawn:,} of {found.samples:,} samples were designs that cannot exist and were drawn again: {why}."
+        )
+    told.append("Where a diameter changes, the section is laid out anew and the ports move with it.")
+    soft = [place(item.path) for item in found.ranges if item.basis in SOFT]
+    if soft:
+        told.append(f"{len(soft)} of {len(found.ranges)} tolerances are only assumed or remembered: {'; '.join(soft)}.")
+    own = [place(item.path) for item in found.ranges if item.basis == GIVEN]
+    if own:
+        told.append(f"Entered here: {'; '.join(own)}.")
+    fixed = untouched(found, design)
+    if fixed:
+        told.append(
+            f"{len(fixed)} values have no stated tolerance and stay as they are, such as {place(fixed[0])}: the true spread is wider."
+        )
+    if found.aged is not None:
+        told.append(
+            "Aged: what aging does is entered, not foretold. Dead cores count as unevenness between cores; browning is taken as "
+            "equal at all wavelengths, though real browning takes more of the blue."
+        )
+    return [plain(spoken(line)) for line in told]
+
+
+def untouched(found: Margins, design: Design) -> list[str]:
+    """The values of the design that no tolerance moves."""
+    varied = {item.path for item in found.ranges}
+    return [
+        path
+        for path, item in design.sourced.items()
+        if path not in varied and isinstance(item.value, float) and not path.startswith("needs.")
+    ]
+
+
+def shown(found: Margins) -> list[Distribution]:
+    """The numbers worth a histogram: those with a need first, then the others; line pairs say again what the gap says."""
+    wanted = [need.name for need in found.new.needs]
+    moved = [item for item in found.new.figures if item.histogram and item.name != "resolved_lp_mm"]
+    return sorted(moved, key=lambda item: wanted.index(item.name) if item.name in wanted else len(wanted))
