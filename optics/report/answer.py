@@ -73,6 +73,13 @@ class FitAnswer:
     passes: bool | None
     bend_radius_mm: float
     passable_radius_mm: float | None
+    needed_lumen_mm: float
+
+    @property
+    def needed_diameter_mm(self) -> float | None:
+        """Outer diameter that the parts take, where the tube given is too narrow for them; None where they fit."""
+        short = self.needed_lumen_mm - self.lumen_mm
+        return self.outer_diameter_mm + short if short > 1e-9 * self.lumen_mm else None
 
 
 @dataclass(frozen=True, slots=True)

@@ -163,4 +163,5 @@ def _fit(fiberscope: Fiberscope, number: Mapping[str, Any], value: Mapping[str, 
         None if passes is None else bool(passes),
         number["bend_radius_mm"],
         number["passable_radius_mm"],
+        number["needed_lumen_mm"],
     )

@@ -23,9 +23,7 @@ UNITS = {"mm": "mm", "lux": "lx", "w_m2": "W/m2", "deg": "deg", "hz": "frames/s"
 
 def sentence(report: Report) -> str:
     """One or two sentences that answer before anything else is read."""
-    passing = ""
-    if report.fit and report.fit.passes is False:
-        passing = " It does not pass the bore as asked."
+    passing = _body(report)
     if not report.needs:
         return _plain(report) + passing
     short = sorted((line for line in report.needs if not line.met), key=_distance)
@@ -35,6 +33,26 @@ def sentence(report: Report) -> str:
     met = len(report.needs) - len(short)
     first = f"Meets {met} of {len(report.needs)} needs. Farthest off is {_told(short[0])}."
     return first + _limit(report) + passing
+
+
+def _body(report: Report) -> str:
+    """What keeps the scope from fitting or passing, in a sentence of its own."""
+    fit = report.fit
+    if fit is None:
+        return ""
+    if fit.needed_diameter_mm is not None:
+        return f" Its parts do not fit the tube: they take an outer diameter of {fit.needed_diameter_mm:.3g} mm."
+    if fit.passes is not False:
+        return ""
+    tip, longest = report.summary.rigid_tip_mm, fit.longest_rigid_tip_mm
+    if longest is None:
+        return " It does not enter the bore."
+    if tip is not None and tip > longest:
+        return f" It enters the bore but not its bend: the tip of {tip:.3g} mm may be {longest:.3g} mm long at most."
+    return (
+        f" It enters the bore but not its bend: the tube bends to {fit.bend_radius_mm:.3g} mm, the bore gives "
+        f"{fit.passable_radius_mm:.3g} mm."
+    )
 
 
 def _distance(line: NeedLine) -> float:

@@ -53,6 +53,7 @@ class FillView:
     fiber_count: int
     held_count: int
     full_lumen_mm: float
+    needed_lumen_mm: float
     fits: bool
 
 
@@ -166,16 +167,8 @@ def fill_view(fiberscope: Fiberscope) -> FillView | None:
         float(mm2_from_um2(np.pi / 4 * scope.guide.fiber.fiber_um**2) * body["fiber_count"]),
     )
     full = np.sqrt(max(lumen**2 + 4 / np.pi * (fibers / limit - free), 0.0))
-    return FillView(
-        free,
-        fibers,
-        fibers / free,
-        limit,
-        int(body["fiber_count"]),
-        int(held.fiber_count),
-        float(full),
-        bool(view.fits),
-    )
+    counts = (int(body["fiber_count"]), int(held.fiber_count))
+    return FillView(free, fibers, fibers / free, limit, *counts, float(full), view.needed_lumen_mm, bool(view.fits))
 
 
 def weights(fiberscope: Fiberscope) -> tuple[Weight, ...]:

@@ -350,7 +350,7 @@ def test_lenses_are_made_for_the_field_of_view():
 @given(number=st.floats(0.011, 99.0))
 def test_preferred_numbers_are_near_and_few(number):
     chosen = preferred(number)
-    assert abs(np.log(chosen / number)) <= np.log(4.0 / 3.15) / 2 * 1.001  # half the widest step of the series
+    assert abs(np.log(chosen / number)) <= np.log(1.6 / 1.25) / 2 * 1.001  # half the widest step of the series
     assert preferred(chosen) == chosen
 
 

@@ -1,0 +1,226 @@
+"""The words, tables and controls of the page on the fit."""
+
+from dataclasses import replace
+
+import streamlit as st
+
+from optics.fiberscope import Fiberscope
+from optics.report.answer import FitAnswer, Report
+from optics.report.view_fit import FillView, Weight
+from optics.report.view_handling import FRICTION, BendingView, Bent, Heat, Slide, entry_tilts, pushes
+from optics.report.view_passage import PassageLimits
+from optics.ui import drawings, headline
+from optics.ui.names import choice
+from optics.ui.rows import Columns, columns
+from optics.ui.sketch import Sketch
+from optics.ui.words import number, plain
+
+NEEDS = ("outer_diameter_mm", "bend_radius_mm", "rigid_tip_mm")
+VARIED = {
+    "outer diameter of the tube": "outer_diameter_mm",
+    "length of the rigid tip": "rigid_tip_mm",
+    "bend radius of the bore": "centerline_radius_mm",
+}
+
+
+def answer(report: Report, scope: Fiberscope, limits: PassageLimits | None, fill: FillView) -> None:
+    """Whether it fits and passes, and what would do where it does not."""
+    mark, first, rest = verdict(report, scope, limits, fill)
+    st.header(f"{mark} {plain(first)}", anchor=False)
+    st.markdown(plain(rest))
+    if fill.fits and fill.fill_fraction > fill.limit_fraction:
+        st.markdown(f":orange[**✗ {plain(fill_words(fill))}**]")
+    headline.needs(replace(report, needs=tuple(line for line in report.needs if line.name in NEEDS)))
+
+
+def verdict(report: Report, scope: Fiberscope, limits: PassageLimits | None, fill: FillView) -> tuple[str, str, str]:
+    """(mark, the answer, what stands behind it)."""
+    fit, passage = report.fit, scope.body.passage
+    tube, wall = number(fit.outer_diameter_mm), scope.body.section.wall_mm
+    if not fill.fits:
+        needed = number(fill.needed_lumen_mm + 2 * wall)
+        rest = (
+            f"The parts need a lumen of {number(fill.needed_lumen_mm)} mm, the tube leaves {number(fit.lumen_mm)} mm."
+        )
+        return "✗", f"The parts do not fit: they need a tube of {needed} mm, this one has {tube} mm.", rest
+    if passage is None or passage.bore_mm is None:
+        return "○", f"The parts fit a tube of {tube} mm.", "No bore is asked for, so nothing is said of passing one."
+    bore = number(passage.bore_mm)
+    if fit.outer_diameter_mm > passage.bore_mm:
+        return "✗", f"The tube of {tube} mm does not enter the bore of {bore} mm.", f"{bore} mm at most would enter."
+    if limits is None:
+        return "✓", f"It fits and enters: a tube of {tube} mm in a bore of {bore} mm.", "The bore is straight."
+    tip, longest = report.summary.rigid_tip_mm, limits.tip_for_tube_mm
+    too_long, too_stiff = tip is not None and tip > longest, fit.bend_radius_mm > fit.passable_radius_mm
+    if too_long:
+        first = f"The tip passes the bore, but its {number(tip)} mm are too long for the elbow: {number(longest)} mm at most."
+        return "✗", first, f"{_other_ways(limits)}{' ' + _stiff(fit, limits) if too_stiff else ''}"
+    if too_stiff:
+        return "✗", "The tip passes the bore, but the tube is too stiff for its elbow.", _stiff(fit, limits)
+    room = (
+        f"{number(tip)} mm of rigid tip where up to {number(longest)} mm pass the elbow"
+        if tip is not None
+        else (f"a rigid tip of up to {number(longest)} mm would pass the elbow")
+    )
+    bends = f"it bends to {number(fit.bend_radius_mm)} mm where the bore gives {number(fit.passable_radius_mm)} mm"
+    return "✓", f"It fits and passes: a tube of {tube} mm in a bore of {bore} mm.", f"There is {room}; {bends}."
+
+
+def _other_ways(limits: PassageLimits) -> str:
+    """What else would let the tip through: a thinner tube, a gentler bore."""
+    ways = []
+    if limits.tube_for_tip_mm is not None:
+        ways.append(f"a tube of {number(limits.tube_for_tip_mm)} mm")
+    if limits.radius_for_tip_mm is not None:
+        ways.append(f"a bore that bends at {number(limits.radius_for_tip_mm)} mm")
+    return f"As long as it is it takes {' or '.join(ways)}." if ways else "As long as it is no tube is thin enough."
+
+
+def _stiff(fit: FitAnswer, limits: PassageLimits) -> str:
+    would = "" if limits.stiff_mm is None else f" A tube of {number(limits.stiff_mm)} mm has room enough to bend."
+    return (
+        f"The tube bends to {number(fit.bend_radius_mm, 4)} mm at least, the bore gives "
+        f"{number(fit.passable_radius_mm, 4)} mm.{would}"
+    )
+
+
+def fill_words(fill: FillView) -> str:
+    """How full the tube is, against what its fibers stand."""
+    share, limit = number(100 * fill.fill_fraction, 2), number(100 * fill.limit_fraction, 2)
+    if fill.fill_fraction <= fill.limit_fraction:
+        return f"The light fibers take {share} % of what is free behind the tip, {limit} % at most: they move freely."
+    return (
+        f"The light fibers take {share} % of what is free behind the tip, {limit} % at most: they chafe and break in bends. "
+        f"A lumen of {number(fill.full_lumen_mm)} mm would do."
+    )
+
+
+def fill_table(fill: FillView) -> Columns:
+    rows = [
+        ("free behind the tip", f"{number(fill.free_area_mm2)} mm²"),
+        ("light fibers take", f"{number(fill.fiber_area_mm2)} mm², {number(100 * fill.fill_fraction, 2)} %"),
+        ("free-fill limit", f"{number(100 * fill.limit_fraction, 2)} %"),
+        ("fibers", f"{fill.fiber_count:,}"),
+        ("fibers that room and limit allow", f"{fill.held_count:,}"),
+    ]
+    return columns(("quantity", "value"), rows)
+
+
+def weight_words(found: tuple[Weight, ...]) -> str:
+    """What sets the tube's diameter, and what comes free."""
+    setting = [weight for weight in found if not weight.comes_free]
+    free = [weight for weight in found if weight.comes_free]
+    if not setting:
+        return ""
+    said = f"{_listed([_named(weight) for weight in setting])} set the diameter."
+    said = said.replace(" set the", " sets the") if len(setting) == 1 and setting[0].parts_count == 1 else said
+    if free:
+        one = len(free) == 1 and free[0].parts_count == 1
+        said += f" {_listed([_named(weight) for weight in free])} {'comes' if one else 'come'} free, beside the others."
+    return said
+
+
+def _named(weight: Weight) -> str:
+    return f"the {weight.name}" if weight.parts_count == 1 else f"the {weight.parts_count} {weight.name}s"
+
+
+def _listed(names: list[str]) -> str:
+    said = " and ".join([", ".join(names[:-1]), names[-1]] if len(names) > 1 else names)
+    return said[:1].upper() + said[1:]
+
+
+def weight_table(found: tuple[Weight, ...]) -> Columns:
+    rows = [
+        (
+            weight.name if weight.parts_count == 1 else f"{weight.parts_count} {weight.name}s",
+            f"{number(weight.diameter_mm)} mm",
+            "comes free" if weight.comes_free else f"−{number(weight.adds_mm)} mm",
+        )
+        for weight in found
+    ]
+    return columns(("part", "diameter", "tube without it"), rows)
+
+
+def vary(here: Sketch) -> None:
+    """What just passes, over what is varied."""
+    said = st.selectbox("What just passes the elbow, over the", list(VARIED), key="fit:vary")
+    if not drawings.show("limit", here, "What just passes the bend of the bore", VARIED[said]):
+        st.markdown("Nothing to draw: the tube does not enter the bore.")
+
+
+def bending_words(view: BendingView) -> str:
+    """Which part decides the least bend radius, and what the asked one does to the fibers."""
+    decides = next(part for part in view.parts if part.decides)
+    by = "the handling that is asked" if decides.name == "tube" else f"the strain of the {decides.name}"
+    said = f"The tube bends to {number(view.least_radius_mm)} mm at least; {by} decides."
+    if view.steered_radius_mm is not None:
+        said += f" Steered to {number(view.steered_deg)}° its tip sweeps {number(view.steered_height_mm)} mm across."
+        if view.steered_radius_mm < view.least_radius_mm * (1 - 1e-9):
+            radius = number(view.steered_radius_mm)
+            said += f" ✗ The steered part bends to {radius} mm, sharper than the {decides.name} allow for their life."
+    return said
+
+
+def bending_table(view: BendingView) -> Columns:
+    asked = "strain" if view.asked_radius_mm is None else f"strain at {number(view.asked_radius_mm)} mm"
+    return columns(("part", asked, "allowed", "least radius"), [_bent(part) for part in view.parts])
+
+
+def _bent(part: Bent) -> tuple[str, ...]:
+    strained = part.strain is not None and part.strain > part.allowed_strain
+    share = "–" if part.strain is None else f"{'**✗** ' if strained else ''}{number(100 * part.strain, 2)} %"
+    allowed = "–" if part.allowed_strain is None else f"{number(100 * part.allowed_strain, 2)} %"
+    least = f"**{number(part.least_radius_mm)} mm**, decides" if part.decides else f"{number(part.least_radius_mm)} mm"
+    return f"{part.name}, {part.bends_as}", share, allowed, least
+
+
+def slide_table(found: tuple[Slide, ...], bend_deg: float) -> Columns:
+    rows = [(slide.name, f"{number(slide.offset_mm)} mm", f"{number(slide.slide_mm)} mm") for slide in found]
+    return columns(("part", "off the axis", f"slides in {number(bend_deg)}°"), rows)
+
+
+def turned_deg(scope: Fiberscope) -> float:
+    """The largest bend that the tube makes: the bore's or the steered one; a quarter turn where none is asked."""
+    passage = scope.body.passage
+    steered = passage.bending.angle_deg if passage and passage.bending else 0.0
+    return max((passage.bend_deg if passage else None) or 0.0, steered) or 90.0
+
+
+def heat_table(found: tuple[Heat, ...]) -> Columns:
+    rows = [
+        (
+            "✓" if heat.stands else "**✗**",
+            heat.name,
+            f"{number(heat.stands_c)} °C",
+            f"{number(heat.meets_c)} °C",
+            "takes steam" if heat.stands_steam else "no steam",
+        )
+        for heat in found
+    ]
+    return columns(("", "part", "stands", "meets", "sterilization"), rows)
+
+
+def heat_words(scope: Fiberscope, found: tuple[Heat, ...]) -> str:
+    handling = scope.body.handling
+    treated = "" if handling.sterilization == "none" else f" and {choice(handling.sterilization)} sterilization"
+    bad = [heat.name for heat in found if not heat.stands]
+    asked = f"{number(handling.highest_temperature_c)} °C{treated}"
+    if bad:
+        return f"✗ {_listed([f'the {name}' for name in bad])} cannot stand {asked}."
+    both = "Guide and image bundle stand" if len(found) > 1 else "The guide stands"
+    return f"✓ {both} {asked}, by temperature; moisture and chemistry need a trial."
+
+
+def push_table(bend_deg: float) -> Columns:
+    names = (f"bends of {number(bend_deg)}°", *(f"friction {mu:g}" for mu in FRICTION))
+    return columns(
+        names, [(str(push.bends_count), *(f"×{number(f)}" for f in push.factors)) for push in pushes(bend_deg)]
+    )
+
+
+def tilt_table(bore_mm: float, tip_mm: float) -> Columns:
+    rows = [
+        ("a thin wall" if thick == 0 else f"{number(thick)} mm thick", f"{number(lean)}°")
+        for thick, lean in entry_tilts(bore_mm, tip_mm)
+    ]
+    return columns(("wall at the entry", "the tip may lean"), rows)
