@@ -33,7 +33,7 @@ from optics.fiberscope import RULES, SOLVE
 from optics.spec import OutOfRange
 from optics.units import Flags
 
-BLOCK = 128  # distinct inputs at a time: what fits the cache
+BLOCK = 256  # distinct inputs at a time: less has more overhead, more leaves the cache
 # What each stage may read, with room to spare: a path too many costs a repetition, one too few a wrong number.
 LIGHT = ("source.", "guide.", "scene.target.medium", "scene.cover.")
 BODY = ("guide.", "scene.", "body.", "image.bundle.", "image.chip.", "image.tip.")

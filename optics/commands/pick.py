@@ -13,7 +13,7 @@ from optics.study.pick_needs import SHORT
 from optics.study.smallest_change import Change
 from optics.units import unit_of
 
-SHOWN, SHOWN_FAILED = 12, 5
+SHOWN, SHOWN_FAILED, NEAREST_SHOWN = 12, 5, 50
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -30,9 +30,9 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument(
         "--nearest",
         type=int,
-        default=NEAREST,
         metavar="N",
-        help=f"so many failing candidates, the nearest ones, get the smallest change that helps ({NEAREST})",
+        help="so many failing candidates, the nearest ones, get the smallest change that helps "
+        f"({NEAREST} in JSON, {NEAREST_SHOWN} as text)",
     )
     parser.add_argument("--show", type=int, default=SHOWN, metavar="N", help=f"so many picks in the table ({SHOWN})")
 
@@ -41,9 +41,8 @@ def run(options: argparse.Namespace) -> int:
     design = presets.open(options.design)
     given = dict(presets.parse_setting(text) for text in options.settings)
     progress = _bar if sys.stderr.isatty() and not options.json else None
-    found = pick(
-        design, given, most=options.most, seed=options.seed, nearest=max(options.nearest, 0), progress=progress
-    )
+    asked = options.nearest if options.nearest is not None else NEAREST if options.json else NEAREST_SHOWN
+    found = pick(design, given, most=options.most, seed=options.seed, nearest=max(asked, 0), progress=progress)
     if progress:
         print("\r" + " " * 40 + "\r", end="", file=sys.stderr)
     print(as_json(as_dict(found)) if options.json else written(found, design.fiberscope.name, max(options.show, 0)))
@@ -111,7 +110,7 @@ def written(found: Picked, name: str, shown: int) -> str:
 def _unlike(found: Picked) -> list[Failed]:
     """The nearest failures that differ in what fails, in what would help, or in the image."""
     seen: dict[tuple[str, ...], Failed] = {}
-    for each in found.failed[:NEAREST]:
+    for each in found.failed[:NEAREST_SHOWN]:
         image = str(each.set.get("image.bundle.preset")), str(each.set.get("image.chip.preset"))
         kind = each.first_reason.split(":")[0], each.smallest_change.path if each.smallest_change else ""
         seen.setdefault((*kind, *image), each)

@@ -139,7 +139,7 @@ def chromaticity(view: ColorView, *, palette: Palette = LIGHT, width_in: float =
     for color, fill in ((view.lamp, palette.soft), (view.delivered, palette.light)):
         _color_mark(axes, palette, color, fill, view)
     axes.set(xlim=(low_u, high_u), ylim=(low_v, high_v), xlabel="u, CIE 1960")
-    axes.set_ylabel("v", rotation=0)
+    axes.set_ylabel("v", rotation=0, labelpad=12)
     axes.locator_params(nbins=5)
     return figure
 

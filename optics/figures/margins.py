@@ -6,7 +6,7 @@ import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
-from optics.figures.canvas import chart, three, width_of, wrapped
+from optics.figures.canvas import chart, three, width_of
 from optics.figures.palette import LIGHT, LINE, SMALL, TEXT, THIN, WIDTH_IN, Palette
 from optics.needs import AT_MOST
 from optics.study.margins_answer import Causes, Condition, Driver
@@ -138,11 +138,13 @@ def spread(
         _limit(axes, palette, name, wanted, low, high)
     _ticks(axes, low, high, width_in)
     axes.set_title(title, loc="left", color=palette.ink, fontsize=TEXT, pad=5)
-    _status(axes, palette, name, samples, wanted)
+    _status(axes, palette, name, samples, wanted, width_in - 2 * SIDE_IN - width_of(title, TEXT))
     return figure
 
 
-def _ends(there: np.ndarray, old: np.ndarray | None, nominal: float | None, wanted: float | None) -> tuple[float, float]:
+def _ends(
+    there: np.ndarray, old: np.ndarray | None, nominal: float | None, wanted: float | None
+) -> tuple[float, float]:
     """The scale: nearly all samples, the nominal value, and the limit where it is near."""
     parts = [part for part in (there, old) if part is not None and part.size]
     if not parts:
@@ -179,7 +181,9 @@ def _limit(axes: Axes, palette: Palette, name: str, wanted: float, low: float, h
         said = f"← {said}" if right else f"{said} →"
         x = low if right else high
     box = {"facecolor": palette.paper, "edgecolor": "none", "pad": 1.0, "alpha": 0.75}
-    axes.text(x, 0.99 * top, said, ha="left" if right else "right", va="top", color=palette.ink, fontsize=SMALL, bbox=box)
+    axes.text(
+        x, 0.99 * top, said, ha="left" if right else "right", va="top", color=palette.ink, fontsize=SMALL, bbox=box
+    )
 
 
 def _ticks(axes: Axes, low: float, high: float, width_in: float) -> None:
@@ -202,31 +206,38 @@ def _ticks(axes: Axes, low: float, high: float, width_in: float) -> None:
     axes.set_xticks(list(fits), list(fits.values()))
 
 
-def _status(axes: Axes, palette: Palette, name: str, samples: np.ndarray, wanted: float | None) -> None:
+def _status(axes: Axes, palette: Palette, name: str, samples: np.ndarray, wanted: float | None, room_in: float) -> None:
     """On the right: the share beyond the limit, or where nine in ten lie."""
     none = float(np.isnan(samples).mean())
     if wanted is not None:
         good = samples <= wanted if name in AT_MOST else samples >= wanted
         share = float(1 - good.mean())
-        said = f"✗ {percent(share)} beyond" if share else "✓ all within"
+        long = width_of(f"✗ {percent(share)} beyond", SMALL, True) + 0.12 > room_in
+        said = f"✗ {percent(share)}{'' if long else ' beyond'}" if share else "✓ all within"
         look = {"color": palette.accent, "weight": "bold"} if share else {"color": palette.ink}
     else:
         ends = np.quantile(samples[~np.isnan(samples)], (0.05, 0.95)) if none < 1 else ()
         said = f"90 %: {' – '.join(three(float(end)) for end in ends)}" if none < 0.05 else f"{percent(none)} without"
         look = {"color": palette.soft}
-    axes.set_title(said, loc="right", fontsize=SMALL, pad=5, **look)
+    if width_of(said, SMALL, True) + 0.12 < room_in:
+        axes.set_title(said, loc="right", fontsize=SMALL, pad=5, **look)
+    else:  # a long title: one line lower
+        axes.set_ylim(top=1.3 * axes.get_ylim()[1])
+        axes.text(1.0, 0.99, said, ha="right", va="top", fontsize=SMALL, transform=axes.transAxes, **look)
 
 
 # What moves it
 
 
-def causes(
-    found: Causes, names: Mapping[str, str], *, palette: Palette = LIGHT, width_in: float = WIDTH_IN
-) -> Figure:
+def causes(found: Causes, names: Mapping[str, str], *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) -> Figure:
     """Shares of the variance of one number, largest first; hatched where the tolerance is only assumed or remembered."""
     shown = [item for item in found.drivers if item.share >= SHOWN_SHARE][:MOST_CAUSES]
     small = sum(item.share for item in found.drivers) - sum(item.share for item in shown)
-    rest = [("all others", small), ("several at once", found.together_share), ("not explained", found.unexplained_share)]
+    rest = [
+        ("all others", small),
+        ("several at once", found.together_share),
+        ("not explained", found.unexplained_share),
+    ]
     high = CAUSE_ROW * len(shown) + 0.3 * len(rest)
     figure, axes = chart(width_in, high + 1.0, palette, left=CAUSE_LEFT_IN, right=0.85, bottom=0.52, top=0.38)
     place = 0.0
@@ -239,7 +250,9 @@ def causes(
     axes.set(xlim=(0, 100), ylim=(place + 0.05, -0.05), yticks=[], xlabel="share of its variance, %")
     axes.spines["left"].set_visible(False)
     said = "≈ hatched: a tolerance only assumed or remembered"
-    figure.text(0.12 / width_in, 1 - 0.18 / figure.get_figheight(), said, color=palette.soft, fontsize=SMALL, va="center")
+    figure.text(
+        0.12 / width_in, 1 - 0.18 / figure.get_figheight(), said, color=palette.soft, fontsize=SMALL, va="center"
+    )
     return figure
 
 
@@ -249,13 +262,11 @@ def _driver(axes: Axes, palette: Palette, y: float, item: Driver, name: str) -> 
     if soft:
         look = {"facecolor": palette.paper, "edgecolor": palette.back, "hatch": "/////", "linewidth": THIN}
     axes.barh(y, 100 * item.share, height=0.26, **look)
-    lines = wrapped(name, TEXT, CAUSE_LEFT_IN - 0.2).split("\n")
-    one = f"{three(item.low)} … {three(item.value)} … {three(item.high)}{'  ≈' if soft else ''}"
-    if len(lines) == 1:
-        axes.text(-2, y - 0.085, lines[0], ha="right", va="center_baseline", fontsize=TEXT, color=palette.ink)
-        axes.text(-2, y + 0.105, one, ha="right", va="center_baseline", fontsize=SMALL, color=palette.soft)
-    else:
-        axes.text(-2, y, "\n".join(lines[:2]), ha="right", va="center", fontsize=SMALL, color=palette.ink, linespacing=1.1)
+    part, _, what = name.rpartition(", ")
+    ends = f"{three(item.low)} … {three(item.high)}{' ≈' if soft else ''}"
+    under = f"{part.lower()}, {ends}" if part else ends
+    axes.text(-2, y - 0.085, what, ha="right", va="center_baseline", fontsize=TEXT, color=palette.ink)
+    axes.text(-2, y + 0.105, under, ha="right", va="center_baseline", fontsize=SMALL, color=palette.soft)
     end = 100 * (item.share + item.standard_error)
     axes.plot([100 * (item.share - item.standard_error), end], [y, y], color=palette.ink, linewidth=LINE * 0.8)
     axes.text(end + 2, y, percent(item.share), va="center_baseline", fontsize=TEXT, color=palette.ink)

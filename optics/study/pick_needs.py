@@ -61,8 +61,10 @@ def margins(needs: Needs, table: Columns, figures: Figures) -> dict[str, np.ndar
         for name in ORDER
         if name in wanted
     }
-    good = {"passes": figures["passes"] != 0, **_stands(table)}
-    return found | _passing(table, figures) | {name: np.where(good[name], 0.0, -1.0) for name in good}
+    passing = _passing(table, figures)
+    told = np.logical_or.reduce([each < 0 for each in passing.values()])  # what does not pass, one of these says why
+    good = {"passes": told | (figures["passes"] != 0), **_stands(table)}
+    return found | passing | {name: np.where(good[name], 0.0, -1.0) for name in good}
 
 
 def _passing(table: Columns, figures: Figures) -> dict[str, np.ndarray]:

@@ -1,5 +1,6 @@
-"""The contrast that each part of the way back leaves over frequency, and what the viewer needs: where they meet is what is resolved.
+"""The contrast that each part of the way back leaves over frequency, and what the viewer needs.
 
+Where the two meet is what is resolved.
 One design in the chain's own parts and factors, so that the curves pass through the numbers of `size`.
 """
 
@@ -122,9 +123,7 @@ def contrasts(fiberscope: Fiberscope, count: int = 161) -> Contrasts:
 
 
 def losses(way: Way, frequency_lp_mm: AnyUnit) -> dict[str, np.ndarray]:
-    """What each part costs at a frequency at the target [design]: minus the log of its contrast; light: the log of what is needed."""
+    """What each part costs at a frequency at the target [design], in the log of contrast; light: of what is needed."""
     at_image = frequency_lp_mm / way.size_ratio
-    found = {
-        part: -np.log(np.maximum(contrast, 1e-12)) for part, contrast in factors(way.parts, at_image).items()
-    }
+    found = {part: -np.log(np.maximum(contrast, 1e-12)) for part, contrast in factors(way.parts, at_image).items()}
     return {"light": np.log(np.maximum(needed_mtf(way.parts, at_image), 1e-12)), **found}

@@ -13,8 +13,9 @@ from optics.chain.columns import Columns, columns
 from optics.chain.evaluate import Figures, evaluate
 from optics.fiberscope import Fiberscope
 from optics.study.pick_needs import margins
-from optics.study.sharper import CORE, FLAT, FLUXES, PITCH, PIXEL, RATED, Sharpness
+from optics.study.sharper import FLAT, Sharpness
 from optics.study.sharper_curves import numbered
+from optics.study.sharper_sweeps import CHIP, CORE, FLUXES, PITCH, PIXEL, RATED
 from optics.units import AnyUnit
 from optics.viewer.camera import LEAST_PIXELS_PER_PITCH, MEASURING_PIXELS_PER_PITCH
 
@@ -25,7 +26,6 @@ DIGITS = 3
 SURE = 1.01  # a need is aimed at with a hair to spare, for numbers are rounded
 FOCAL, FOCUS, DISTANCE = "image.objective.focal_mm", "image.objective.focus_mm", "scene.target.distance_mm"
 RELAY, EYEPIECE, WIDE = "viewer.camera.relay_magnification", "viewer.eye.eyepiece_focal_mm", "image.bundle.diameter_mm"
-CHIP = ("image.chip.columns", "image.chip.rows")
 
 Settings = dict[str, Any]
 
@@ -165,4 +165,3 @@ def _relay(table: Columns, base: Figures) -> Settings | None:
 
 def _eyepiece(table: Columns, base: Figures) -> Settings | None:
     return {EYEPIECE: _rounded(SHORTER * float(table[EYEPIECE][0]))} if table.has(EYEPIECE)[0] else None
-

@@ -7,8 +7,8 @@ import streamlit as st
 from optics.fiberscope import Fiberscope
 from optics.report.answer import FitAnswer, Report
 from optics.report.view_fit import FillView, Weight
-from optics.report.view_handling import FRICTION, BendingView, Bent, Heat, Slide, entry_tilts, pushes
-from optics.report.view_passage import PassageLimits
+from optics.report.view_handling import FRICTION, BendingView, Bent, Heat, Slide, pushes
+from optics.report.view_passage import PassageLimits, entry_tilts
 from optics.ui import drawings, headline
 from optics.ui.names import choice
 from optics.ui.rows import Columns, columns
@@ -16,6 +16,8 @@ from optics.ui.sketch import Sketch
 from optics.ui.words import number, plain
 
 NEEDS = ("outer_diameter_mm", "bend_radius_mm", "rigid_tip_mm")
+SLIDING = "Parts off the axis slide along the tube in a bend toward their side: as much slack must find room."
+PUSHING = "Force over that in a straight bore, by friction alone: an orientation. Three or four quarter turns are the end."
 VARIED = {
     "outer diameter of the tube": "outer_diameter_mm",
     "length of the rigid tip": "rigid_tip_mm",
@@ -30,7 +32,12 @@ def answer(report: Report, scope: Fiberscope, limits: PassageLimits | None, fill
     st.markdown(plain(rest))
     if fill.fits and fill.fill_fraction > fill.limit_fraction:
         st.markdown(f":orange[**✗ {plain(fill_words(fill))}**]")
-    headline.needs(replace(report, needs=tuple(line for line in report.needs if line.name in NEEDS)))
+    headline.needs(of_body(report))
+
+
+def of_body(report: Report) -> Report:
+    """The report with the needs that its body answers."""
+    return replace(report, needs=tuple(line for line in report.needs if line.name in NEEDS))
 
 
 def verdict(report: Report, scope: Fiberscope, limits: PassageLimits | None, fill: FillView) -> tuple[str, str, str]:
@@ -53,27 +60,28 @@ def verdict(report: Report, scope: Fiberscope, limits: PassageLimits | None, fil
     tip, longest = report.summary.rigid_tip_mm, limits.tip_for_tube_mm
     too_long, too_stiff = tip is not None and tip > longest, fit.bend_radius_mm > fit.passable_radius_mm
     if too_long:
-        first = f"The tip passes the bore, but its {number(tip)} mm are too long for the elbow: {number(longest)} mm at most."
-        return "✗", first, f"{_other_ways(limits)}{' ' + _stiff(fit, limits) if too_stiff else ''}"
+        thinner = "" if limits.tube_for_tip_mm is None else f", or a tube of {number(limits.tube_for_tip_mm)} mm"
+        first = f"The tip passes the bore, but its {number(tip)} mm are too long for the elbow"
+        return (
+            "✗",
+            f"{first}: {number(longest)} mm at most{thinner}.",
+            _gentler(limits) + (_stiff(fit, limits) if too_stiff else ""),
+        )
     if too_stiff:
         return "✗", "The tip passes the bore, but the tube is too stiff for its elbow.", _stiff(fit, limits)
     room = (
-        f"{number(tip)} mm of rigid tip where up to {number(longest)} mm pass the elbow"
+        f"The rigid tip of {number(tip)} mm has room: up to {number(longest)} mm pass the elbow."
         if tip is not None
-        else (f"a rigid tip of up to {number(longest)} mm would pass the elbow")
+        else f"A rigid tip of up to {number(longest)} mm would pass the elbow."
     )
-    bends = f"it bends to {number(fit.bend_radius_mm)} mm where the bore gives {number(fit.passable_radius_mm)} mm"
-    return "✓", f"It fits and passes: a tube of {tube} mm in a bore of {bore} mm.", f"There is {room}; {bends}."
+    bends = f"The tube bends to {number(fit.bend_radius_mm)} mm, the bore gives {number(fit.passable_radius_mm)} mm."
+    return "✓", f"It fits and passes: a tube of {tube} mm in a bore of {bore} mm.", f"{room} {bends}"
 
 
-def _other_ways(limits: PassageLimits) -> str:
-    """What else would let the tip through: a thinner tube, a gentler bore."""
-    ways = []
-    if limits.tube_for_tip_mm is not None:
-        ways.append(f"a tube of {number(limits.tube_for_tip_mm)} mm")
-    if limits.radius_for_tip_mm is not None:
-        ways.append(f"a bore that bends at {number(limits.radius_for_tip_mm)} mm")
-    return f"As long as it is it takes {' or '.join(ways)}." if ways else "As long as it is no tube is thin enough."
+def _gentler(limits: PassageLimits) -> str:
+    if limits.radius_for_tip_mm is None:
+        return "A gentler bend of the bore would not do. "
+    return f"It would pass as it is where the bore bends at {number(limits.radius_for_tip_mm)} mm. "
 
 
 def _stiff(fit: FitAnswer, limits: PassageLimits) -> str:
@@ -134,7 +142,7 @@ def weight_table(found: tuple[Weight, ...]) -> Columns:
         (
             weight.name if weight.parts_count == 1 else f"{weight.parts_count} {weight.name}s",
             f"{number(weight.diameter_mm)} mm",
-            "comes free" if weight.comes_free else f"−{number(weight.adds_mm)} mm",
+            "comes free" if weight.comes_free else f"−{number(weight.adds_mm, 2)} mm",
         )
         for weight in found
     ]

@@ -17,7 +17,7 @@ from optics.presets import Design, Document
 from optics.spec import OutOfRange
 from optics.study.margins import SAMPLES, SEED, margins, met, numbers_of
 from optics.study.margins_aging import Aged, aged_columns
-from optics.study.margins_answer import Margins
+from optics.study.margins_answer import Distribution, Margins
 from optics.study.margins_draw import applied
 from optics.study.margins_ranges import Tolerance, nominal_columns
 from optics.ui import margins_words as words
@@ -122,6 +122,62 @@ def studied(
 # Pictures
 
 
+def causes(one: Studied) -> None:
+    """What moves a number, of the deciding one first."""
+    found = one.found.causes
+    st.subheader("What decides", anchor=False)
+    if not found:
+        st.markdown("No need is moved by the tolerances, or there are too few samples to tell what moves it.")
+        return
+    names = [item.of for item in found]
+    of = names[0]
+    if len(names) > 1:
+        of = st.selectbox(
+            "What moves", names, key="margins:of", format_func=words.called, label_visibility="collapsed", width=260,
+            on_change=sketch.touch,
+        )  # fmt: skip
+    else:
+        st.markdown(f"What moves the {words.called(of)}")
+    show_causes(one, of)
+    unclear = words.unclear(next(item for item in found if item.of == of))
+    if unclear:
+        st.caption(unclear)
+
+
+def spreads(one: Studied) -> None:
+    """One small histogram for each number that moves, those with a need first; and the same as a table."""
+    asked_for, others = words.shown(one.found)
+    st.caption(words.legend(one.found))
+    if asked_for:
+        _histograms(one, asked_for)
+        with st.expander("Numbers that no need asks for", key="margins:others"):
+            _histograms(one, others)
+    else:
+        _histograms(one, others)
+    with st.expander("The same as a table", key="margins:table"):
+        st.table(words.spread_table(one.found), border="horizontal", hide_index=True, alt="How the numbers spread")
+    st.caption(words.still(one.found))
+
+
+def _histograms(one: Studied, items: list[Distribution]) -> None:
+    with st.grid("auto", min_column_width=250, gap="small"):
+        for item in items:
+            show_spread(one, item.name)
+
+
+def files(one: Studied) -> None:
+    """The samples and the whole study to take away, built when asked for."""
+    with st.container(horizontal=True):
+        for text, make, suffix, kind in (
+            ("Download the samples, CSV", as_csv, "csv", "text/csv"),
+            ("Download the study, JSON", as_json, "json", "application/json"),
+        ):
+            st.download_button(
+                text, lambda make=make: make(one), f"{stem(one)}.{suffix}", kind, key=f"margins:{suffix}",
+                icon=":material/download:", on_click="ignore",
+            )  # fmt: skip
+
+
 def show_odds(one: Studied) -> None:
     names = {need.name: words.need_label(need) for need in one.found.new.needs}
     _show("odds", one, "", f"Share of the samples that meets each need: {words.headline(one.found)[1]}", names)
@@ -173,7 +229,9 @@ def as_csv(one: Studied) -> str:
                 columns[prefix + name] = [f"{value:.9g}" if np.isfinite(value) else "" for value in values]
         truth = met(one.design.fiberscope.needs, numbers) if numbers else {}
         if truth:
-            columns[f"{prefix}meets_all_needs"] = [str(int(all_met)) for all_met in np.logical_and.reduce([*truth.values()])]
+            columns[f"{prefix}meets_all_needs"] = [
+                str(int(all_met)) for all_met in np.logical_and.reduce([*truth.values()])
+            ]
     for item, drawn in zip(one.found.ranges, one.found.drawn.values.T):
         columns[item.path + (" (factor)" if item.curve else "")] = [f"{value:.9g}" for value in drawn]
     out = io.StringIO()

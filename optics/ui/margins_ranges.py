@@ -7,8 +7,7 @@ import streamlit as st
 
 from optics.fiberscope import Fiberscope
 from optics.presets import Design
-from optics.spec import OutOfRange
-from optics.study.margins_ranges import GIVEN, Tolerance, tolerances
+from optics.study.margins_ranges import Tolerance, tolerances
 from optics.ui.names import place
 from optics.ui.origin import SOFT
 from optics.ui.words import unit
@@ -58,9 +57,13 @@ def rows(design: Design, given: Given, everything: bool) -> list[tuple[str, floa
         item, nominal = own.get(path), value_in(design.fiberscope, path)
         if path in given:
             low, high = given[path] or (None, None)
-            found.append((path, low, item.value if item else nominal, high, "held, entered ●" if low is None else "entered ●"))
+            found.append(
+                (path, low, item.value if item else nominal, high, "held, entered ●" if low is None else "entered ●")
+            )
         elif item:
-            found.append((path, item.low, item.value, item.high, f"≈ {item.basis}" if item.basis in SOFT else item.basis))
+            found.append(
+                (path, item.low, item.value, item.high, f"≈ {item.basis}" if item.basis in SOFT else item.basis)
+            )
         elif everything and nominal is not None and not path.startswith("needs."):
             found.append((path, None, nominal, None, "none stated"))
     return [row for row in found if row[2] is not None]
@@ -118,6 +121,3 @@ def entered_words(design: Design, path: str) -> str:
     own = {item.path: item for item in tolerances(design)}.get(path)
     back = f"{own.low:g}–{own.high:g}" if own else "no tolerance"
     return f"{place(path)}: back to {back}"
-
-
-__all__ = ["GIVEN", "Given", "OutOfRange", "entered", "entered_words", "in_force", "rows", "table", "value_in"]

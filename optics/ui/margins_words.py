@@ -1,7 +1,5 @@
 """The study of margins in words for the screen: the answer, what to tighten, what it rests on."""
 
-import re
-
 from optics.figures.margins import percent
 from optics.needs import AT_MOST
 from optics.presets import Design
@@ -10,6 +8,7 @@ from optics.study.margins_answer import DISTRIBUTION, METHOD, Causes, Condition,
 from optics.study.margins_ranges import GIVEN
 from optics.ui.names import field_name, place, spoken
 from optics.ui.origin import SOFT
+from optics.ui.rows import Columns, columns
 from optics.ui.words import number, plain, sentence_case, unit
 
 NUMBERS = {  # headline numbers that no need names
@@ -19,16 +18,15 @@ NUMBERS = {  # headline numbers that no need names
     "smallest_line_mm": "thinnest line",
 }
 SWITCHES = {  # what messages call by the name of a switch of the command
-    r"--tolerance path=low:high": "in the table of tolerances",
+    "--tolerance path=low:high": "in the table of tolerances",
     r"with --tolerance": "in the table of tolerances",
-    r"--tolerance ": "",
-    r"--samples": "the number of samples",
-    r"--aged broken_fraction": "the share of broken fibers",
-    r"--aged dead_fraction": "the share of dead cores",
-    r"--aged browning_db_m": "the browning",
-    r"--aged lamp": "the lamp's share",
+    "--tolerance ": "",
+    "--samples": "the number of samples",
+    "--aged broken_fraction": "the share of broken fibers",
+    "--aged dead_fraction": "the share of dead cores",
+    "--aged browning_db_m": "the browning",
+    "--aged lamp": "the lamp's share",
 }
-NEVER = "that design"
 
 
 def called(name: str) -> str:
@@ -52,8 +50,17 @@ def titled(name: str) -> str:
 
 def limit(name: str, wanted: float) -> str:
     """A need's limit: 'at most 0.25 mm'."""
+    return f"{'at most' if name in AT_MOST else 'at least'} {amount(name, wanted, 4)}"
+
+
+def amount(name: str, value: float, digits: int = 3) -> str:
+    """A rounded number with its unit.
+
+    >>> amount("field_of_view_deg", 50.815), amount("smallest_gap_mm", 0.25), amount("evenness", 0.3)
+    ('50.8°', '0.25 mm', '0.3')
+    """
     sign = unit(name)
-    return f"{'at most' if name in AT_MOST else 'at least'} {number(wanted, 4)}{'' if sign == '°' else ' '}{sign}".rstrip()
+    return f"{number(value, digits)}{'' if sign == '°' else ' '}{sign}".rstrip()
 
 
 def said(wrong: OutOfRange | str) -> str:
@@ -65,7 +72,7 @@ def said(wrong: OutOfRange | str) -> str:
     text = str(wrong)
     for switch, words in SWITCHES.items():
         text = text.replace(switch, words)
-    return sentence_case(spoken(re.sub(r"(?<=\d):(?=[\d.])", ":", text)))
+    return sentence_case(spoken(text))
 
 
 # The answer
@@ -81,7 +88,7 @@ def headline(found: Margins) -> tuple[str, str]:
         return "✓", f"Every one of {found.samples:,} samples meets {needs}."
     if new.all_needs == 0:
         return "✗", f"Not one of {found.samples:,} samples meets {needs}."
-    return "✗", f"{odds(new)} meet {needs}."
+    return "✗", f"{odds(new)} of those built meet {needs}."
 
 
 def odds(condition: Condition) -> str:
@@ -161,8 +168,8 @@ def _soft(causes: Causes) -> str:
 def _spread_words(found: Margins) -> str:
     shown = [item for item in found.new.figures if item.name in ("delivered_lm", "target_center_lux") and item.mean]
     return " ".join(
-        f"{sentence_case(called(item.name))} {number(item.value)} {unit(item.name)}, nine in ten samples from "
-        f"{number(item.quantiles['p05'])} to {number(item.quantiles['p95'])} {unit(item.name)}."
+        f"{sentence_case(called(item.name))} {amount(item.name, item.value)}, nine in ten of those built from "
+        f"{number(item.quantiles['p05'])} to {amount(item.name, item.quantiles['p95'])}."
         for item in shown
     )
 
@@ -188,18 +195,16 @@ def unclear(causes: Causes) -> str:
 # How it was found
 
 
-def run_words(found: Margins, seconds: float) -> str:
+def run_words(found: Margins) -> str:
     kinds = len(found.ranges)
-    return (
-        f"{found.samples:,} designs drawn from {kinds} tolerance{'s' if kinds > 1 else ''}, seed {found.seed}\\: "
-        "the same seed gives the same answer."
-    )
+    varied = "1 tolerance" if kinds == 1 else f"{kinds} tolerances"
+    return f"{found.samples:,} designs drawn from {varied}, seed {found.seed}. The same seed gives the same answer."
 
 
 def still(found: Margins) -> str:
     """The numbers that no tolerance moves, and what limits the detail."""
     fixed = [item for item in found.new.figures if not item.histogram and item.value is not None]
-    told = [f"{called(item.name)} {number(item.value)} {unit(item.name)}".rstrip() for item in fixed]
+    told = [f"{called(item.name)} {amount(item.name, item.value)}" for item in fixed]
     lines = [f"Hardly or not at all moved\\: {', '.join(map(plain, told))}."] if told else []
     limited = ", ".join(f"{part} in {percent(share)}" for part, share in found.new.limited_by.items())
     lines += [f"Detail is limited by\\: {plain(limited)}."] if limited else []
@@ -224,7 +229,8 @@ def rests(found: Margins, design: Design) -> list[str]:
     fixed = untouched(found, design)
     if fixed:
         told.append(
-            f"{len(fixed)} values have no stated tolerance and stay as they are, such as {place(fixed[0])}: the true spread is wider."
+            f"{len(fixed)} values have no stated tolerance and stay as they are, such as {place(fixed[0])}: "
+            "the true spread is wider."
         )
     if found.aged is not None:
         told.append(
@@ -244,8 +250,26 @@ def untouched(found: Margins, design: Design) -> list[str]:
     ]
 
 
-def shown(found: Margins) -> list[Distribution]:
-    """The numbers worth a histogram: those with a need first, then the others; line pairs say again what the gap says."""
+def shown(found: Margins) -> tuple[list[Distribution], list[Distribution]]:
+    """The numbers worth a histogram: those with a need, and the others; line pairs say again what the gap says."""
     wanted = [need.name for need in found.new.needs]
     moved = [item for item in found.new.figures if item.histogram and item.name != "resolved_lp_mm"]
-    return sorted(moved, key=lambda item: wanted.index(item.name) if item.name in wanted else len(wanted))
+    return [item for item in moved if item.name in wanted], [item for item in moved if item.name not in wanted]
+
+
+def legend(found: Margins) -> str:
+    """How to read the histograms."""
+    told = ["Filled\\: as built, new" if found.aged else "Filled\\: as built", "▲ the nominal design"]
+    told += ["line\\: aged"] if found.aged else []
+    told += ["dashed\\: the need", "hatched\\: beyond it"] if found.new.needs else []
+    return ", ".join(told) + "."
+
+
+def spread_table(found: Margins) -> Columns:
+    """Where the samples of each number lie."""
+    rows = []
+    asked_for, others = shown(found)
+    for item in asked_for + others:
+        marks = [item.value, *(item.quantiles[name] for name in ("p05", "p50", "p95"))]
+        rows.append((titled(item.name), *("not seen" if mark is None else number(mark) for mark in marks)))
+    return columns(("number", "nominal", "5 % lie below", "half lie below", "95 % lie below"), rows)

@@ -41,6 +41,8 @@ with st.container(key="answer"):
             pictures.show("passage", here.design, report, "The rigid tip at its tightest in the bore")
             if limits is not None:
                 fit_parts.vary(here)
+            if fit_parts.of_body(report).needs:
+                table(rows.needs(fit_parts.of_body(report)), "Margins to the needs")
         bending = drawings.view("bending", here)
         left, right = st.columns(2, gap="medium")
         with left:
@@ -49,9 +51,11 @@ with st.container(key="answer"):
             table(fit_parts.bending_table(bending), "Strain and least radius part by part")
             turn = fit_parts.turned_deg(scope)
             table(fit_parts.slide_table(drawings.view("slides", here, turn), turn), "Slides off the axis")
-            st.caption(
-                "Parts off the axis slide along the tube in a bend toward their side: as much slack must find room."
-            )
+            st.caption(fit_parts.SLIDING)
+            if passage is not None and passage.bore_mm and report.fit.outer_diameter_mm <= passage.bore_mm:
+                table(
+                    fit_parts.tilt_table(passage.bore_mm, report.fit.outer_diameter_mm), "Lean of the tip at the entry"
+                )
         with right:
             if handling is not None:
                 heats = drawings.view("heats", here)
@@ -61,13 +65,6 @@ with st.container(key="answer"):
             if limits is not None:
                 st.subheader("Pushing", anchor=False)
                 table(fit_parts.push_table(passage.bend_deg), "Push force over several bends")
-                st.caption(
-                    "Force over that in a straight bore, by friction alone: an orientation. "
-                    "Three or four quarter turns are the practical end."
-                )
-            if passage is not None and passage.bore_mm and report.fit.outer_diameter_mm <= passage.bore_mm:
-                table(
-                    fit_parts.tilt_table(passage.bore_mm, report.fit.outer_diameter_mm), "Lean of the tip at the entry"
-                )
+                st.caption(fit_parts.PUSHING)
         headline.caution(report)
     st.caption(f"Design {report.design_hash}, version {report.version}. A screening estimate; it certifies nothing.")

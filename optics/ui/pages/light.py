@@ -2,7 +2,7 @@
 
 import streamlit as st
 
-from optics.ui import drawings, headline, light_parts, look, pictures, rows, sketch
+from optics.ui import drawings, headline, light_parts, light_words, look, pictures, rows, sketch
 from optics.ui.words import plain
 
 here = sketch.current()
@@ -22,34 +22,35 @@ with st.container(key="answer"):
     with left:
         st.subheader("Step by step", anchor=False)
         pictures.show("budget", here.design, report, "Light left after each step from lamp to exit face")
+        st.table(rows.steps(report), border="horizontal", hide_index=True, alt="Steps of the light with their reasons")
     with right:
         st.subheader("What would give more", anchor=False)
-        light_parts.lever_list(found)
-    st.table(rows.steps(report), border="horizontal", hide_index=True, alt="Steps of the light with their reasons")
+        with st.container(gap="xsmall"):
+            light_parts.lever_list(report, found)
 
     left, right = st.columns(2, gap="medium")
     with left:
         st.subheader("Cone in, cone out", anchor=False)
         cone = drawings.view("cone", here)
         if cone is not None:
-            st.markdown(plain(light_parts.cone_words(cone)))
+            st.markdown(plain(light_words.cone_words(cone)))
             drawings.show("cone", here, "Radiance over the angle: launched, after the guide, as it leaves")
     with right:
         st.subheader("Bends", anchor=False)
         bends = drawings.view("bends", here)
         if bends is not None:
-            st.markdown(plain(light_parts.bend_words(bends)))
+            st.markdown(plain(light_words.bend_words(bends)))
             drawings.show("bends", here, "Loss of one bend over its radius, with the design's own bends")
             light_parts.trace(here)
 
     st.subheader("Color in, color out", anchor=False)
     color = drawings.view("color", here)
-    st.markdown(plain(light_parts.color_words(color)))
+    st.markdown(plain(light_words.color_words(color)))
     left, right = st.columns(2, gap="medium")
     with left:
         pictures.show("spectra", here.design, report, "Spectrum of the lamp and of the delivered light")
+        st.table(light_words.color_table(color), border="horizontal", hide_index=True, alt="Color before and after")
     with right:
         drawings.show("color", here, "Color of the lamp and of the delivered light beside the black bodies")
-        st.table(light_parts.color_table(color), border="horizontal", hide_index=True, alt="Color before and after")
     headline.caution(report)
     st.caption(f"Design {report.design_hash}, version {report.version}. A screening estimate; it certifies nothing.")
