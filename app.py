@@ -11,6 +11,10 @@ look.apply()
 page = st.navigation(
     [
         st.Page("optics/ui/pages/sizing.py", title="Sizing", icon=":material/straighten:", default=True),
+        st.Page("optics/ui/pages/light.py", title="Light", icon=":material/flare:"),
+        st.Page("optics/ui/pages/detail.py", title="Detail", icon=":material/grid_on:"),
+        st.Page("optics/ui/pages/fit.py", title="Fit", icon=":material/adjust:"),
+        st.Page("optics/ui/pages/margins.py", title="Margins", icon=":material/stacked_line_chart:"),
         st.Page("optics/ui/pages/checks.py", title="Checks", icon=":material/fact_check:"),
     ]
 )

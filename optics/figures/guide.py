@@ -212,6 +212,8 @@ def _strained(axes: Axes, palette: Palette, view: BendView, top: float, room: fl
         weight="bold",
         ha="right" if fits else "left",
         va="top",
+        bbox={"facecolor": palette.paper, "edgecolor": "none", "pad": 1.0, "alpha": 0.75},
+        zorder=5,
     )
 
 

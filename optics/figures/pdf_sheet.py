@@ -29,12 +29,17 @@ LEADING = 1.24  # from line to line, over the size of the type
 
 @dataclass(frozen=True, slots=True)
 class Block:
-    """Something of known height: `draw(axes, left, top)`; `keep`: not parted from what follows; `split(high)` if it can be."""
+    """Something of known height: `draw(axes, left, top)`.
+
+    `keep`: not parted from what follows; `split(high)`: in two, the first no higher; `again`: what stands above it anew
+    (names of columns) at the top of another column.
+    """
 
     high: float
     draw: Callable[[Axes, float, float], None]
     keep: bool = False
     split: "Callable[[float], tuple[Block | None, Block | None]] | None" = None
+    again: "Block | None" = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -201,27 +206,31 @@ def _hard(line: str, letters: int) -> list[str]:
 
 def flow(blocks: Sequence[Block], areas: Iterator[Area]) -> float:
     """Draw blocks one below the other, on to the next area where one does not fit; the height where the last ended."""
-    area = next(areas)
-    y, rest = area.top, list(blocks)
+    area, rest = next(areas), list(blocks)
+    y = area.top
     while rest:
         block = rest.pop(0)
-        follows = next((other for other in rest if not other.keep), None) if block.keep else None
-        together = block.high + sum(other.high for other in rest[: rest.index(follows) + 1]) if follows else block.high
-        if follows and follows.split:
-            together -= follows.high - 1.0
-        if y - together < area.bottom - 1e-9:
-            first, rest_of = block.split(y - area.bottom) if block.split else (None, block)
-            if first:
-                first.draw(area.axes, area.left, y)
-            elif y == area.top:  # taller than a whole column: let it stand alone
-                block.draw(area.axes, area.left, y)
-                rest_of = None
-            if not rest and rest_of is None:
-                return y - block.high
+        if y - _together(block, rest) >= area.bottom - 1e-9:
+            block.draw(area.axes, area.left, y)
+            y -= block.high
+            continue
+        first, left = block.split(y - area.bottom) if block.split else (None, block)
+        if first:
+            first.draw(area.axes, area.left, y)
+        elif y == area.top:  # taller than a whole column
+            block.draw(area.axes, area.left, y)
+            left = None
+        rest = [left, *rest] if left else rest
+        if rest:
             area = next(areas)
             y = area.top
-            rest = ([rest_of] if rest_of else []) + rest
-            continue
-        block.draw(area.axes, area.left, y)
-        y -= block.high
+            if rest[0].again:
+                rest.insert(0, rest[0].again)
     return y
+
+
+def _together(block: Block, rest: Sequence[Block]) -> float:
+    """Height of a block with what it must not be parted from."""
+    if not block.keep or not rest:
+        return block.high
+    return block.high + (min(rest[0].high, 1.0) if rest[0].split else _together(rest[0], rest[1:]))

@@ -18,7 +18,7 @@ from optics.chain.axes import evaluate_possible, holding
 from optics.chain.columns import Columns
 from optics.fiberscope import Fiberscope
 from optics.needs import Needs
-from optics.study.pick_needs import FLAGS, margins, meeting
+from optics.study.pick_needs import FLAGS, margins, meeting, shortfall
 from optics.units import AnyUnit, Flags
 
 LIGHT = ("target_center_lux", "target_min_lux", "target_uva_w_m2")
@@ -29,7 +29,9 @@ RUNGS = np.log([1.03, 1.08, 1.17, 1.35, 1.7, 2.5, 4.0])
 BISECTIONS = 40
 CLOSE = 0.004  # of the change: how near the edge is found
 LESS = 0.98  # with this share of the change the design must still fail
-DIGITS = 6
+DIGITS = 4
+STEEPEST = 50.0  # a change that moves a number more than so many times its own ratio is noise of the numbers
+TRIES = 4
 
 
 @dataclass(frozen=True, slots=True)
@@ -169,7 +171,15 @@ def smallest_changes(
         lanes = lanes.take(~done)
         lanes.bad = lanes.good
     near = _Lanes(*(np.concatenate([getattr(each, name) for each in found]) for name in _Lanes.__slots__))
-    return _best(asked, _closed_in(asked, near), rows)
+    best: dict[int, Change] = {}
+    for _ in range(TRIES):  # a lane that does not hold in the end gives way to those that it left behind
+        if not len(near.row):
+            break
+        last, tried = _closed_in(asked, near)
+        best |= _best(asked, last, rows)
+        open_rows = [place for place, row in enumerate(rows) if int(row) not in best]
+        near = near.take(~tried & np.isin(near.row, open_rows))
+    return best
 
 
 @lru_cache(maxsize=64)
@@ -205,15 +215,17 @@ def _lanes(asked: _Asked) -> _Lanes:
     return _Lanes(*(np.concatenate(each) for each in zip(*parts)))
 
 
-def _closed_in(asked: _Asked, lanes: _Lanes) -> _Lanes:
-    """The edge where what failed is met, by halving in ratio until it is near against the change.
+def _closed_in(asked: _Asked, near: _Lanes) -> tuple[_Lanes, Flags]:
+    """The edge where what failed is met, by halving in ratio until it is near against the change; and which lanes got there.
 
-    A lane whose edge lies beyond one at which the same design passes whole drops out.
+    A lane whose edge lies beyond one at which the same design passes whole drops out on the way.
     """
+    lanes, left = near.take(np.arange(len(near.row))), np.arange(len(near.row))
     for _ in range(BISECTIONS):
         reached = np.full(asked.table.count, np.inf)
         np.minimum.at(reached, lanes.row[lanes.whole], lanes.moved(lanes.good)[lanes.whole])
-        lanes = lanes.take(lanes.moved(lanes.bad) < reached[lanes.row])
+        kept = lanes.moved(lanes.bad) < reached[lanes.row]
+        lanes, left = lanes.take(kept), left[kept]
         rows = np.flatnonzero(lanes.moved(lanes.good) - lanes.moved(lanes.bad) > CLOSE * lanes.moved(lanes.good))
         if not rows.size:
             break
@@ -222,17 +234,17 @@ def _closed_in(asked: _Asked, lanes: _Lanes) -> _Lanes:
         lanes.bad[rows] = np.where(helped, lanes.bad[rows], middle)
         lanes.good[rows] = np.where(helped, middle, lanes.good[rows])
         lanes.whole[rows] = np.where(helped, whole, lanes.whole[rows])
-    return lanes
+    return lanes, np.isin(np.arange(len(near.row)), left)
 
 
 def _best(asked: _Asked, lanes: _Lanes, rows: np.ndarray) -> dict[int, Change]:
     """Of each design the smallest change that holds: it passes, and with a little less of it it does not."""
-    if not len(lanes.row):
-        return {}
     away = np.sign(lanes.end - lanes.start)
-    after = np.array([_rounded(good, side) for good, side in zip(lanes.good, away)])
+    after = np.array([_rounded(good, good - start) for good, start in zip(lanes.good, lanes.start)])
     after = np.where((after - lanes.end) * away > 0, lanes.good, after)  # rounding led past the bound
-    holds = asked.at(lanes, after)[1] & ~asked.at(lanes, lanes.start + LESS * (after - lanes.start))[1]
+    lacks = shortfall(asked.margin, asked.needs)[lanes.row]
+    holds = (lacks <= STEEPEST * lanes.moved(after)) & asked.at(lanes, after)[1]
+    holds &= ~asked.at(lanes, lanes.start + LESS * (after - lanes.start))[1]
     best: dict[int, Change] = {}
     for lane in np.lexsort((lanes.knob, lanes.moved(after))):
         row = int(rows[lanes.row[lane]])
@@ -241,8 +253,9 @@ def _best(asked: _Asked, lanes: _Lanes, rows: np.ndarray) -> dict[int, Change]:
     return best
 
 
-def _rounded(number: float, side: float) -> float:
-    """A number to `DIGITS` digits, rounded up (side 1) or down (-1)."""
-    scale = 10.0 ** (DIGITS - 1 - math.floor(math.log10(abs(number))))
-    whole = math.ceil(number * scale - 1e-6) if side > 0 else math.floor(number * scale + 1e-6)
-    return float(f"{whole / scale:.{DIGITS}g}")
+def _rounded(number: float, change: float) -> float:
+    """A number rounded onward, away from where it came from, to `DIGITS` digits or to a five-hundredth of its change."""
+    digits = max(DIGITS - math.floor(math.log10(number)) - 1, 3 - math.floor(math.log10(abs(change))))
+    scale = 10.0**digits
+    whole = math.ceil(number * scale - 1e-6) if change > 0 else math.floor(number * scale + 1e-6)
+    return round(whole / scale, digits)
