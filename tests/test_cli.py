@@ -113,7 +113,10 @@ BAD = [
     ),
     (("size", "gearbox_tooth", "--set", "guide.fiber.preset=lead"), "guide.fiber.preset is 'lead'"),
     (("size", "gearbox_tooth", "--set", "nonsense"), "--set nonsense is not of the form path=value"),
-    (("size", "gearbox_tooth", "--set", "guide.fiber.na=1.45", "--set", "guide.fiber.core_index=1.4"), "the NA must be below"),
+    (
+        ("size", "gearbox_tooth", "--set", "guide.fiber.na=1.45", "--set", "guide.fiber.core_index=1.4"),
+        "the NA must be below",
+    ),
     (("size", "gearbox_tooth", "--set", "source.launch.spot_mm=0.3"), "brighter than its lamp allows"),
     (("list", "fibres"), "FOLDER is 'fibres'"),
 ]

@@ -4,7 +4,7 @@ from collections import Counter
 
 import pytest
 
-from optics.published import check, half_unit, rows
+from optics.published import _row, check, half_unit, rows
 from optics.spec import OutOfRange
 
 ROWS = rows()
@@ -47,6 +47,4 @@ def test_no_row_stands_twice():
 def test_half_a_unit_of_the_last_digit():
     assert half_unit("12.50") == pytest.approx(0.005)
     with pytest.raises(OutOfRange, match="needs a reason"):
-        from optics.published import _row
-
         _row({"quantity": "x", "printed": "1.0", "tolerance": 0.1}, "trade", "here")

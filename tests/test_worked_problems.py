@@ -43,12 +43,18 @@ def test_what_a_face_passes_on():
 
 
 def test_light_of_one_port():
-    """10 lm from a 1.0 mm port of uniform radiance, NA 0.56, at 20 mm: 25,360 lx on axis; 0.494 of it at 13.0 mm; ends at 14.02."""
+    """10 lm from a 1.0 mm port of uniform radiance, NA 0.56, at 20 mm: 25,360 lx on axis; 0.494 of it at 13.0 mm."""
     port, cone = [Disc(0.0, 0.0, 0.5)], ExitCone.uniform(0.56)
 
     def lux(u):
         return plane_irradiance_w_m2(
-            ports=port, cone=cone, power_w=10.0, distance_mm=20.0, tilt_deg=0.0, u_mm=np.asarray(u, float), v_mm=np.zeros(np.shape(u))
+            ports=port,
+            cone=cone,
+            power_w=10.0,
+            distance_mm=20.0,
+            tilt_deg=0.0,
+            u_mm=np.asarray(u, float),
+            v_mm=np.zeros(np.shape(u)),
         )
 
     assert float(lux(0.0)) == pytest.approx(25_360, rel=0.001)
@@ -85,6 +91,6 @@ def test_fill_of_a_section():
 
 
 def test_light_back_at_the_sensor():
-    """1000 lx, reflectance 0.3, f/4, lens 0.85, bundle 0.45, relay x2: 0.45 lx at the sensor (no relay loss, lens at infinity)."""
+    """1000 lx, reflectance 0.3, f/4, lens 0.85, bundle 0.45, relay x2: 0.45 lx at the sensor (no relay loss)."""
     face = 1000 * 0.3 / np.pi * face_irradiance_factor(f_number=4.0, magnification=0.0, transmission=0.85)
     assert face * 0.45 / 2**2 == pytest.approx(0.45, rel=0.01)

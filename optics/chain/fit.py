@@ -7,7 +7,7 @@ from optics.body.lumen import smallest_lumens
 from optics.body.passage import longest_rigid_tip_mm, tube_bend_radius_mm
 from optics.body.section import jacketed_mm, outer_diameter_mm
 from optics.chain.columns import Columns, distinct_rows, written_out
-from optics.chain.light import exit_mm, medium_index
+from optics.chain.cone import exit_mm, medium_index
 from optics.guide.bundle import fiber_area_mm2
 from optics.guide.ends import tilt_deviation_deg
 from optics.units import um_from_mm

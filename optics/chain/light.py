@@ -8,28 +8,31 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from optics.beam import Beam, bin_edges
+from optics.beam import Beam
 from optics.chain.columns import Columns, written_out
+from optics.chain.cone import (
+    LAST_EDGES,
+    angle_edges,
+    bin_na,
+    exit_mm,
+    guide_face_mm,
+    guide_face_na,
+    medium_index,
+    taper_area_ratio,
+)
 from optics.chain.launch import filled_na, lamp_spectrum, launch
-from optics.guide.bend import bend_matrix, relative_bend_ratio
+from optics.guide.bend import bend_matrix
 from optics.guide.bundle import fiber_area_mm2
-from optics.guide.ends import reflection_transmission, tapered_na, tilted_face_transmission
+from optics.guide.ends import reflection_transmission, tilted_face_transmission
 from optics.guide.fiber import ray_stretch
 from optics.guide.joint import joint_share
 from optics.guide.packing import core_share
 from optics.media.face import ray_face_transmission
-from optics.media.index import D_LINE_NM, refractive_index
 from optics.media.loss import attenuation_transmission
 from optics.scene.cover import spread_share
 from optics.scene.exit_cone import cone_na_holding
 from optics.spectrum import GRID_NM, color_rendering_index, color_temperature_k, duv, integral, luminous_flux_lm
 
-INNER_BINS, OUTER_BINS = 16, 8
-# Room beyond NA^2 for what bends widen: 2.5 X, at least a little, at most what the bend table knows.
-BEND_SPREAD, LEAST_ROOM, MOST_ROOM = 2.5, 1.02, 2.0
-LARGEST_NA = 0.9999  # of light that is followed: a grazing ray gets through no face
-# Where a taper would push bins beyond that, they are left thin and dark instead.
-_LAST_EDGES = LARGEST_NA**2 + 1e-9 * np.arange(INNER_BINS + OUTER_BINS + 1)
 EXIT_SHARE = 0.95  # exit_na holds this share of the lumens
 
 
@@ -83,9 +86,9 @@ def light(columns: Columns) -> Light:
     edges, way, value = _onto_the_face(columns, cable, spectrum)
     if cable.any():
         _through_cable(columns, cable, way, edges)
-    edges = edges * _taper(columns, "entry_mm")[:, None]
+    edges = edges * taper_area_ratio(columns, "entry_mm")[:, None]
     _through_guide(columns, way, edges)
-    edges = np.minimum(edges / _taper(columns, "exit_mm")[:, None], _LAST_EDGES)
+    edges = np.minimum(edges / taper_area_ratio(columns, "exit_mm")[:, None], LAST_EDGES)
     before_w = (integral(way.power_w_nm) * way.share).sum(axis=1)
     _out(columns, way, edges)
     beam = Beam(way.power_w_nm * way.share[:, :, None], edges)
@@ -109,7 +112,7 @@ def _onto_the_face(columns: Columns, cable: np.ndarray, spectrum: np.ndarray):
     face["na"] = np.where(cable, face["na"], guide_face_na(columns))
     face_mm = np.where(cable, columns["guide.cable.diameter_mm"], guide_face_mm(columns))
     fill_na = filled_na(columns, face_mm=face_mm, face_na=face["na"])
-    edges = _edges(columns, fill_na, face["na"])
+    edges = angle_edges(columns, fill_na, face["na"])
     na = bin_na(edges)
     launched = launch(columns, edges, fill_na, face_mm=face_mm, face_na=face["na"])
 
@@ -221,65 +224,6 @@ def _not_taken(way: Way, cable: np.ndarray) -> np.ndarray:
     entered = np.where(cable, way.after_lm.get("cable core share", np.nan), way.after_lm["core share"])
     came = way.after_lm["condenser"]
     return 1.0 - np.where(came > 0, entered / np.where(came > 0, came, 1.0), 0.0)
-
-
-def bin_na(edges: np.ndarray) -> np.ndarray:
-    """NA of the middle, in sin^2, of each bin [design, bin]."""
-    return np.sqrt((edges[:, 1:] + edges[:, :-1]) / 2)
-
-
-def guide_face_mm(columns: Columns) -> np.ndarray:
-    """Diameter of the guide's input face, wider than the bundle where it is tapered [design]."""
-    return np.where(
-        columns.has("guide.bundle.entry_mm"), columns["guide.bundle.entry_mm"], columns["guide.bundle.diameter_mm"]
-    )
-
-
-def guide_face_na(columns: Columns) -> np.ndarray:
-    """NA that the guide's input face takes: its fibers' own, or less at a face that tapers down [design]."""
-    bundle = columns["guide.bundle.diameter_mm"]
-    tapered = tapered_na(na=columns["guide.fiber.na"], from_mm=bundle, to_mm=guide_face_mm(columns))
-    return np.minimum(tapered, LARGEST_NA)
-
-
-def exit_mm(columns: Columns) -> np.ndarray:
-    """Diameter of a round face with the area of all exit faces [design]."""
-    return np.where(
-        columns.has("guide.bundle.exit_mm"), columns["guide.bundle.exit_mm"], columns["guide.bundle.diameter_mm"]
-    )
-
-
-def _taper(columns: Columns, end: str) -> np.ndarray:
-    """(end diameter over bundle diameter)^2 [design]; 1 without a taper."""
-    bundle = columns["guide.bundle.diameter_mm"]
-    return (np.where(columns.has(f"guide.bundle.{end}"), columns[f"guide.bundle.{end}"], bundle) / bundle) ** 2
-
-
-def medium_index(columns: Columns) -> np.ndarray:
-    """Refractive index of what stands in front of the tip, at the d line [design]; 1 in air and without a target."""
-    found = np.ones(columns.count)
-    for medium, rows in columns.split("scene.target.medium"):
-        if medium not in ("", "air"):
-            found[rows] = refractive_index(medium=medium, wavelength_nm=D_LINE_NM)
-    return found
-
-
-def _edges(columns: Columns, fill_na: np.ndarray, face_na: np.ndarray) -> np.ndarray:
-    """Inner bins up to where the light ends in every guide; outer bins for what bends, a joint or a cover may need."""
-    first, guide = np.minimum(fill_na, face_na), guide_face_na(columns)
-    widest = np.maximum(first, guide) * np.sqrt(_widening(columns)) + columns.get("scene.cover.spread_na", 0.0)
-    outer = np.minimum(widest, LARGEST_NA)
-    return bin_edges(inner_na=np.minimum(first, guide), outer_na=outer, inner_count=INNER_BINS, outer_count=OUTER_BINS)
-
-
-def _widening(columns: Columns) -> np.ndarray:
-    """How far in sin^2 the sharpest bend spreads light, over NA^2 [design]: bends leave skew rays beyond the guide's cone."""
-    radius = columns.items("guide.bundle.bends.radius_mm", np.inf)
-    if radius.shape[1] == 0:
-        return np.full(columns.count, LEAST_ROOM)
-    fiber = {name: columns[f"guide.fiber.{name}"][:, None] for name in ("core_index", "na", "core_um")}
-    sharpest = relative_bend_ratio(**fiber, bend_radius_mm=radius).max(axis=1)
-    return np.clip(1 + BEND_SPREAD * sharpest, LEAST_ROOM, MOST_ROOM)
 
 
 def _core_share(columns: Columns, table: str) -> np.ndarray:

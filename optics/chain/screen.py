@@ -5,7 +5,8 @@ import dataclasses
 import numpy as np
 
 from optics.chain.columns import Columns
-from optics.chain.light import Light, exit_mm
+from optics.chain.cone import exit_mm
+from optics.chain.light import Light
 from optics.chain.target import Lit
 from optics.scene.exposure import Screening, peak_factor, screening
 

@@ -5,7 +5,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from optics.chain.columns import Columns
-from optics.chain.light import Light, medium_index
+from optics.chain.cone import medium_index
+from optics.chain.light import Light
 from optics.image.chip import diagonal_mm
 from optics.image.field import field_half_angle_deg, field_radius_mm
 from optics.image.objective import apparent_distance_mm, image_distance_mm

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from optics.chain.columns import Columns
-from optics.chain.light import medium_index
+from optics.chain.cone import medium_index
 from optics.chain.target import pupil_depth_mm
 from optics.image.bundle import exit_luminance_cd_m2
 from optics.image.chip import sampling_um

@@ -5,8 +5,9 @@ from itertools import pairwise
 import numpy as np
 
 from optics.chain.columns import Columns, columns
+from optics.chain.cone import medium_index
 from optics.chain.fit import fit
-from optics.chain.light import light, medium_index
+from optics.chain.light import light
 from optics.chain.target import field_of_view, port_objects, pupil_depth_mm
 from optics.commands.check_lines import Compared, Line, step_lines
 from optics.fiberscope import Fiberscope

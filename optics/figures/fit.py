@@ -170,14 +170,18 @@ def limit(view: LimitCurve, *, palette: Palette = LIGHT, width_in: float = WIDTH
 
 
 def _stiff(axes: Axes, palette: Palette, view: LimitCurve, top: float, room: float) -> None:
-    """From which tube on the bore gives less than its least bend radius, on the axis that has the tube's diameter."""
-    across = view.vary == "outer_diameter_mm"
-    if view.stiff_mm >= (view.varied[-1] if across else top):
+    """Where the bore gives less than the tube's least bend radius: wider tubes, or sharper bores."""
+    first, last = (float(end) for end in view.varied[[0, -1]])
+    upward = view.vary == "rigid_tip_mm"  # the tube's diameter runs upward there
+    low, high = (
+        (first, view.stiff_mm) if view.vary == "centerline_radius_mm" else (view.stiff_mm, top if upward else last)
+    )
+    if low >= high or (not upward and not first <= view.stiff_mm < last):
         return
-    span, line = (axes.axvspan, axes.axvline) if across else (axes.axhspan, axes.axhline)
-    span(view.stiff_mm, view.varied[-1] if across else top, facecolor=palette.accent, alpha=0.13, linewidth=0)
+    span, line = (axes.axhspan, axes.axhline) if upward else (axes.axvspan, axes.axvline)
+    span(low, high, facecolor=palette.accent, alpha=0.13, linewidth=0)
     line(view.stiff_mm, color=palette.accent, linewidth=THIN * 1.5)
-    at = (view.stiff_mm, 0.02 * top) if across else (view.varied[0], view.stiff_mm)
+    at = (first, view.stiff_mm) if upward else (low, 0.02 * top)
     _said(axes, palette, *at, "too stiff for the bend", view.varied, room, palette.accent, below=False)
 
 

@@ -53,7 +53,6 @@ class FillView:
     fiber_count: int
     held_count: int
     full_lumen_mm: float
-    needed_lumen_mm: float
     fits: bool
 
 
@@ -168,7 +167,7 @@ def fill_view(fiberscope: Fiberscope) -> FillView | None:
     )
     full = np.sqrt(max(lumen**2 + 4 / np.pi * (fibers / limit - free), 0.0))
     counts = (int(body["fiber_count"]), int(held.fiber_count))
-    return FillView(free, fibers, fibers / free, limit, *counts, float(full), view.needed_lumen_mm, bool(view.fits))
+    return FillView(free, fibers, fibers / free, limit, *counts, float(full), bool(view.fits))
 
 
 def weights(fiberscope: Fiberscope) -> tuple[Weight, ...]:

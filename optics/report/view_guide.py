@@ -6,8 +6,9 @@ import numpy as np
 
 from optics.body.handling import least_bend_radius_mm
 from optics.chain.columns import columns, written_out
+from optics.chain.cone import guide_face_na, medium_index
 from optics.chain.evaluate import evaluate
-from optics.chain.light import guide_face_na, light, medium_index
+from optics.chain.light import light
 from optics.chain.solve import solved
 from optics.fiberscope import Fiberscope
 from optics.guide.bend import (

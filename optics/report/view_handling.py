@@ -24,6 +24,7 @@ from optics.units import mm_from_um, um_from_mm
 FRICTION = (0.2, 0.3, 0.4)  # of polymer coverings on metal and moist walls, common practice ("trade")
 TURNS = (1, 2, 3, 4, 6)
 STEAM_C = STERILIZATION_C["steam"]
+RULE = "plastic fibers"
 
 
 @dataclass(frozen=True, slots=True)
@@ -80,8 +81,8 @@ def bending_view(fiberscope: Fiberscope) -> BendingView | None:
         radius = float(
             plastic_bend_radius_mm(fiber_mm=mm_from_um(fiber.fiber_um), diameters_factor=PLASTIC_DIAMETERS[1])
         )
-        rows.append(("plastic rule", f"{PLASTIC_DIAMETERS[1]:g} diameters", fiber.fiber_um, None, None, radius))
-    parts = tuple(Bent(*row, decides=row[-1] == least and row[0] != "plastic rule") for row in rows)
+        rows.append((RULE, f"rule of {PLASTIC_DIAMETERS[1]:g} diameters", fiber.fiber_um, None, None, radius))
+    parts = tuple(Bent(*row, decides=row[-1] == least and row[0] != RULE) for row in rows)
     steered = fiberscope.body.passage.bending if fiberscope.body.passage else None
     if steered is None:
         return BendingView(parts, asked, by, least, None, None, None)

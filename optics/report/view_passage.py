@@ -26,20 +26,19 @@ def entry_tilts(bore_mm: float, tip_mm: float) -> tuple[tuple[float, float], ...
 class PassageLimits:
     """What would just pass the bend of the bore, one thing changed at a time; None where nothing would.
 
-    `stiff_mm`: the widest tube whose least bend radius the bore still gives.
+    `longest_tip_mm`: with this tube. `widest_tube_mm` and `least_centerline_mm`: with this tip, the tube as stiff as it is.
     """
 
-    tip_for_tube_mm: float | None
-    tube_for_tip_mm: float | None
-    radius_for_tip_mm: float | None
-    stiff_mm: float | None
+    longest_tip_mm: float | None
+    widest_tube_mm: float | None
+    least_centerline_mm: float | None
 
 
 @dataclass(frozen=True, slots=True)
 class LimitCurve:
     """The passable limit [point] over what is varied (nan: nothing passes), and the design's own point.
 
-    `stiff_mm`: from which outer diameter on the tube is too stiff for the bend (None: not told, or all are). `needed`: the
+    `stiff_mm`: from which outer diameter on, or below which bend of the bore, the tube is too stiff (None: always). `needed`: the
     most that is wanted of what is varied and of what is limited.
     """
 
@@ -62,6 +61,11 @@ class _Bend:
     tube_mm: float
     rigid_mm: float | None
     least_radius_mm: float
+
+    @property
+    def tangent_ratio(self) -> float:
+        """tan(theta/4) of the bore's bend."""
+        return float(np.tan(rad_from_deg(self.bend_deg) / 4))
 
     @property
     def flexes(self) -> bool:
@@ -96,13 +100,17 @@ def passage_limits(fiberscope: Fiberscope) -> PassageLimits | None:
     bend = bend_of(fiberscope)
     if bend is None:
         return None
-    enters = bend.tube_mm <= bend.bore_mm
-    longest = float(bend.longest_mm(bend.tube_mm, bend.centerline_radius_mm)) if enters else None
-    tube = radius = None
+    enters, tubes = bend.tube_mm <= bend.bore_mm, [stiff_tube_mm(bend), bend.bore_mm]
+    radii = [stiff_centerline_mm(bend)] if enters else [None]
     if bend.rigid_mm is not None:
-        tube = _or_none(widest_tube_mm(bend, np.array([bend.rigid_mm]))[0])
-        radius = _least_centerline_mm(bend) if enters else None
-    return PassageLimits(longest, tube, radius, stiff_tube_mm(bend))
+        found = float(widest_tube_mm(bend, np.array([bend.rigid_mm]))[0])
+        tubes.append(found if np.isfinite(found) else None)
+        radii.append(_tip_centerline_mm(bend) if enters else None)
+    return PassageLimits(
+        float(bend.longest_mm(bend.tube_mm, bend.centerline_radius_mm)) if enters else None,
+        None if None in tubes else min(tubes),
+        None if None in radii else max(radii),
+    )
 
 
 def widest_tube_mm(bend: _Bend, rigid_mm: np.ndarray) -> np.ndarray:
@@ -115,8 +123,8 @@ def widest_tube_mm(bend: _Bend, rigid_mm: np.ndarray) -> np.ndarray:
     return np.where(low > 2e-6 * bend.bore_mm, low, np.nan)
 
 
-def _least_centerline_mm(bend: _Bend) -> float | None:
-    """The least bend radius of the bore through which tube and tip pass; the longest tip grows with it."""
+def _tip_centerline_mm(bend: _Bend) -> float | None:
+    """The least bend radius of the bore through which the tip passes; the longest tip grows with it."""
     low, high = bend.bore_mm / 2, 1e4 * bend.bore_mm
     if bend.longest_mm(bend.tube_mm, high) < bend.rigid_mm:
         return None
@@ -128,13 +136,14 @@ def _least_centerline_mm(bend: _Bend) -> float | None:
 
 def stiff_tube_mm(bend: _Bend) -> float | None:
     """B - 2 (r - Rc) tan^2(theta/4): the tube whose largest arc in the bore is its own least radius r."""
-    quarter = rad_from_deg(bend.bend_deg) / 4
-    found = bend.bore_mm - 2 * (bend.least_radius_mm - bend.centerline_radius_mm) * np.tan(quarter) ** 2
+    found = bend.bore_mm - 2 * (bend.least_radius_mm - bend.centerline_radius_mm) * bend.tangent_ratio**2
     return float(min(found, bend.bore_mm)) if found > 0 else None
 
 
-def _or_none(number: float) -> float | None:
-    return float(number) if np.isfinite(number) else None
+def stiff_centerline_mm(bend: _Bend) -> float:
+    """r - (B - D)/2 cot^2(theta/4): the bend of the bore that asks for the tube's own least radius r; at least a mitre."""
+    found = bend.least_radius_mm - (bend.bore_mm - bend.tube_mm) / 2 / bend.tangent_ratio**2
+    return float(max(found, bend.bore_mm / 2))
 
 
 def limit_curve(fiberscope: Fiberscope, vary: Vary) -> LimitCurve | None:
@@ -163,7 +172,7 @@ def limit_curve(fiberscope: Fiberscope, vary: Vary) -> LimitCurve | None:
     else:
         varied = np.linspace(bend.bore_mm / 2, max(2 * radius, 3 * bend.bore_mm), POINTS)
         passable, limit, needed = bend.longest_mm(tube, varied), "rigid_tip_mm", (None, wanted_tip)
-        own, stiff = (radius, tip), None
+        own, stiff = (radius, tip), stiff_centerline_mm(bend)
     if tip is None:
         return LimitCurve(vary, limit, varied, passable, None, True, stiff, needed)
     passes = tube <= bend.bore_mm and bool(bend.longest_mm(tube, radius) >= tip) and bend.flexes

@@ -8,9 +8,10 @@ from dataclasses import dataclass
 import numpy as np
 
 from optics.chain.columns import Columns, columns
+from optics.chain.cone import medium_index
 from optics.chain.evaluate import evaluate
 from optics.chain.fit import fit
-from optics.chain.light import Light, light, medium_index
+from optics.chain.light import Light, light
 from optics.chain.target import field_of_view, port_objects, pupil_depth_mm
 from optics.fiberscope import BundleImage, Fiberscope
 from optics.image.objective import accepted_fraction, face_irradiance_factor, magnification, working_f_number

@@ -20,7 +20,7 @@ from optics.viewer.camera import LEAST_PIXELS_PER_PITCH
 from optics.viewer.detail import PARTS
 
 FLAT = 0.95  # as good as the best: what is resolved is at least this share of it
-ROUNDS = 4  # of closing in on the best
+ROUNDS = 3  # of closing in on the best
 SAME = 1e-6  # relative: no difference
 END = 0.02  # in the log of the number: so near the end of its range it counts as the end
 STEP = 1.25  # how far beyond the best the next part is asked for its cost

@@ -1,6 +1,5 @@
-"""The contrast that each part of the way back leaves over frequency, and what the viewer needs.
+"""The contrast that each part of the way back leaves over frequency, and what the viewer needs: where they meet is resolved.
 
-Where the two meet is what is resolved.
 One design in the chain's own parts and factors, so that the curves pass through the numbers of `size`.
 """
 
@@ -15,10 +14,10 @@ from optics.chain.detail import _present as present
 from optics.chain.evaluate import evaluate
 from optics.chain.fit import fit
 from optics.chain.light import Light, light
-from optics.chain.solve import solved, with_solved
+from optics.chain.solve import PATHS, solved, with_solved
 from optics.chain.target import field_of_view, port_objects, target
 from optics.chain.way_back import Parts, way_back
-from optics.fiberscope import Fiberscope
+from optics.fiberscope import SOLVE, Fiberscope
 from optics.scene.ports import Port
 from optics.spec import OutOfRange, require
 from optics.units import AnyUnit
@@ -67,7 +66,10 @@ def numbered(fiberscope: Fiberscope) -> Fiberscope:
     """The design with what it leaves to be solved for as numbers. Raises OutOfRange without an image."""
     if fiberscope.image is None or fiberscope.scene is None:
         raise OutOfRange("image is missing; a bare light guide shows no detail.")
-    figures = evaluate(columns([fiberscope]))
+    table = columns([fiberscope])
+    if not any((table.texts(path) == SOLVE).any() for path in PATHS):
+        return fiberscope
+    figures = evaluate(table)
     return with_solved(fiberscope, {name: float(figures[name][0]) for name in ("guide_diameter_mm", "image_mm")})
 
 

@@ -5,9 +5,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from optics.chain.columns import columns
+from optics.chain.cone import medium_index
 from optics.chain.detail import _upper_lp_mm as upper_lp_mm
 from optics.chain.evaluate import Figures
-from optics.chain.light import medium_index
 from optics.chain.target import pupil_depth_mm
 from optics.fiberscope import Fiberscope
 from optics.report.views import exit_cone

@@ -6,41 +6,25 @@ change the design passes, with 2 % less of it it does not. Sizes of changes are 
 """
 
 import math
-import typing
 from collections.abc import Mapping
 from dataclasses import dataclass
-from functools import lru_cache
 from typing import Any
 
 import numpy as np
 
 from optics.chain.axes import evaluate_possible, holding
 from optics.chain.columns import Columns
-from optics.fiberscope import Fiberscope
 from optics.needs import Needs
-from optics.study.pick_needs import FLAGS, margins, meeting, shortfall
+from optics.study.pick_knobs import KNOBS, usual_bounds
+from optics.study.pick_needs import FLAGS, margins, meeting
 from optics.units import AnyUnit, Flags
 
-LIGHT = ("target_center_lux", "target_min_lux", "target_uva_w_m2")
-DETAIL = ("smallest_gap_mm", "smallest_line_mm")
-SEEN = (*DETAIL, "frame_hz")
-SIZE = ("fits", "outer_diameter_mm", "enters", "tip", "elbow", "passes")
 RUNGS = np.log([1.03, 1.08, 1.17, 1.35, 1.7, 2.5, 4.0])
 BISECTIONS = 40
 CLOSE = 0.004  # of the change: how near the edge is found
 LESS = 0.98  # with this share of the change the design must still fail
 DIGITS = 4
-STEEPEST = 50.0  # a change that moves a number more than so many times its own ratio is noise of the numbers
 TRIES = 4
-
-
-@dataclass(frozen=True, slots=True)
-class Knob:
-    """One number: what a larger value can help, and what a smaller one can."""
-
-    path: str
-    up: tuple[str, ...] = ()
-    down: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,47 +37,6 @@ class Change:
 
     def as_dict(self) -> dict[str, Any]:
         return {"path": self.path, "from": self.before, "to": self.after}
-
-
-# What can be bought or made otherwise; the job itself (distance, length, bore, needs) stays. In the order of the light.
-KNOBS = (
-    Knob("source.lamp.flux_lm", up=(*LIGHT, *SEEN)),
-    Knob("source.lamp.flux_w", up=(*LIGHT, *SEEN)),
-    Knob("guide.bundle.diameter_mm", up=(*LIGHT, "evenness", *SEEN), down=(*LIGHT, "evenness", *SEEN, *SIZE)),
-    Knob("guide.bundle.packing_fraction", up=(*LIGHT, *SEEN)),
-    Knob("scene.ports.offset_mm", up=(*LIGHT, "evenness", *SEEN), down=(*LIGHT, "evenness", *SEEN, *SIZE)),
-    Knob(
-        "image.objective.focal_mm",
-        up=("target_min_lux", "evenness", *SEEN),
-        down=("target_min_lux", "evenness", "field_of_view_deg", *SEEN),
-    ),
-    Knob("image.objective.f_number", up=DETAIL, down=SEEN),
-    Knob(
-        "image.objective.focus_mm",
-        up=("target_min_lux", "evenness", "field_of_view_deg", *SEEN),
-        down=("target_min_lux", "evenness", "field_of_view_deg", *SEEN),
-    ),
-    Knob("image.bundle.core_um", up=SEEN, down=DETAIL),
-    Knob("image.bundle.pitch_um", up=SEEN, down=(*SEEN, "bend_radius_mm", "elbow", "passes")),
-    Knob(
-        "image.bundle.diameter_mm",
-        up=("target_min_lux", "evenness", "field_of_view_deg"),
-        down=("target_min_lux", "target_center_lux", "evenness", *SIZE, "bend_radius_mm"),
-    ),
-    Knob(
-        "image.chip.pixel_um",
-        up=("field_of_view_deg", *SEEN),
-        down=("target_min_lux", "evenness", *SEEN, *SIZE),
-    ),
-    Knob("image.chip.longest_exposure_s", up=DETAIL, down=("frame_hz",)),
-    Knob("viewer.camera.longest_exposure_s", up=DETAIL, down=("frame_hz",)),
-    Knob("viewer.camera.relay_na", up=SEEN),
-    Knob("body.section.outer_diameter_mm", up=("fits",), down=SIZE),
-    Knob("body.section.wall_mm", down=SIZE),
-    Knob("body.section.clearance_mm", down=SIZE),
-    Knob("body.passage.rigid_tip_mm", down=("rigid_tip_mm", "tip", "passes")),
-    Knob("body.handling.bend_radius_mm", down=("bend_radius_mm", "elbow", "passes")),
-)
 
 
 @dataclass(slots=True)
@@ -182,25 +125,6 @@ def smallest_changes(
     return best
 
 
-@lru_cache(maxsize=64)
-def usual_bounds(path: str) -> tuple[float, float]:
-    """The usual bounds of a number of the design file, as its Spec states them.
-
-    >>> usual_bounds("image.objective.f_number")
-    (2.0, 11.0)
-    """
-    here: list[Any] = [Fiberscope]
-    for part in path.split("."):
-        field = next(model.model_fields[part] for model in here if part in getattr(model, "model_fields", {}))
-        here = _members(field.annotation)
-    return tuple(field.json_schema_extra["usual"])
-
-
-def _members(annotation: Any) -> list[Any]:
-    inner = typing.get_args(annotation)
-    return [member for part in inner for member in _members(part)] if inner else [annotation]
-
-
 def _lanes(asked: _Asked) -> _Lanes:
     """Every knob and direction that may help all that fails, for each design that has the knob."""
     parts = []
@@ -242,9 +166,7 @@ def _best(asked: _Asked, lanes: _Lanes, rows: np.ndarray) -> dict[int, Change]:
     away = np.sign(lanes.end - lanes.start)
     after = np.array([_rounded(good, good - start) for good, start in zip(lanes.good, lanes.start)])
     after = np.where((after - lanes.end) * away > 0, lanes.good, after)  # rounding led past the bound
-    lacks = shortfall(asked.margin, asked.needs)[lanes.row]
-    holds = (lacks <= STEEPEST * lanes.moved(after)) & asked.at(lanes, after)[1]
-    holds &= ~asked.at(lanes, lanes.start + LESS * (after - lanes.start))[1]
+    holds = asked.at(lanes, after)[1] & ~asked.at(lanes, lanes.start + LESS * (after - lanes.start))[1]
     best: dict[int, Change] = {}
     for lane in np.lexsort((lanes.knob, lanes.moved(after))):
         row = int(rows[lanes.row[lane]])

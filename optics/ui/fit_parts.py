@@ -13,11 +13,12 @@ from optics.ui import drawings, headline
 from optics.ui.names import choice
 from optics.ui.rows import Columns, columns
 from optics.ui.sketch import Sketch
-from optics.ui.words import number, plain
+from optics.ui.words import number, plain, sentence_case
 
 NEEDS = ("outer_diameter_mm", "bend_radius_mm", "rigid_tip_mm")
 SLIDING = "Parts off the axis slide along the tube in a bend toward their side: as much slack must find room."
-PUSHING = "Force over that in a straight bore, by friction alone: an orientation. Three or four quarter turns are the end."
+PUSHING = "Over that in a straight bore, by friction alone: an orientation. Three or four quarter turns are the practical end."
+SPARE = 0.005  # of the lumen: less is said of no tube
 VARIED = {
     "outer diameter of the tube": "outer_diameter_mm",
     "length of the rigid tip": "rigid_tip_mm",
@@ -27,7 +28,7 @@ VARIED = {
 
 def answer(report: Report, scope: Fiberscope, limits: PassageLimits | None, fill: FillView) -> None:
     """Whether it fits and passes, and what would do where it does not."""
-    mark, first, rest = verdict(report, scope, limits, fill)
+    mark, first, rest = verdict(report, scope, limits)
     st.header(f"{mark} {plain(first)}", anchor=False)
     st.markdown(plain(rest))
     if fill.fits and fill.fill_fraction > fill.limit_fraction:
@@ -40,56 +41,66 @@ def of_body(report: Report) -> Report:
     return replace(report, needs=tuple(line for line in report.needs if line.name in NEEDS))
 
 
-def verdict(report: Report, scope: Fiberscope, limits: PassageLimits | None, fill: FillView) -> tuple[str, str, str]:
+def verdict(report: Report, scope: Fiberscope, limits: PassageLimits | None) -> tuple[str, str, str]:
     """(mark, the answer, what stands behind it)."""
-    fit, passage = report.fit, scope.body.passage
-    tube, wall = number(fit.outer_diameter_mm), scope.body.section.wall_mm
-    if not fill.fits:
-        needed = number(fill.needed_lumen_mm + 2 * wall)
-        rest = (
-            f"The parts need a lumen of {number(fill.needed_lumen_mm)} mm, the tube leaves {number(fit.lumen_mm)} mm."
+    fit, passage, tip = report.fit, scope.body.passage, report.summary.rigid_tip_mm
+    tube = number(fit.outer_diameter_mm)
+    if fit.needed_diameter_mm is not None:
+        first = (
+            f"The parts do not fit: they need a tube of {number(fit.needed_diameter_mm)} mm, this one has {tube} mm."
         )
-        return "✗", f"The parts do not fit: they need a tube of {needed} mm, this one has {tube} mm.", rest
+        rest = f"They take a lumen of {number(fit.needed_lumen_mm)} mm, the tube leaves {number(fit.lumen_mm)} mm."
+        return "✗", first, rest
     if passage is None or passage.bore_mm is None:
         return "○", f"The parts fit a tube of {tube} mm.", "No bore is asked for, so nothing is said of passing one."
     bore = number(passage.bore_mm)
     if fit.outer_diameter_mm > passage.bore_mm:
-        return "✗", f"The tube of {tube} mm does not enter the bore of {bore} mm.", f"{bore} mm at most would enter."
+        return "✗", f"The tube of {tube} mm does not enter the bore of {bore} mm.", _instead(limits, None)
     if limits is None:
-        return "✓", f"It fits and enters: a tube of {tube} mm in a bore of {bore} mm.", "The bore is straight."
-    tip, longest = report.summary.rigid_tip_mm, limits.tip_for_tube_mm
-    too_long, too_stiff = tip is not None and tip > longest, fit.bend_radius_mm > fit.passable_radius_mm
-    if too_long:
-        thinner = "" if limits.tube_for_tip_mm is None else f", or a tube of {number(limits.tube_for_tip_mm)} mm"
-        first = f"The tip passes the bore, but its {number(tip)} mm are too long for the elbow"
+        return "✓", f"It fits and enters: a tube of {tube} mm in a bore of {bore} mm.", "No elbow is asked for."
+    longest = number(limits.longest_tip_mm)
+    flexes = f"the tube bends to {_apart(fit.bend_radius_mm, fit.passable_radius_mm)} mm"
+    flexes += f", the bore gives {_apart(fit.passable_radius_mm, fit.bend_radius_mm)} mm"
+    too_stiff = fit.bend_radius_mm > fit.passable_radius_mm
+    if tip is not None and tip > limits.longest_tip_mm:
+        first = f"The tip passes the bore, but its {number(tip)} mm are too long for the elbow: {longest} mm at most"
+        if too_stiff:
+            return "✗", f"{first}.", f"It is too stiff as well: {flexes}. {_instead(limits, tip)}"
+        thinner = "" if limits.widest_tube_mm is None else f", or a tube of {number(limits.widest_tube_mm)} mm"
+        return "✗", f"{first}{thinner}.", _instead(replace(limits, widest_tube_mm=None), tip)
+    if too_stiff:
         return (
             "✗",
-            f"{first}: {number(longest)} mm at most{thinner}.",
-            _gentler(limits) + (_stiff(fit, limits) if too_stiff else ""),
+            "The tip passes the bore, but the tube is too stiff for its elbow.",
+            _sentence(flexes) + _instead(limits, tip),
         )
-    if too_stiff:
-        return "✗", "The tip passes the bore, but the tube is too stiff for its elbow.", _stiff(fit, limits)
     room = (
-        f"The rigid tip of {number(tip)} mm has room: up to {number(longest)} mm pass the elbow."
+        f"The tip of {number(tip)} mm has room, up to {longest} mm pass the elbow"
         if tip is not None
-        else f"A rigid tip of up to {number(longest)} mm would pass the elbow."
+        else (f"A rigid tip of up to {longest} mm would pass the elbow")
     )
-    bends = f"The tube bends to {number(fit.bend_radius_mm)} mm, the bore gives {number(fit.passable_radius_mm)} mm."
-    return "✓", f"It fits and passes: a tube of {tube} mm in a bore of {bore} mm.", f"{room} {bends}"
+    return "✓", f"It fits and passes: a tube of {tube} mm in a bore of {bore} mm.", f"{room}; {flexes}."
 
 
-def _gentler(limits: PassageLimits) -> str:
-    if limits.radius_for_tip_mm is None:
-        return "A gentler bend of the bore would not do. "
-    return f"It would pass as it is where the bore bends at {number(limits.radius_for_tip_mm)} mm. "
+def _instead(limits: PassageLimits | None, tip: float | None) -> str:
+    """What would let it through: a thinner tube, a gentler bore."""
+    ways = []
+    if limits is not None and limits.widest_tube_mm is not None:
+        ways.append(f"a tube of {number(limits.widest_tube_mm)} mm")
+    if limits is not None and limits.least_centerline_mm is not None:
+        ways.append(f"a bore that bends at {number(limits.least_centerline_mm)} mm")
+    kept = f"With {number(tip)} mm of rigid tip " if tip is not None and ways else ""
+    said = f"{' or '.join(ways)} would do." if ways else "The tube must become thinner."
+    return kept + (said if kept else sentence_case(said))
 
 
-def _stiff(fit: FitAnswer, limits: PassageLimits) -> str:
-    would = "" if limits.stiff_mm is None else f" A tube of {number(limits.stiff_mm)} mm has room enough to bend."
-    return (
-        f"The tube bends to {number(fit.bend_radius_mm, 4)} mm at least, the bore gives "
-        f"{number(fit.passable_radius_mm, 4)} mm.{would}"
-    )
+def _sentence(clause: str) -> str:
+    return f"{sentence_case(clause)}. "
+
+
+def _apart(value: float, other: float) -> str:
+    """A number in as many digits as tell it from another."""
+    return number(value, 3 if number(value) != number(other) else 5)
 
 
 def fill_words(fill: FillView) -> str:
@@ -114,18 +125,23 @@ def fill_table(fill: FillView) -> Columns:
     return columns(("quantity", "value"), rows)
 
 
-def weight_words(found: tuple[Weight, ...]) -> str:
-    """What sets the tube's diameter, and what comes free."""
+def weight_words(found: tuple[Weight, ...], fit: FitAnswer) -> str:
+    """What sets the tube's diameter, what comes free, and what a given tube has to spare."""
     setting = [weight for weight in found if not weight.comes_free]
     free = [weight for weight in found if weight.comes_free]
     if not setting:
         return ""
-    said = f"{_listed([_named(weight) for weight in setting])} set the diameter."
-    said = said.replace(" set the", " sets the") if len(setting) == 1 and setting[0].parts_count == 1 else said
+    said = f"{_listed([_named(weight) for weight in setting])} {_plural(setting, 'sets', 'set')} the diameter."
     if free:
-        one = len(free) == 1 and free[0].parts_count == 1
-        said += f" {_listed([_named(weight) for weight in free])} {'comes' if one else 'come'} free, beside the others."
-    return said
+        said += (
+            f" {_listed([_named(weight) for weight in free])} {_plural(free, 'comes', 'come')} free, beside the others."
+        )
+    spare = fit.lumen_mm - fit.needed_lumen_mm
+    return said + (f" The tube leaves them {number(spare, 2)} mm to spare." if spare > SPARE * fit.lumen_mm else "")
+
+
+def _plural(group: list[Weight], one: str, several: str) -> str:
+    return one if len(group) == 1 and group[0].parts_count == 1 else several
 
 
 def _named(weight: Weight) -> str:

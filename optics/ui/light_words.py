@@ -46,7 +46,7 @@ def color_words(view: ColorView) -> str:
     change = abs(view.delivered.color_temperature_k - view.lamp.color_temperature_k)
     if change < 0.005 * view.lamp.color_temperature_k and not lean:
         return "The way leaves the color of the light as it is."
-    return f"On its way the light turns {number(change, 2)} K {'warmer' if warmer else 'cooler'}{lean}."
+    return f"On its way the light turns {number(change)} K {'warmer' if warmer else 'cooler'}{lean}."
 
 
 def bend_words(view: BendView) -> str:

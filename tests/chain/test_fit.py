@@ -4,7 +4,6 @@ import numpy as np
 import pytest
 
 from optics import presets
-from optics.body.lumen import smallest_lumens
 from optics.chain.columns import columns
 from optics.chain.fit import fit, section
 from optics.chain.solve import solved

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 from scipy.integrate import quad
 
-from optics.media.face import face_transmission, ray_face_transmission, fresnel_reflectance
+from optics.media.face import face_transmission, fresnel_reflectance, ray_face_transmission
 from optics.spec import OutOfRange
 
 

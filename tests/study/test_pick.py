@@ -18,9 +18,9 @@ from optics.study.pick import MOST, candidates, objectives, pick
 from optics.study.pick_axes import widest_mm
 from optics.study.pick_cost import cost_class
 from optics.study.pick_front import pareto_rows
+from optics.study.pick_knobs import KNOBS, usual_bounds
 from optics.study.pick_needs import BESIDES, ORDER, margins, meeting
 from optics.study.pick_parts import focal_mm, preferred
-from optics.study.smallest_change import KNOBS, usual_bounds
 
 CANDIDATES = 500
 DEMOS = ("gearbox_tooth", "airway_small_animal", "injector_hole", "turbine_casing")

@@ -32,7 +32,7 @@ with st.container(key="answer"):
             st.subheader("What the tube holds", anchor=False)
             drawings.show("tube", here, "The tip's face and the tube behind it, to scale")
             weights = drawings.view("weights", here)
-            st.markdown(plain(fit_parts.weight_words(weights)))
+            st.markdown(plain(fit_parts.weight_words(weights, report.fit)))
             table(fit_parts.weight_table(weights), "What each part adds to the tube")
             st.markdown(plain(fit_parts.fill_words(fill)))
             table(fit_parts.fill_table(fill), "How full the tube is", header=False)

@@ -1,0 +1,87 @@
+"""`report`: the whole answer for one design on paper (PDF), or its cross-section as a drawing in millimeters (DXF)."""
+
+import argparse
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from optics import presets
+from optics.commands.terminal import add_design, opened
+from optics.spec import OutOfRange
+
+if TYPE_CHECKING:
+    from optics.figures.pdf import Contents
+
+SUFFIXES = (".pdf", ".dxf")
+MAP_POINTS = 161
+
+
+def add_arguments(parser: argparse.ArgumentParser) -> None:
+    add_design(parser)
+    parser.add_argument(
+        "--to",
+        required=True,
+        metavar="FILE",
+        help="where to write: .pdf for the report, .dxf for the tube's cross-section in millimeters",
+    )
+    parser.add_argument("--force", action="store_true", help="write over an existing file")
+
+
+def run(options: argparse.Namespace) -> int:
+    path = _writable(Path(options.to), options.force)
+    design = opened(options)
+    data = pdf_of(design) if path.suffix == ".pdf" else dxf_of(design)
+    try:
+        path.write_bytes(data)
+    except OSError as wrong:
+        raise OutOfRange(f"--to {path} cannot be written: {(wrong.strerror or 'unknown reason').lower()}.") from None
+    print(path)
+    return 0
+
+
+def _writable(path: Path, force: bool) -> Path:
+    """The path, unless its ending says no format or something stands there already."""
+    if path.suffix not in SUFFIXES:
+        raise OutOfRange(f"--to {path} does not end in one of: {', '.join(SUFFIXES)}.")
+    if path.exists() and not force:
+        raise OutOfRange(f"--to {path} exists already; --force writes over it.")
+    return path
+
+
+def pdf_of(design: presets.Design) -> bytes:
+    """The report of a design as the bytes of a PDF, the same every time."""
+    from optics.figures.pdf import pdf
+
+    return pdf(contents_of(design))
+
+
+def contents_of(design: presets.Design) -> "Contents":
+    """All that the report shows, worked out once."""
+    from optics.figures.pdf import Contents
+    from optics.report import views
+    from optics.report.size import size
+    from optics.study.working_range import over_distance
+
+    scope = design.fiberscope
+    return Contents(
+        design=design,
+        file=presets.saved(design.document),
+        report=size(scope, design.sourced),
+        spectra=views.spectra(scope),
+        target=views.target_map(scope, MAP_POINTS),
+        section=views.section_view(scope),
+        passage=views.passage_view(scope),
+        working_range=over_distance(scope) if scope.scene else None,
+    )
+
+
+def dxf_of(design: presets.Design) -> bytes:
+    """The cross-section of a design as the bytes of a DXF drawing."""
+    from optics.figures.dxf import section_dxf
+    from optics.report.size import VERSION, design_hash
+    from optics.report.views import section_view
+
+    view = section_view(design.fiberscope)
+    if view is None:
+        raise OutOfRange("a .dxf shows the cross-section, which needs [body.section]; this design does not have it.")
+    told = f"{design.fiberscope.name}, design {design_hash(design.fiberscope)}, version {VERSION}"
+    return section_dxf(view, notes=(told,))

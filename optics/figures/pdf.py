@@ -1,0 +1,176 @@
+"""The report of one design on paper: A4, lying, as the bytes of a PDF; the same design gives the same bytes.
+
+The answer first, then along the light: budget, target and detail, fit, working range, screening, the design's file and
+every value with its source. A part that the design does not have takes no page.
+"""
+
+import io
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+
+from matplotlib.backends.backend_pdf import PdfPages
+from matplotlib.figure import Figure
+
+from optics.figures import body, detail, pdf_answer, pdf_light, target, working_range
+from optics.figures import light as light_pictures
+from optics.figures import pdf_sheet as paper
+from optics.figures import pdf_values as values
+from optics.figures import pdf_words as say
+from optics.figures.canvas import width_of
+from optics.figures.palette import LIGHT, THIN
+from optics.figures.pdf_sheet import COLUMN, FINE, FIRST, GAP, SIDE, Area, Block, Cell
+from optics.presets import Design
+from optics.report.answer import Report
+from optics.report.views import PassageView, SectionView, Spectra, TargetMap
+from optics.study.working_range import RangeCurves
+
+LEFT, RIGHT = SIDE, SIDE + COLUMN + GAP
+ROOM_DOWN = FIRST - paper.BOTTOM
+MAP_WIDTHS = tuple(0.1 * tenth for tenth in range(50, 23, -1))  # inches, widest first
+
+
+@dataclass(frozen=True, slots=True)
+class Contents:
+    """All that the report shows of one design: None where it has no such part. `file`: the design file as text."""
+
+    design: Design
+    file: str
+    report: Report
+    spectra: Spectra
+    target: TargetMap | None
+    section: SectionView | None
+    passage: PassageView | None
+    working_range: RangeCurves | None
+
+
+def pdf(contents: Contents) -> bytes:
+    """The whole report."""
+    out, pages = io.BytesIO(), sheets(contents)
+    info = {"Title": f"{contents.report.name}: sizing report", "CreationDate": None, "ModDate": None,
+            "Creator": None, "Producer": None}  # fmt: skip
+    with PdfPages(out, metadata=info) as file:
+        for page in pages:
+            file.savefig(page)
+    return out.getvalue()
+
+
+def sheets(contents: Contents) -> list[Figure]:
+    """The pages, footers and all."""
+    pages: list[Figure] = []
+    told = [*pdf_answer.answer(pages, contents.report, contents.design.sourced)]
+    pdf_light.light(pages, contents.report)
+    _target_and_detail(pages, contents)
+    _fit(pages, contents)
+    _rest(pages, contents, told)
+    for number, page in enumerate(pages, 1):
+        _footer(page, contents.report, number, len(pages))
+    return pages
+
+
+def _page(pages: list[Figure], title: str):
+    figure, axes = paper.page(title)
+    pages.append(figure)
+    return axes
+
+
+def pairs(rows: list[say.Pair], width: float = COLUMN) -> list[Block]:
+    """Names on the left, numbers on the right."""
+    wide = (width * 0.62, width * 0.38)
+    return [paper.row([Cell(name, color=LIGHT.soft), Cell(value, right=True)], wide, gutter=0.04) for name, value in rows]
+
+
+def _target_and_detail(pages: list[Figure], contents: Contents) -> None:
+    """The target on the left, the detail on the right."""
+    report = contents.report
+    if contents.target is None:
+        return
+    axes = _page(pages, "On the target, and what is seen of it" if report.detail else "On the target")
+    profile = target.profile(contents.target, width_in=COLUMN)
+    left = [paper.heading("The light on the target"), paper.picture(profile, 0.06)]
+    deep = ROOM_DOWN - sum(block.high for block in left)
+    picture = fitted(lambda wide: target.irradiance_map(contents.target, width_in=wide), deep)
+    if picture is not None:
+        left.insert(1, paper.picture(picture, 0.0))
+    paper.flow(left, iter([Area(axes, LEFT, FIRST)]))
+    right: list[Block] = []
+    if report.detail:
+        right += [
+            paper.heading("What each part alone would allow"),
+            paper.words(say.limits(report)),
+            paper.picture(detail.ledger(report, width_in=COLUMN), 0.12),
+        ]
+    y = paper.flow(right, iter([Area(axes, RIGHT, FIRST)])) if right else FIRST
+    half = (COLUMN - GAP) / 2
+    told = [(RIGHT, "Light, in numbers", say.target(report))]
+    if report.detail:
+        told.append((RIGHT + half + GAP, "Detail, in numbers", say.detail(report)))
+    for x, name, rows in told:
+        paper.flow([paper.heading(name, half), *pairs(rows, half)], iter([Area(axes, x, y)]))
+
+
+def fitted(draw: Callable[[float], Figure], high: float) -> Figure | None:
+    """A picture as wide as the column, or as its height allows; None where even the narrowest is too high."""
+    for wide in MAP_WIDTHS:
+        figure = draw(wide)
+        if figure.get_size_inches()[1] <= high:
+            return figure
+    return None
+
+
+def _fit(pages: list[Figure], contents: Contents) -> None:
+    """The section on the left, the passage on the right, both to scale."""
+    report = contents.report
+    if contents.section is None:
+        return
+    axes = _page(pages, "Fit and passage" if contents.passage else "Fit")
+    left = [paper.heading("Cross-section, to scale"), paper.picture(body.section(contents.section, width_in=COLUMN), 0.2)]
+    paper.flow([*left, *pairs(say.fit(report))], iter([Area(axes, LEFT, FIRST)]))
+    right = [*pairs(say.passage(report))]
+    if contents.passage:
+        drawn = paper.picture(body.passage(contents.passage, width_in=COLUMN), 0.2)
+        right = [paper.heading("The tip in the bend of the bore, to scale"), drawn, *right]
+    else:
+        right = [paper.heading("Bending"), *right]
+    paper.flow(right, iter([Area(axes, RIGHT, FIRST)]))
+
+
+def _rest(pages: list[Figure], contents: Contents, told: list[Block]) -> None:
+    """Working range, or the color of the light; then, flowing on, the screening, the file and the values."""
+    report = contents.report
+    if contents.working_range is not None:
+        axes = _page(pages, "Working range, screening and sources")
+        drawn = working_range.curves(contents.working_range, width_in=COLUMN)
+        paper.flow([paper.picture(drawn)], iter([Area(axes, LEFT, FIRST + 0.06)]))
+        said = [paper.heading("Over the working range")]
+        said += [paper.words(line, below=0.03) for line in say.working_range(contents.working_range)]
+    else:
+        axes = _page(pages, "The light's color, screening and sources")
+        drawn = light_pictures.spectra(contents.spectra, width_in=COLUMN)
+        left = [paper.heading("Spectra, in and out"), paper.picture(drawn), paper.heading("In numbers"), *pairs(say.light(report))]
+        paper.flow(left, iter([Area(axes, LEFT, FIRST)]))
+        said = []
+    said += [*told, *values.screening(report), *values.file(contents.file)]
+    said += values.values(contents.design.document, contents.design.sourced)
+    paper.flow(said, _areas(pages, Area(axes, RIGHT, FIRST)))
+
+
+def _areas(pages: list[Figure], first: Area) -> Iterator[Area]:
+    """Columns on and on, a new page for every two."""
+    yield first
+    while True:
+        axes = _page(pages, "Screening and sources, continued")
+        yield Area(axes, LEFT, FIRST)
+        yield Area(axes, RIGHT, FIRST)
+
+
+def _footer(page: Figure, report: Report, number: int, count: int) -> None:
+    """Which design, which version, which page, on every page."""
+    axes, y = page.axes[0], paper.FOOTER
+    look = {"fontsize": FINE, "color": LIGHT.soft, "va": "baseline"}
+    axes.plot([SIDE, paper.WIDE - SIDE], [y + 0.14] * 2, color=LIGHT.grid, linewidth=THIN)
+    name = report.name
+    while width_of(name, FINE) > 3.2:
+        name = name[:-2].rstrip() + "…"
+    axes.text(SIDE, y, f"{name}  ·  design {report.design_hash}  ·  version {report.version}", **look)
+    axes.text(paper.WIDE / 2 + 0.9, y, say.SCREENING, ha="center", **look)
+    axes.text(paper.WIDE - SIDE, y, f"page {number} of {count}", ha="right", **look)
