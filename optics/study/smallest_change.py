@@ -23,8 +23,8 @@ RUNGS = np.log([1.03, 1.08, 1.17, 1.35, 1.7, 2.5, 4.0])
 BISECTIONS = 40
 CLOSE = 0.004  # of the change: how near the edge is found
 LESS = 0.98  # with this share of the change the design must still fail
-DIGITS = 4
-TRIES = 4
+DIGITS = 4  # of a changed number, more where the change is small
+TRIES = 4  # rounds in which a lane that does not hold gives way to others
 
 
 @dataclass(frozen=True, slots=True)
