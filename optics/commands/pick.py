@@ -79,7 +79,7 @@ def written(found: Picked, name: str, shown: int) -> str:
         rows = [_row(number, each) for number, each in enumerate(found.picks[:shown], 1)]
         head = ("", "gap mm", "center lx", "outer mm", "bend mm", "margin", "cost", "")
         parts += [
-            "Picks: none beats another in everything (margin: of the closest need; cost: 1 cheap to 5 dear, trade rules)"
+            "Picks: none beats another in everything (margin of the closest need; cost class 1 to 5, trade rules)"
         ]
         parts += [table([head, *rows], right=(0, 1, 2, 3, 4, 5, 6)), ""]
         if len(found.picks) > shown:

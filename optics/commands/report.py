@@ -6,10 +6,12 @@ from typing import TYPE_CHECKING
 
 from optics import presets
 from optics.commands.terminal import add_design, opened
+from optics.fiberscope import Fiberscope
 from optics.spec import OutOfRange
 
 if TYPE_CHECKING:
     from optics.figures.pdf import Contents
+    from optics.study.smallest_change import Change
 
 SUFFIXES = (".pdf", ".dxf")
 MAP_POINTS = 161
@@ -61,17 +63,32 @@ def contents_of(design: presets.Design) -> "Contents":
     from optics.report.size import size
     from optics.study.working_range import over_distance
 
-    scope = design.fiberscope
+    scope, report = design.fiberscope, size(design.fiberscope, design.sourced)
     return Contents(
         design=design,
         file=presets.saved(design.document),
-        report=size(scope, design.sourced),
+        report=report,
         spectra=views.spectra(scope),
         target=views.target_map(scope, MAP_POINTS),
         section=views.section_view(scope),
         passage=views.passage_view(scope),
         working_range=over_distance(scope) if scope.scene else None,
+        change=_change(scope) if report.summary.needs_met is False else None,
     )
+
+
+def _change(scope: Fiberscope) -> "Change | None":
+    """The smallest change of one number that meets all that is asked, if there is one."""
+    import numpy as np
+
+    from optics.chain.columns import columns
+    from optics.chain.evaluate import evaluate
+    from optics.study.pick_needs import margins
+    from optics.study.smallest_change import smallest_changes
+
+    table = columns([scope])
+    found = smallest_changes(scope.needs, table, margins(scope.needs, table, evaluate(table)), np.array([0]))
+    return found.get(0)
 
 
 def dxf_of(design: presets.Design) -> bytes:

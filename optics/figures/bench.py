@@ -163,11 +163,13 @@ def _residuals(axes: Axes, palette: Palette, view: BenchView) -> None:
 
 def _key(figure: Figure, palette: Palette, view: BenchView, width_in: float, high: float) -> None:
     """How to read it, in two lines above."""
-    figure.text(0.12 / width_in, 1 - 0.16 / high, MEASURED[view.measured], color=palette.ink, fontsize=TEXT, va="center")
+    figure.text(
+        0.12 / width_in, 1 - 0.16 / high, MEASURED[view.measured], color=palette.ink, fontsize=TEXT, va="center"
+    )
     x = 0.12
     for said, color, style in (
-        ("the design as it stands", palette.soft, (0, (4, 2))),
-        ("fitted", palette.back, "solid"),
+        ("before the fit", palette.soft, (0, (4, 2))),
+        ("after it", palette.back, "solid"),
     ):
         axes = figure.axes[0]
         y = 1 - 0.4 / high
@@ -176,4 +178,6 @@ def _key(figure: Figure, palette: Palette, view: BenchView, width_in: float, hig
         line[0].set_in_layout(False)
         figure.text((x + 0.34) / width_in, y, said, color=palette.soft, fontsize=SMALL, va="center")
         x += 0.34 + width_of(said, SMALL) + 0.2
-    figure.text(x / width_in, 1 - 0.4 / high, "bars: ± 1 standard error", color=palette.soft, fontsize=SMALL, va="center")
+    figure.text(
+        x / width_in, 1 - 0.4 / high, "bars: ± 1 standard error", color=palette.soft, fontsize=SMALL, va="center"
+    )

@@ -94,6 +94,7 @@ def _fill(palette: Palette, kind: str) -> str:
         "opening": palette.paper,
         "wire": palette.soft,
         "wall": palette.grid,
+        "needed": palette.accent,
     }[kind]
 
 
@@ -114,17 +115,13 @@ def _fibers(axes: Axes, palette: Palette, view: TubeView, middle: np.ndarray, sc
 def _key(view: TubeView, parts: Sequence[Part], *, tube: bool) -> Iterator[tuple[str, str]]:
     """(kind, words) for each kind and size of part, the wall first, the fibers last."""
     yield "wall", f"{'tube' if tube else 'tip'} ⌀ {three(view.outer_diameter_mm)}, lumen ⌀ {three(view.lumen_mm)} mm"
+    if not view.fits:
+        yield "needed", f"✗ needs a lumen of ⌀ {three(view.needed_lumen_mm)} mm (dashed)"
     for kind, names in NAMES.items():
         for size in sorted({part.diameter_mm for part in parts if part.kind == kind}, reverse=True):
             same = [part for part in parts if part.kind == kind and part.diameter_mm == size]
-            name = (
-                "image bundle"
-                if kind == "image" and tube
-                else same[0].name
-                if kind == "light"
-                else names[len(same) > 1]
-            )
-            name += "s" if kind == "light" and len(same) > 1 else ""
+            name = _light(parts, same) or names[len(same) > 1]
+            name = "image bundle" if kind == "image" and tube else name
             yield kind, f"{f'{len(same)} ' if len(same) > 1 else ''}{name} ⌀ {three(size)} mm"
     if tube:
         yield "fiber", f"{view.fibers_count:,} light fibers ⌀ {three(view.fiber_mm)} mm"

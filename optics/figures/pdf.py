@@ -13,25 +13,29 @@ from matplotlib.figure import Figure
 
 from optics.figures import body, detail, pdf_answer, pdf_light, target, working_range
 from optics.figures import light as light_pictures
-from optics.figures import pdf_sheet as paper
-from optics.figures import pdf_values as values
-from optics.figures import pdf_words as say
+from optics.figures.paper import blocks, sheet
+from optics.figures.paper import values
+from optics.figures.paper import words as say
 from optics.figures.canvas import width_of
 from optics.figures.palette import LIGHT, THIN
-from optics.figures.pdf_sheet import COLUMN, FINE, FIRST, GAP, SIDE, Area, Block, Cell
+from optics.figures.paper.sheet import COLUMN, FINE, FIRST, GAP, SIDE, Area, Block, Cell
 from optics.presets import Design
 from optics.report.answer import Report
 from optics.report.views import PassageView, SectionView, Spectra, TargetMap
+from optics.study.smallest_change import Change
 from optics.study.working_range import RangeCurves
 
 LEFT, RIGHT = SIDE, SIDE + COLUMN + GAP
-ROOM_DOWN = FIRST - paper.BOTTOM
+ROOM_DOWN = FIRST - sheet.BOTTOM
 MAP_WIDTHS = tuple(0.1 * tenth for tenth in range(50, 23, -1))  # inches, widest first
 
 
 @dataclass(frozen=True, slots=True)
 class Contents:
-    """All that the report shows of one design: None where it has no such part. `file`: the design file as text."""
+    """All that the report shows of one design: None where it has no such part.
+
+    `file`: the design file as text; `change`: the smallest one that meets what is not met.
+    """
 
     design: Design
     file: str
@@ -41,6 +45,7 @@ class Contents:
     section: SectionView | None
     passage: PassageView | None
     working_range: RangeCurves | None
+    change: Change | None = None
 
 
 def pdf(contents: Contents) -> bytes:
@@ -57,18 +62,19 @@ def pdf(contents: Contents) -> bytes:
 def sheets(contents: Contents) -> list[Figure]:
     """The pages, footers and all."""
     pages: list[Figure] = []
-    told = [*pdf_answer.answer(pages, contents.report, contents.design.sourced)]
+    told = [*pdf_answer.answer(pages, contents.report, contents.design.sourced, contents.change)]
     pdf_light.light(pages, contents.report)
     _target_and_detail(pages, contents)
     _fit(pages, contents)
     _rest(pages, contents, told)
+    pdf_answer.table_of_contents(pages)
     for number, page in enumerate(pages, 1):
         _footer(page, contents.report, number, len(pages))
     return pages
 
 
 def _page(pages: list[Figure], title: str):
-    figure, axes = paper.page(title)
+    figure, axes = sheet.page(title)
     pages.append(figure)
     return axes
 
@@ -76,36 +82,48 @@ def _page(pages: list[Figure], title: str):
 def pairs(rows: list[say.Pair], width: float = COLUMN) -> list[Block]:
     """Names on the left, numbers on the right."""
     wide = (width * 0.62, width * 0.38)
-    return [paper.row([Cell(name, color=LIGHT.soft), Cell(value, right=True)], wide, gutter=0.04) for name, value in rows]
+    return [
+        blocks.row([Cell(name, color=LIGHT.soft), Cell(value, right=True)], wide, gutter=0.04) for name, value in rows
+    ]
 
 
 def _target_and_detail(pages: list[Figure], contents: Contents) -> None:
-    """The target on the left, the detail on the right."""
+    """Map and numbers on the left, the light's profile and the ledger of detail on the right."""
     report = contents.report
     if contents.target is None:
         return
     axes = _page(pages, "On the target, and what is seen of it" if report.detail else "On the target")
-    profile = target.profile(contents.target, width_in=COLUMN)
-    left = [paper.heading("The light on the target"), paper.picture(profile, 0.06)]
-    deep = ROOM_DOWN - sum(block.high for block in left)
+    left = [blocks.heading("The light, in numbers"), *_two_columns(say.target(report))]
+    if report.detail:
+        left += [sheet.space(0.1), blocks.heading("The detail, in numbers"), *_two_columns(say.detail(report))]
+    top = blocks.heading("The light on the target")
+    deep = ROOM_DOWN - sum(block.high for block in left) - top.high
     picture = fitted(lambda wide: target.irradiance_map(contents.target, width_in=wide), deep)
-    if picture is not None:
-        left.insert(1, paper.picture(picture, 0.0))
-    paper.flow(left, iter([Area(axes, LEFT, FIRST)]))
-    right: list[Block] = []
+    shown = [top, sheet.picture(picture, 0.0)] if picture else []
+    sheet.flow([*shown, *left], iter([Area(axes, LEFT, FIRST)]))
+    right = [sheet.picture(target.profile(contents.target, width_in=COLUMN), 0.05)]
     if report.detail:
         right += [
-            paper.heading("What each part alone would allow"),
-            paper.words(say.limits(report)),
-            paper.picture(detail.ledger(report, width_in=COLUMN), 0.12),
+            blocks.heading("What each part alone would allow"),
+            blocks.words(say.limits(report), below=0.0),
+            sheet.picture(detail.ledger(report, width_in=COLUMN), 0.0),
         ]
-    y = paper.flow(right, iter([Area(axes, RIGHT, FIRST)])) if right else FIRST
-    half = (COLUMN - GAP) / 2
-    told = [(RIGHT, "Light, in numbers", say.target(report))]
-    if report.detail:
-        told.append((RIGHT + half + GAP, "Detail, in numbers", say.detail(report)))
-    for x, name, rows in told:
-        paper.flow([paper.heading(name, half), *pairs(rows, half)], iter([Area(axes, x, y)]))
+    sheet.flow(right, iter([Area(axes, RIGHT, FIRST, 0.0)]))
+
+
+def _two_columns(rows: list[say.Pair]) -> list[Block]:
+    """Names and numbers in two columns, to be read down each."""
+    half, deep = (COLUMN - GAP / 2) / 2, (len(rows) + 1) // 2
+    wide = (half * 0.68, half * 0.32, GAP / 2, half * 0.68, half * 0.32)
+    rows = [*rows, ("", "")] if len(rows) % 2 else rows
+
+    def cells(row: say.Pair) -> list[Cell]:
+        return [Cell(row[0], color=LIGHT.soft), Cell(row[1], right=True)]
+
+    return [
+        blocks.row([*cells(one), Cell(""), *cells(two)], wide, size=FINE + 0.4, gutter=0.03, pad=0.04)
+        for one, two in zip(rows[:deep], rows[deep:])
+    ]
 
 
 def fitted(draw: Callable[[float], Figure], high: float) -> Figure | None:
@@ -123,15 +141,18 @@ def _fit(pages: list[Figure], contents: Contents) -> None:
     if contents.section is None:
         return
     axes = _page(pages, "Fit and passage" if contents.passage else "Fit")
-    left = [paper.heading("Cross-section, to scale"), paper.picture(body.section(contents.section, width_in=COLUMN), 0.2)]
-    paper.flow([*left, *pairs(say.fit(report))], iter([Area(axes, LEFT, FIRST)]))
+    left = [
+        blocks.heading("Cross-section, to scale"),
+        sheet.picture(body.section(contents.section, width_in=COLUMN), 0.2),
+    ]
+    sheet.flow([*left, *pairs(say.fit(report))], iter([Area(axes, LEFT, FIRST)]))
     right = [*pairs(say.passage(report))]
     if contents.passage:
-        drawn = paper.picture(body.passage(contents.passage, width_in=COLUMN), 0.2)
-        right = [paper.heading("The tip in the bend of the bore, to scale"), drawn, *right]
+        drawn = sheet.picture(body.passage(contents.passage, width_in=COLUMN), 0.2)
+        right = [blocks.heading("The tip in the bend of the bore, to scale"), drawn, *right]
     else:
-        right = [paper.heading("Bending"), *right]
-    paper.flow(right, iter([Area(axes, RIGHT, FIRST)]))
+        right = [blocks.heading("Bending"), *right]
+    sheet.flow(right, iter([Area(axes, RIGHT, FIRST)]))
 
 
 def _rest(pages: list[Figure], contents: Contents, told: list[Block]) -> None:
@@ -140,37 +161,42 @@ def _rest(pages: list[Figure], contents: Contents, told: list[Block]) -> None:
     if contents.working_range is not None:
         axes = _page(pages, "Working range, screening and sources")
         drawn = working_range.curves(contents.working_range, width_in=COLUMN)
-        paper.flow([paper.picture(drawn)], iter([Area(axes, LEFT, FIRST + 0.06)]))
-        said = [paper.heading("Over the working range")]
-        said += [paper.words(line, below=0.03) for line in say.working_range(contents.working_range)]
+        sheet.flow([sheet.picture(drawn)], iter([Area(axes, LEFT, FIRST + 0.06)]))
+        said = [blocks.heading("Over the working range")]
+        said += [blocks.words("  ".join(say.working_range(contents.working_range)), below=0.14)]
     else:
         axes = _page(pages, "The light's color, screening and sources")
         drawn = light_pictures.spectra(contents.spectra, width_in=COLUMN)
-        left = [paper.heading("Spectra, in and out"), paper.picture(drawn), paper.heading("In numbers"), *pairs(say.light(report))]
-        paper.flow(left, iter([Area(axes, LEFT, FIRST)]))
+        left = [
+            blocks.heading("Spectra, in and out"),
+            sheet.picture(drawn),
+            blocks.heading("In numbers"),
+            *pairs(say.light(report)),
+        ]
+        sheet.flow(left, iter([Area(axes, LEFT, FIRST)]))
         said = []
     said += [*told, *values.screening(report), *values.file(contents.file)]
     said += values.values(contents.design.document, contents.design.sourced)
-    paper.flow(said, _areas(pages, Area(axes, RIGHT, FIRST)))
+    sheet.flow(said, _areas(pages, Area(axes, RIGHT, FIRST)))
 
 
 def _areas(pages: list[Figure], first: Area) -> Iterator[Area]:
     """Columns on and on, a new page for every two."""
     yield first
     while True:
-        axes = _page(pages, "Screening and sources, continued")
+        axes = _page(pages, "Screening, the design file and sources")
         yield Area(axes, LEFT, FIRST)
         yield Area(axes, RIGHT, FIRST)
 
 
 def _footer(page: Figure, report: Report, number: int, count: int) -> None:
     """Which design, which version, which page, on every page."""
-    axes, y = page.axes[0], paper.FOOTER
+    axes, y = page.axes[0], sheet.FOOTER
     look = {"fontsize": FINE, "color": LIGHT.soft, "va": "baseline"}
-    axes.plot([SIDE, paper.WIDE - SIDE], [y + 0.14] * 2, color=LIGHT.grid, linewidth=THIN)
+    axes.plot([SIDE, sheet.WIDE - SIDE], [y + 0.14] * 2, color=LIGHT.grid, linewidth=THIN)
     name = report.name
     while width_of(name, FINE) > 3.2:
         name = name[:-2].rstrip() + "…"
     axes.text(SIDE, y, f"{name}  ·  design {report.design_hash}  ·  version {report.version}", **look)
-    axes.text(paper.WIDE / 2 + 0.9, y, say.SCREENING, ha="center", **look)
-    axes.text(paper.WIDE - SIDE, y, f"page {number} of {count}", ha="right", **look)
+    axes.text(sheet.WIDE / 2 + 0.9, y, say.SCREENING, ha="center", **look)
+    axes.text(sheet.WIDE - SIDE, y, f"page {number} of {count}", ha="right", **look)

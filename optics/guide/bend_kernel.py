@@ -28,15 +28,15 @@ BEND_NODES = np.array(
     dtype=float,
 )
 ANGLE_NODES = np.array(
-    """0.12 0.2 0.3 0.4 0.5 0.6 0.7 0.82 0.95 1.1 1.25 1.45 1.65 1.9 2.15 2.45 2.8 3.2 3.7 4.4 5.5 7.5 11 17 28 50
-    110 260""".split(),
+    """0.12 0.2 0.3 0.4 0.5 0.6 0.7 0.82 0.95 1.1 1.25 1.45 1.65 1.9 2.15 2.45 2.8 3.2 3.7 4.4 5.2 6.2 7.5 9.2 12 17
+    28 50 110 260""".split(),
     dtype=float,
 )
 SHARE_NODES = np.array([0.001, 0.12, 0.24, 0.36])
 MOMENTS = 3  # of the skewness
 DEGREES = 11  # of the step in zeta
 FINE = (12, 4, 5)  # level intervals within reach of the limit, below, above: of the survival
-COARSE = (5, 3, 4)  # of the spread
+COARSE = (8, 3, 4)  # of the spread
 LEVEL_SCALE = 0.05  # levels above the limit lie at s = 1 + 0.05 (2^k - 1)
 
 

@@ -4,7 +4,7 @@
 
 For every (bend, angle, share) node, rays that fill the fiber at each level s are traced through the
 bend and counted: how many come out of it, how many of these the straight fiber guides, and the moments
-of their step in zeta and of their skewness. Takes about a quarter of an hour on two cores.
+of their step in zeta and of their skewness. Takes about ten minutes on two cores.
 """
 
 import sys
@@ -18,7 +18,7 @@ from optics.guide import raytrace
 RAYS = 120_000  # a pair of bend and share; all angles are stops on the way of the same rays
 SEED = 20_261_201
 HIGHEST = 2.6  # s up to which rays are launched
-RANK = 32  # singular vectors kept of the spread
+RANK = 24  # singular vectors kept of the spread
 SMOOTHING = 1e-3  # weight of the first differences in a fit
 
 

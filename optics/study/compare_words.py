@@ -1,34 +1,20 @@
 """What makes a difference between two designs, in words: a step of the light, a part of the way back or of the body."""
 
 import math
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from typing import Any
 
 import numpy as np
 
 from optics.spectrum import GRID_NM, color_rendering_index, color_temperature_k
-from optics.units import unit_of
+from optics.study.compare_body import bend, outer, tip
+from optics.study.compare_plain import Told, against, digits
 from optics.viewer.detail import PARTS
-
-Told = Mapping[str, Any]  # scope, report, value, lamp (its spectrum), name
-
-PLAIN = {"lm": "lm", "mm": "mm", "lux": "lx", "k": "K", "deg": "deg", "s": "s"}
 
 
 def because(quantity: str, first: Told, other: Told) -> str:
     """What makes most of the difference in one number."""
     return REASONS[quantity](first, other)
-
-
-def digits(number: float, name: str = "") -> str:
-    """A number with three digits and its unit, as people read it."""
-    unit = PLAIN.get(unit_of(name) or "", "")
-    shown = f"{number:,.0f}" if abs(number) >= 1000 else f"{number:.3g}"
-    return f"{shown} {unit}".rstrip()
-
-
-def against(name: str, first: float, other: float, unit_name: str = "") -> str:
-    return f"{name}, {digits(other, unit_name)} against {digits(first, unit_name)}"
 
 
 # The light
@@ -188,48 +174,6 @@ def _exposure(first: Told, other: Told) -> str:
     return f"mostly {against('the light on the image, lx', *light)}, and the camera's well and longest exposure"
 
 
-# The body
-
-
-def _outer(first: Told, other: Told) -> str:
-    rows = []
-    for name, of in (
-        ("the image part", lambda each: np.nan_to_num(each["value"]["image_mm"])),
-        ("the light guide", lambda each: each["value"]["guide_diameter_mm"]),
-        ("both walls", lambda each: 2 * each["scope"].body.section.wall_mm),
-        (
-            "the channels",
-            lambda each: sum(one.inner_mm + 2 * one.wall_mm for one in each["scope"].body.section.channels),
-        ),
-    ):
-        pair = [float(of(each)) for each in (first, other)]
-        rows.append((abs(pair[1] - pair[0]), against(name, *pair, "width_mm")))
-    size, said = max(rows)
-    return f"mostly {said}" if size > 1e-9 else "the layout of the section"
-
-
-def _bend(first: Told, other: Told) -> str:
-    least = [digits(each["value"]["bend_radius_mm"], "bend_radius_mm") for each in (first, other)]
-    if _bender(first) == _bender(other):
-        return f"{_bender(first)} in both, {least[1]} against {least[0]}"
-    return f"set by {_bender(other)}, {least[1]}, against {_bender(first)}, {least[0]}"
-
-
-def _bender(told: Told) -> str:
-    """What sets the least bend radius of a tube."""
-    scope, least = told["scope"], told["value"]["bend_radius_mm"]
-    fiber = scope.guide.fiber
-    if scope.body.handling and math.isclose(scope.body.handling.bend_radius_mm, least, rel_tol=1e-9):
-        return "what handling states"
-    if math.isclose(fiber.fiber_um / 2000 / fiber.allowed_strain, least, rel_tol=1e-6):
-        return f"the strain of guide fibers of {fiber.fiber_um:.3g} um"
-    return "the strain of the image bundle"
-
-
-def _tip(first: Told, other: Told) -> str:
-    return "the rigid tip as stated, and what a viewing tip adds"
-
-
 REASONS: dict[str, Callable[[Told, Told], str]] = {
     "delivered_lm": lambda first, other: light_step(first, other, lamp=True),
     "transmission": lambda first, other: light_step(first, other, lamp=False),
@@ -244,7 +188,7 @@ REASONS: dict[str, Callable[[Told, Told], str]] = {
     "smallest_gap_mm": _detail,
     "smallest_line_mm": _detail,
     "exposure_s": _exposure,
-    "outer_diameter_mm": _outer,
-    "bend_radius_mm": _bend,
-    "rigid_tip_mm": _tip,
+    "outer_diameter_mm": outer,
+    "bend_radius_mm": bend,
+    "rigid_tip_mm": tip,
 }

@@ -82,11 +82,11 @@ def over_all(
     require("count", count, "at least 3", count >= 3)
     table = columns([numbered(fiberscope)])
     sweeps = [SWEEPS[name](table) for name in which]
-    found = tried(sweeps, [places(sweep, count) for sweep in sweeps])
-    drawn = [{name: part.copy() for name, part in one.items()} for one in found]
+    found = drawn = tried(sweeps, [places(sweep, count) for sweep in sweeps])
     for _ in range(ROUNDS):
-        more = tried(sweeps, [between(one) for one in found])
-        found = [joined(*both) for both in zip(found, more)]
+        closer = [between(one) for one in found]
+        if any(map(len, closer)):
+            found = [joined(*both) for both in zip(found, tried(sweeps, closer))]
     return tuple(_told(*each) for each in zip(sweeps, drawn, found, _takes_over(sweeps, found)))
 
 

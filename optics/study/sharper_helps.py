@@ -22,7 +22,7 @@ from optics.viewer.camera import LEAST_PIXELS_PER_PITCH, MEASURING_PIXELS_PER_PI
 LEAST_GAIN = 0.02  # of what is resolved: less is no help
 MORE = 1.25  # a longer lens, a wider bundle
 SHORTER = 0.7  # of an eyepiece
-DIGITS = 3
+DIGITS, AIMED_DIGITS = 2, 3  # of a value; of one that has to meet a need
 SURE = 1.01  # a need is aimed at with a hair to spare, for numbers are rounded
 FOCAL, FOCUS, DISTANCE = "image.objective.focal_mm", "image.objective.focus_mm", "scene.target.distance_mm"
 RELAY, EYEPIECE, WIDE = "viewer.camera.relay_magnification", "viewer.eye.eyepiece_focal_mm", "image.bundle.diameter_mm"
@@ -58,7 +58,7 @@ def helps(fiberscope: Fiberscope, curves: tuple[Sharpness, ...]) -> tuple[Help, 
     base = evaluate(table)
     wanted = scope.needs.smallest_gap_mm
     level = 0.0 if wanted is None else 0.5 / wanted
-    tried = [made for curve in curves if (made := _along(scope, table, curve, level))]
+    tried = [made for curve in curves if (made := _along(table, curve, level))]
     tried += [made for how in (_focus, _lens, _wider, _relay, _eyepiece) if (made := how(table, base))]
     if not tried:
         return ()
@@ -97,29 +97,33 @@ def _help(settings: Settings, figures: Figures, row: int, now: float, lost: tupl
 # The changes
 
 
-def _rounded(value: AnyUnit) -> float:
-    return float(f"{value:.{DIGITS}g}")
+def _rounded(value: AnyUnit, digits: int = DIGITS) -> float:
+    return float(f"{value:.{digits}g}")
 
 
-def _along(scope: Fiberscope, table: Columns, curve: Sharpness, level: float) -> Settings | None:
+def _up(value: AnyUnit) -> float:
+    """Rounded up in its third digit."""
+    return _rounded(value * (1 + 0.5 * 10.0 ** (1 - AIMED_DIGITS)), AIMED_DIGITS)
+
+
+def _along(table: Columns, curve: Sharpness, level: float) -> Settings | None:
     """Along a curve, as far as the need asks; without one, or where none would do, as far as it pays."""
     reach = level if curve.now_lp_mm < level <= curve.best_lp_mm else FLAT * curve.best_lp_mm
     if curve.now_lp_mm >= reach:
         return None
-    value = _first(curve, SURE * reach) if reach == level else curve.enough
-    ratio = _rounded(value) / curve.now
+    value = _rounded(_first(curve, SURE * reach), AIMED_DIGITS) if reach == level else _rounded(curve.enough)
+    ratio = value / curve.now
     if curve.path == PIXEL:
-        counts = {path: int(max(round(float(table[path][0]) / ratio), 3)) for path in CHIP}
-        return {PIXEL: _rounded(value), **counts}
-    settings: Settings = {curve.path: _rounded(value)}
+        return {PIXEL: value, **{path: int(max(round(float(table[path][0]) / ratio), 3)) for path in CHIP}}
+    settings: Settings = {curve.path: value}
     if curve.path == PITCH:
-        settings[CORE] = _rounded(float(table[CORE][0]) * ratio)
+        settings[CORE] = _rounded(float(table[CORE][0]) * ratio, AIMED_DIGITS)
         if table.has(RELAY)[0]:
-            pixels = float((table[RELAY] * _rounded(value) / table["viewer.camera.pixel_um"])[0])
+            pixels = float((table[RELAY] * value / table["viewer.camera.pixel_um"])[0])
             if pixels < LEAST_PIXELS_PER_PITCH:
-                settings[RELAY] = _rounded(float(table[RELAY][0]) * LEAST_PIXELS_PER_PITCH / pixels * 1.002)
+                settings[RELAY] = _up(float(table[RELAY][0]) * LEAST_PIXELS_PER_PITCH / pixels)
     if curve.path in FLUXES and table.has(RATED)[0]:
-        settings[RATED] = _rounded(float(table[RATED][0]) * ratio)
+        settings[RATED] = float(table[RATED][0]) * ratio
     return settings
 
 
@@ -149,10 +153,10 @@ def _wider(table: Columns, base: Figures) -> Settings | None:
     """A wider bundle with its lens: more cores over the same field."""
     if not table.has(PITCH)[0]:
         return None
-    lens, image, focus = float(table[FOCAL][0]), float(table[WIDE][0]), float(base["focus_from_pupil_mm"][0])
+    image, focus = float(table[WIDE][0]), float(base["focus_from_pupil_mm"][0])
     wide = _rounded(MORE * image)
     behind = float(base["image_distance_mm"][0]) * wide / image
-    return {WIDE: wide, FOCAL: _rounded(1 / (1 / behind + 1 / focus)) if lens < focus else lens}
+    return {WIDE: wide, FOCAL: _rounded(1 / (1 / behind + 1 / focus), AIMED_DIGITS)}
 
 
 def _relay(table: Columns, base: Figures) -> Settings | None:
@@ -160,7 +164,7 @@ def _relay(table: Columns, base: Figures) -> Settings | None:
     pixels = float(base["pixels_per_pitch"][0])
     if not pixels < MEASURING_PIXELS_PER_PITCH:
         return None
-    return {RELAY: _rounded(float(table[RELAY][0]) * MEASURING_PIXELS_PER_PITCH / pixels)}
+    return {RELAY: _up(float(table[RELAY][0]) * MEASURING_PIXELS_PER_PITCH / pixels)}
 
 
 def _eyepiece(table: Columns, base: Figures) -> Settings | None:

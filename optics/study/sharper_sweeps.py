@@ -16,6 +16,8 @@ LEAST_ACROSS = 10.0  # pitches across a bundle
 PITCH, CORE, PIXEL = "image.bundle.pitch_um", "image.bundle.core_um", "image.chip.pixel_um"
 STOP, RATED = "image.objective.f_number", "source.launch.rated_lm"
 FLUXES = ("source.lamp.flux_lm", "source.lamp.flux_w")
+DIMMER, BRIGHTER = 1e4, 1e2  # how far the lamp is turned down and up
+BRIGHT = dict(zip(FLUXES, (1e3, 10.0)))  # and up to at least so many lumens, watts
 CHIP = ("image.chip.columns", "image.chip.rows")
 NUMBERS = ("resolved_lp_mm", "lattice_limit_lp_mm", "limited_by", "pixels_per_pitch")
 
@@ -73,7 +75,7 @@ def _stop(table: Columns) -> Sweep:
 def _flux(table: Columns) -> Sweep:
     path = next(path for path in FLUXES if table.has(path)[0])
     now = float(table[path][0])
-    return Sweep(table, path, 1, now / 1e4, now * 1e2)
+    return Sweep(table, path, 1, now / DIMMER, max(BRIGHTER * now, BRIGHT[path]))
 
 
 SWEEPS = {"pitch": _pitch, "f_number": _stop, "flux": _flux}
@@ -91,12 +93,12 @@ def places(sweep: Sweep, count: int) -> np.ndarray:
 # Trying
 
 
-def tried(sweeps: list[Sweep], places: list[np.ndarray]) -> list[Tried]:
+def tried(sweeps: list[Sweep], at: list[np.ndarray]) -> list[Tried]:
     """The chain's numbers at places of each sweep, all in one batch; places that no design can have are left out."""
-    count, ends = sum(map(len, places)), np.cumsum([len(place) for place in places])
+    count, ends = sum(map(len, at)), np.cumsum([len(place) for place in at])
     many, changed = sweeps[0].table.take(np.zeros(count, int)), {}
-    rows = [np.arange(end - len(place), end) for place, end in zip(places, ends)]
-    for sweep, place, here in zip(sweeps, places, rows):
+    rows = [np.arange(end - len(place), end) for place, end in zip(at, ends)]
+    for sweep, place, here in zip(sweeps, at, rows):
         for path, column in sweep.moved(place).items():
             changed.setdefault(path, many[path].copy())[here] = column
     many = many.replaced(changed)
@@ -109,7 +111,7 @@ def tried(sweeps: list[Sweep], places: list[np.ndarray]) -> list[Tried]:
     kept = [here[good[here]] for here in rows]
     return [
         {"value": place[good[here]], **{name: part[keep] for name, part in found.items()}}
-        for place, here, keep in zip(places, rows, kept)
+        for place, here, keep in zip(at, rows, kept)
     ]
 
 

@@ -142,7 +142,7 @@ def kept_contrast_share(*, width_um: Numbers, frequency_lp_mm: np.ndarray, mtf: 
 
     >>> f = np.linspace(0.0, 2000.0, 4001)
     >>> round(kept_contrast_share(width_um=1.0, frequency_lp_mm=f, mtf=np.exp(-((f / 100) ** 2))), 3)
-    0.177
+    0.176
     """
     per_um = per_um_from_lp_mm(np.asarray(frequency_lp_mm, float))
     wave = np.asarray(mtf, float) * width_um * np.sinc(width_um * per_um)

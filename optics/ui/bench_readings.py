@@ -104,6 +104,14 @@ def begins_mm(design: Design) -> float | None:
     return float(np.exp(np.interp(BEGINS, 1 - left, np.log(radius))))
 
 
+def begins_words(design: Design) -> str:
+    """Where bends begin to tell."""
+    radius = begins_mm(design)
+    if radius is None:
+        return "In this fiber even tight bends lose hardly any light: they will not tell its numerical aperture."
+    return f"In this fiber a full turn begins to lose light, 5 %, near a radius of {radius:.2g} mm."
+
+
 def truth(varied: str) -> str:
     """What the invented readings were made from, for their first line."""
     other = {
@@ -117,6 +125,11 @@ def truth(varied: str) -> str:
     )
 
 
+def error_name(varied: str) -> str:
+    """The column of the standard errors that goes with a kind of readings."""
+    return ERRORS[MEASURED[varied]]
+
+
 def as_text(readings: Readings, note: str) -> str:
     """Readings as the text of a file."""
     names, rows = _cells(readings)
@@ -124,17 +137,27 @@ def as_text(readings: Readings, note: str) -> str:
 
 
 def as_table(readings: Readings, most: int) -> Columns:
-    """The first readings as a table."""
+    """The first readings as a table, without their errors."""
     names, rows = _cells(readings)
-    return columns(tuple(names), rows[:most])
+    kept = [place for place, name in enumerate(names) if name not in ERRORS.values()]
+    return columns(tuple(names[place] for place in kept), [tuple(row[place] for place in kept) for row in rows[:most]])
 
 
 def _cells(readings: Readings) -> tuple[list[str], list[tuple[str, ...]]]:
     parts = {readings.varied: readings.at, TURNED: readings.turned_deg, readings.measured: readings.got}
     parts[ERRORS[readings.measured]] = readings.error
     present = {name: values for name, values in parts.items() if values is not None}
-    digits = {readings.measured: 5, ERRORS[readings.measured]: 2}
+    digits = {readings.measured: 4, ERRORS[readings.measured]: 2}
     rows = [
-        tuple(f"{value:.{digits.get(name, 4)}g}" for name, value in zip(present, row)) for row in zip(*present.values())
+        tuple(_cell(value, digits.get(name, 3)) for name, value in zip(present, row)) for row in zip(*present.values())
     ]
     return list(present), rows
+
+
+def _cell(value: float, digits: int) -> str:
+    """A number in so many digits, never with an exponent.
+
+    >>> _cell(1082345.0, 4), _cell(0.0123456, 3), _cell(360.0, 3)
+    ('1082000', '0.0123', '360')
+    """
+    return np.format_float_positional(float(f"{value:.{digits}g}"), trim="-")

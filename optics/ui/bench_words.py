@@ -2,15 +2,18 @@
 
 import csv
 import re
+from collections.abc import Mapping
+from typing import Any
 
-from optics.presets import value_at
+from optics.presets import Document, value_at
 from optics.spec import OutOfRange
 from optics.study.bench import Bench, Fitted, Residual
 from optics.study.bench_readings import Readings, parsed
 from optics.ui.names import place, spoken
 from optics.ui.rows import Columns, columns
-from optics.ui.words import exact, number, sentence_case
+from optics.ui.words import number, sentence_case
 
+TYPED = "the readings"  # the name of readings that came in no file
 UNITS = {"length_m": "m", "bend_radius_mm": "mm", "distance_mm": "mm", "power_mw": "mW", "lux": "lx"}
 KINDS = {  # what a fitted number is, and its unit
     "factor on the curve": "× its own curve",
@@ -60,6 +63,14 @@ def verdict(found: Bench) -> tuple[str, str, list[str]]:
     return "✓" if found.decided else "✗", f"{first}.", [f"{sentence_case(line).rstrip('.')}." for line in lines]
 
 
+def about(found: Bench, name: str, text: str) -> str:
+    """Which readings these are: '7 readings of power_mw against length_m, r.csv'; invented ones are called so."""
+    count, out = len(found.residuals), len(found.left_out)
+    told = f"{count} readings of {found.measured} against {found.varied}, {'typed in' if name == TYPED else name}"
+    told += f"; {out} left out" if out else ""
+    return f"Invented: {told}" if text.lstrip().startswith("# Invented") else sentence_case(told)
+
+
 def fitted_table(found: Bench) -> Columns:
     """Each fitted value with its 95 % interval, and what the design had."""
     rows = [
@@ -100,24 +111,20 @@ def _plain(name: str) -> str:
     return name.rpartition("_")[0].replace("_", " ") or name
 
 
-def apart(row: int, found: Bench, all_of_them: Readings) -> str:
+def apart(row: int, all_of_them: Readings) -> str:
     """A reading that stands apart, or was left out, as the words of its checkbox."""
     place_of = all_of_them.row.tolist().index(row)
     at, got = float(all_of_them.at[place_of]), float(all_of_them.got[place_of])
-    item = next((item for item in found.residuals if item.row == row), None)
-    far = "" if item is None else f", {abs(item.normalized):.1f} standard errors off the fit"
-    return (
-        f"Leave out row {row}: {number(got, 4)} {UNITS[found.measured]} at {number(at, 4)} {UNITS[found.varied]}{far}"
-    )
+    return f"Leave out row {row}: {number(got, 4)} {UNITS[all_of_them.measured]} at {number(at, 4)} {UNITS[all_of_them.varied]}"
 
 
-def taken(document: dict, settings: dict) -> str:
-    """What was taken into the design: 'Launch, transmission 0.68; Fiber, attenuation, a curve of its own'."""
-    told = [
-        f"{place(path)} {'of its own' if isinstance(value_at(document, path), dict) else exact(value_at(document, path))}"
-        for path in settings
-        if path != "note"
-    ]
+def taken(document: Document, settings: Mapping[str, Any]) -> str:
+    """What was taken into the design: 'Launch, transmission 0.68; Fiber, attenuation as a curve of its own'."""
+    told = []
+    for path in settings:
+        value = value_at(document, path)
+        if path != "note":
+            told.append(f"{place(path)} {'as a curve of its own' if isinstance(value, Mapping) else number(value)}")
     return "; ".join(told)
 
 

@@ -113,8 +113,9 @@ def answer(report: Report) -> None:
     st.markdown(plain(words.limit_words(report)))
 
 
-def helps_most(found: tuple[Help, ...]) -> None:
-    st.markdown(f"**{plain(words.help_words(found))}**")
+def helps_most(found: tuple[Help, ...], report: Report, pitch: Sharpness) -> None:
+    little = words.pitch_limit_words(pitch) if report.summary.limited_by == "lattice" else ""
+    st.markdown(f"**{plain(words.help_words(found))}** {plain(little)}")
 
 
 def needs(report: Report) -> None:
@@ -203,14 +204,15 @@ def view(here: Sketch, choice: tuple[str, int, float | None, bool, int]) -> None
     st.caption("  \n".join(plain(line) for line in picture.words))
 
 
-def crack(here: Sketch) -> None:
-    """A width asked for, and how such a crack arrives."""
+def single(here: Sketch) -> None:
+    """A width asked for, and how such a crack arrives; then the smallest round spot."""
     wanted = here.design.fiberscope.needs.smallest_gap_mm or CRACK_MM
     with st.container(horizontal=True, vertical_alignment="bottom", gap="medium"):
         width = st.number_input(
             "A single crack of, mm", 0.001, 50.0, wanted, 0.01, "%g", key="detail:crack", width=150, **KEPT
         )
         st.markdown(plain(words.crack_words(ask("crack", here, float(width or wanted)))), width="stretch")
+    st.markdown(plain(words.spot_words(ask("viewing", here))))
 
 
 # What would help
@@ -231,7 +233,7 @@ def help_list(found: tuple[Help, ...]) -> None:
             )
             st.button(
                 "Try",
-                key=f"help:{next(iter(help.settings))}",
+                key=f"help:{words.leads(help)}",
                 type="tertiary",
                 icon=":material/play_arrow:",
                 on_click=_try,

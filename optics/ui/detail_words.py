@@ -10,10 +10,12 @@ from optics.study.sharper_places import Place
 from optics.study.sharper_viewer import Crack, Viewing
 from optics.ui.names import field_name
 from optics.ui.rows import Columns, columns
-from optics.ui.words import exact, number, sentence_case
+from optics.ui.words import exact, number, percent, sentence_case
+from optics.viewer.camera import MEASURING_PIXELS_PER_PITCH
 
-PLACES = {"near": "near end", "work": "at work", "far": "far end", "edge": "edge of the field, at work"}
+PLACES = {"near": "near end", "work": "at work", "far": "far end", "edge": "edge of the field"}
 EDGE = "At the edge: bars in their worse direction, at the darkest point of the rim; what errors the lens has there is not known."
+LITTLE = 1.3  # a finer pitch that resolves no more than so many times as much
 # How a change of one number reads; those that only go along with another are told after it.
 CHANGES = {
     "image.bundle.pitch_um": "a core pitch of {} µm",
@@ -53,7 +55,22 @@ def help_words(found: tuple[Help, ...]) -> str:
     kept = [help for help in found if not help.breaks]
     if not kept:
         return "No single change that was tried shows clearly finer detail without giving up a need."
-    return f"Most would come from {change_words(kept[0], short=True)}: a gap of {number(kept[0].smallest_gap_mm)} mm."
+    best = kept[0]
+    field = f" over a field of {number(best.field_of_view_deg)}°" if leads(best) == FOCAL else ""
+    return f"Most would come from {change_words(best, short=True)}: a gap of {number(best.smallest_gap_mm)} mm{field}."
+
+
+def pitch_limit_words(curve: Sharpness) -> str:
+    """Where the lattice limits and yet a finer pitch hardly helps: what it would gain at most; else nothing."""
+    if curve.now_lp_mm <= 0 or curve.best_lp_mm > LITTLE * curve.now_lp_mm or curve.because in (None, "lattice"):
+        return ""
+    gain = percent(curve.best_lp_mm / curve.now_lp_mm - 1).removeprefix("+")
+    return f"A finer pitch alone gains {gain} at most: {CALLED.get(curve.because, curve.because)} takes over."
+
+
+def leads(help: Help) -> str:
+    """The path of the number that a change is about."""
+    return next(iter(help.settings))
 
 
 def change_words(help: Help, short: bool = False) -> str:
@@ -68,7 +85,7 @@ def change_words(help: Help, short: bool = False) -> str:
 
 def cost_words(help: Help) -> str:
     """What a change gives up."""
-    field = f"the field is then {number(help.field_of_view_deg)}°" if next(iter(help.settings)) == FOCAL else ""
+    field = f"the field is then {number(help.field_of_view_deg)}°" if leads(help) == FOCAL else ""
     lost = [field_name(name, f"needs.{name}") for name in help.breaks]
     short = f"✗ then short: {', '.join(lost)}" if lost else ""
     return "; ".join(filter(None, (field, short)))
@@ -87,13 +104,11 @@ def needed_words(seen: Contrasts) -> str:
 def crack_words(found: Crack) -> str:
     """How a single crack arrives."""
     width = number(found.width_mm)
+    seen = "it is lost in the noise."
     if found.seen:
-        seen = "it is seen"
-        parted = "two of them as far apart are told apart" if found.parted else "two of them as far apart run together"
-    else:
-        seen, parted = "too little to be seen", "it takes a wider one, or one of more contrast"
+        seen = f"it is seen; two of them as far apart {'are told apart' if found.parted else 'run together'}."
     kept = f"keeps {number(100 * found.kept_share, 2)} % of its contrast in the image"
-    return f"A single crack {width} mm wide {kept}: {seen}; {parted}."
+    return f"A single crack {width} mm wide {kept}: {seen}"
 
 
 def smoothing(share: float | None) -> str:
@@ -120,7 +135,7 @@ def place_rows(found: tuple[Place, ...]) -> Columns:
 def place_words(found: tuple[Place, ...], report: Report) -> str:
     """The depth of field, and what the edge does."""
     far = "far away" if report.detail.far_mm is None else f"{number(report.detail.far_mm)} mm"
-    said = f"A core's blur at most from {number(report.detail.near_mm)} mm to {far}."
+    said = f"Defocus blurs by less than one pitch from {number(report.detail.near_mm)} mm to {far}."
     if any(place.name == "edge" for place in found):
         return f"{said} {EDGE}"
     return said + " No edge is reckoned along a bore, on a tilted target, or where the middle is dark."
@@ -142,12 +157,29 @@ def viewer_rows(found: Viewing) -> Columns:
             "✗ they beat with the cores" if beat else "✓ at least 2.31",
         ),
         ("coarsest beat", found.beat_mm, "mm", "period at the target, at the worst turn of the camera"),
-        ("magnification of the eyepiece", found.eyepiece_magnification, "×", "against the naked eye at 250 mm"),
+        ("eyepiece enlarges", found.eyepiece_magnification, "times", "against the naked eye at 250 mm"),
         ("angle between cores", found.angular_pitch_arcmin, "arcmin", "the eye parts about 1"),
         ("luminance seen", found.seen_cd_m2, "cd/m²", "of the face, through the eyepiece"),
     ]
     shown = [(name, f"{number(value)} {unit}".rstrip(), said) for name, value, unit, said in rows if value is not None]
     return columns(("quantity", "value", "meaning"), shown)
+
+
+def _enough(found: Viewing) -> str:
+    least = f"✓ at least {number(found.least_pixels_per_pitch)}"
+    return f"{least}; measuring asks for {number(MEASURING_PIXELS_PER_PITCH)}"
+
+
+def spot_words(found: Viewing) -> str:
+    """The smallest round spot, and what it means."""
+    if found.viewer == "eye":
+        return "An eye counts no electrons: no smallest round spot is reckoned for it."
+    if found.spot_mm is None:
+        return "No round spot of this contrast is told from its surround in the signal that there is."
+    return (
+        f"A round pit of the same contrast is told from its surround from {number(found.spot_mm)} mm across: there the light "
+        "counted over its blurred image outweighs the noise as often as asked (Rose). One that falls between cores may be missed."
+    )
 
 
 def viewer_words(found: Viewing) -> str:

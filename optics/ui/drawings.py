@@ -6,9 +6,9 @@ from typing import Any
 import streamlit as st
 
 from optics.fiberscope import Fiberscope
-from optics.figures import export, fit, guide
+from optics.figures import bend, export, fit, guide
 from optics.figures.palette import DARK, LIGHT
-from optics.report import view_fit, view_guide, view_handling, view_passage
+from optics.report import view_bend, view_fit, view_guide, view_handling, view_passage
 from optics.spec import OutOfRange
 from optics.ui.pictures import DPI, is_dark
 from optics.ui.sketch import Sketch
@@ -18,8 +18,8 @@ KEPT_VIEWS, KEPT_PICTURES = 128, 96
 VIEWS: dict[str, Callable[..., Any]] = {
     "cone": view_guide.cone_view,
     "color": view_guide.color_view,
-    "bends": view_guide.bend_view,
-    "trace": view_guide.bend_trace_view,
+    "bends": view_bend.bend_view,
+    "trace": view_bend.bend_trace_view,
     "tube": view_fit.tube_view,
     "fill": view_fit.fill_view,
     "weights": view_fit.weights,
@@ -33,7 +33,7 @@ VIEWS: dict[str, Callable[..., Any]] = {
 FIGURES: dict[str, tuple[Callable[..., Any], bool]] = {
     "cone": (guide.cone, False),
     "color": (guide.chromaticity, False),
-    "bends": (guide.bend_loss, False),
+    "bends": (bend.bend_loss, False),
     "tube": (fit.sections, True),
     "limit": (fit.limit, False),
 }

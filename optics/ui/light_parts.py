@@ -5,10 +5,11 @@ import re
 import streamlit as st
 
 from optics import presets
+from optics.fiberscope import Lamp
 from optics.figures.strip_words import largest_loss
 from optics.presets import Design
 from optics.report.answer import Report
-from optics.report.view_guide import BendTraceView
+from optics.report.view_bend import BendTraceView
 from optics.study.levers import Lever, levers
 from optics.tables import preset_names
 from optics.ui import drawings, headline, light_words, sketch
@@ -32,16 +33,12 @@ def found_levers(here: Sketch) -> tuple[Lever, ...]:
     return _levers(here.report.design_hash, *named, here.design)
 
 
-def answer(report: Report, found: tuple[Lever, ...]) -> None:
+def answer(here: Sketch, found: tuple[Lever, ...]) -> None:
     """What arrives, what takes most, and what would give most."""
-    light, lamp = report.light, report.light.steps[0].after_lm
-    seen = light.delivered_lm > 0 and lamp > 0
-    first = (
-        f"{number(light.delivered_lm)} of {number(lamp)} lm leave the tip"
-        if seen
-        else f"{number(light.delivered_w)} W leave the tip"
-    )
-    st.header(f"{first}, {number(100 * light.transmission)} % of the lamp's light.", anchor=False)
+    report, lamp = here.report, here.design.fiberscope.source.lamp
+    arrives, of_lamp, unit, share = _arrives(report, lamp)
+    said = f"{number(arrives)} of {number(of_lamp)} {unit} leave the tip, {number(100 * share)} % of the lamp's light."
+    st.header(said, anchor=False)
     st.markdown(plain(largest_loss(report)))
     own, others = (next(iter(_unbroken(each)), None) for each in _by_lamp(found))
     if own is not None:
@@ -49,6 +46,13 @@ def answer(report: Report, found: tuple[Lever, ...]) -> None:
     if others is not None and (own is None or others.gain_share > own.gain_share):
         change, _, gain = others.words.rpartition(": ")
         st.markdown(f"{plain(sentence_case(spoken(change)))} would give {plain(gain)}.")
+
+
+def _arrives(report: Report, lamp: Lamp) -> tuple[float, float, str, float]:
+    """(delivered, of the lamp, their unit, share): lumens, or watts for a lamp that is stated in watts."""
+    if lamp.flux_lm is None:
+        return report.light.delivered_w, lamp.flux_w, "W", report.light.delivered_w / lamp.flux_w
+    return report.light.delivered_lm, lamp.flux_lm, "lm", report.light.transmission
 
 
 def _by_lamp(found: tuple[Lever, ...]) -> tuple[list[Lever], list[Lever]]:
@@ -71,7 +75,7 @@ def metrics(report: Report, pinned: Report | None) -> None:
     """The numbers of the light; with a pinned reference, how far each has moved from it."""
     shown = [
         ("Delivered", "lm", lambda r: r.light.delivered_lm, "light that leaves the exit face"),
-        ("Of the lamp", "%", lambda r: 100 * r.light.transmission, "share of the lamp's light"),
+        ("All of it", "W", lambda r: r.light.delivered_w, "all wavelengths together"),
         ("Exit NA", "", lambda r: r.light.exit_na, "holds 95 % of the lumens"),
         ("Color", "K", lambda r: r.light.color_temperature_k, "correlated color temperature of what leaves"),
         ("Rendering", "Ra", lambda r: r.light.color_rendering_index, "color rendering index of what leaves"),

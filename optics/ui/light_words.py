@@ -1,8 +1,9 @@
 """The cone, the color and the bends of a guide in words and tables."""
 
-from optics.figures.guide import decibels
+from optics.figures.bend import decibels
 from optics.guide.fiber import half_angle_deg
-from optics.report.view_guide import BendTraceView, BendView, ColorView, ConeView
+from optics.report.view_bend import BendTraceView, BendView
+from optics.report.view_guide import ColorView, ConeView
 from optics.ui.rows import Columns, columns
 from optics.ui.words import number
 

@@ -20,8 +20,8 @@ from optics.study.margins_aging import Aged, aged_columns
 from optics.study.margins_answer import Distribution, Margins
 from optics.study.margins_draw import applied
 from optics.study.margins_ranges import Tolerance, nominal_columns
+from optics.ui import margins_rests, pictures, sketch
 from optics.ui import margins_words as words
-from optics.ui import pictures, sketch
 from optics.ui.margins_ranges import Given, in_force
 from optics.viewer.detail import PARTS
 
@@ -146,8 +146,8 @@ def causes(one: Studied) -> None:
 
 def spreads(one: Studied) -> None:
     """One small histogram for each number that moves, those with a need first; and the same as a table."""
-    asked_for, others = words.shown(one.found)
-    st.caption(words.legend(one.found))
+    asked_for, others = margins_rests.shown(one.found)
+    st.caption(margins_rests.legend(one.found))
     if asked_for:
         _histograms(one, asked_for)
         with st.expander("Numbers that no need asks for", key="margins:others"):
@@ -155,8 +155,10 @@ def spreads(one: Studied) -> None:
     else:
         _histograms(one, others)
     with st.expander("The same as a table", key="margins:table"):
-        st.table(words.spread_table(one.found), border="horizontal", hide_index=True, alt="How the numbers spread")
-    st.caption(words.still(one.found))
+        st.table(
+            margins_rests.spread_table(one.found), border="horizontal", hide_index=True, alt="How the numbers spread"
+        )
+    st.caption(margins_rests.still(one.found))
 
 
 def _histograms(one: Studied, items: list[Distribution]) -> None:

@@ -2,13 +2,10 @@
 
 from optics.figures.margins import percent
 from optics.needs import AT_MOST
-from optics.presets import Design
 from optics.spec import OutOfRange
-from optics.study.margins_answer import DISTRIBUTION, METHOD, Causes, Condition, Distribution, Margins, NeedOdds
-from optics.study.margins_ranges import GIVEN
+from optics.study.margins_aging import Aged
+from optics.study.margins_answer import Causes, Condition, Margins, NeedOdds
 from optics.ui.names import field_name, place, spoken
-from optics.ui.origin import SOFT
-from optics.ui.rows import Columns, columns
 from optics.ui.words import number, plain, sentence_case, unit
 
 NUMBERS = {  # headline numbers that no need names
@@ -131,10 +128,21 @@ def _missed(new: Condition) -> list[str]:
 
 
 def _aged(found: Margins) -> str:
-    condition = f"**Aged** ({plain(found.aging.words())})"
+    condition = f"**Aged\\:** {plain(_worn(found.aging))}\\:"
     if found.aged.all_needs is None:
-        return f"{condition}: see the lines in the histograms.".replace(":", "\\:")
-    return f"{condition}\\: {odds(found.aged)} meet them."
+        return f"{condition} see the lines in the histograms."
+    return f"{condition} {odds(found.aged) if found.aged.all_needs else 'not one'} of them still meet all needs."
+
+
+def _worn(condition: Aged) -> str:
+    """A worn condition in the units of the screen."""
+    parts = (
+        (condition.broken_fraction, 100, "% of the fibers broken"),
+        (condition.lamp_share, 100, "% of the lamp's flux left"),
+        (condition.dead_fraction, 100, "% of the cores dead"),
+        (condition.browning_db_m, 1, "dB/m of browning"),
+    )
+    return "with " + ", ".join(f"{value * times:.3g} {text}" for value, times, text in parts if value is not None)
 
 
 def _tighten(found: Margins) -> str:
@@ -190,86 +198,3 @@ def unclear(causes: Causes) -> str:
     if causes.unexplained_share <= 0.5:
         return ""
     return "Less than half is explained: this number moves too seldom, or too abruptly, for shares to be told."
-
-
-# How it was found
-
-
-def run_words(found: Margins) -> str:
-    kinds = len(found.ranges)
-    varied = "1 tolerance" if kinds == 1 else f"{kinds} tolerances"
-    return f"{found.samples:,} designs drawn from {varied}, seed {found.seed}. The same seed gives the same answer."
-
-
-def still(found: Margins) -> str:
-    """The numbers that no tolerance moves, and what limits the detail."""
-    fixed = [item for item in found.new.figures if not item.histogram and item.value is not None]
-    told = [f"{called(item.name)} {amount(item.name, item.value)}" for item in fixed]
-    lines = [f"Hardly or not at all moved\\: {', '.join(map(plain, told))}."] if told else []
-    limited = ", ".join(f"{part} in {percent(share)}" for part, share in found.new.limited_by.items())
-    lines += [f"Detail is limited by\\: {plain(limited)}."] if limited else []
-    return "  \n".join(lines)
-
-
-def rests(found: Margins, design: Design) -> list[str]:
-    """What the answer rests on, each a sentence."""
-    told = [DISTRIBUTION, METHOD]
-    if found.drawn.redrawn:
-        why = "; ".join(f"{rule} ({count:,} times)" for rule, count in found.drawn.because)
-        told.append(
-            f"{found.drawn.redrawn:,} of {found.samples:,} samples were designs that cannot exist and were drawn again: {why}."
-        )
-    told.append("Where a diameter changes, the section is laid out anew and the ports move with it.")
-    soft = [place(item.path) for item in found.ranges if item.basis in SOFT]
-    if soft:
-        told.append(f"{len(soft)} of {len(found.ranges)} tolerances are only assumed or remembered: {'; '.join(soft)}.")
-    own = [place(item.path) for item in found.ranges if item.basis == GIVEN]
-    if own:
-        told.append(f"Entered here: {'; '.join(own)}.")
-    fixed = untouched(found, design)
-    if fixed:
-        told.append(
-            f"{len(fixed)} values have no stated tolerance and stay as they are, such as {place(fixed[0])}: "
-            "the true spread is wider."
-        )
-    if found.aged is not None:
-        told.append(
-            "Aged: what aging does is entered, not foretold. Dead cores count as unevenness between cores; browning is taken as "
-            "equal at all wavelengths, though real browning takes more of the blue."
-        )
-    return [plain(spoken(line)) for line in told]
-
-
-def untouched(found: Margins, design: Design) -> list[str]:
-    """The values of the design that no tolerance moves."""
-    varied = {item.path for item in found.ranges}
-    return [
-        path
-        for path, item in design.sourced.items()
-        if path not in varied and isinstance(item.value, float) and not path.startswith("needs.")
-    ]
-
-
-def shown(found: Margins) -> tuple[list[Distribution], list[Distribution]]:
-    """The numbers worth a histogram: those with a need, and the others; line pairs say again what the gap says."""
-    wanted = [need.name for need in found.new.needs]
-    moved = [item for item in found.new.figures if item.histogram and item.name != "resolved_lp_mm"]
-    return [item for item in moved if item.name in wanted], [item for item in moved if item.name not in wanted]
-
-
-def legend(found: Margins) -> str:
-    """How to read the histograms."""
-    told = ["Filled\\: as built, new" if found.aged else "Filled\\: as built", "▲ the nominal design"]
-    told += ["line\\: aged"] if found.aged else []
-    told += ["dashed\\: the need", "hatched\\: beyond it"] if found.new.needs else []
-    return ", ".join(told) + "."
-
-
-def spread_table(found: Margins) -> Columns:
-    """Where the samples of each number lie."""
-    rows = []
-    asked_for, others = shown(found)
-    for item in asked_for + others:
-        marks = [item.value, *(item.quantiles[name] for name in ("p05", "p50", "p95"))]
-        rows.append((titled(item.name), *("not seen" if mark is None else number(mark) for mark in marks)))
-    return columns(("number", "nominal", "5 % lie below", "half lie below", "95 % lie below"), rows)

@@ -77,7 +77,7 @@ def test_settings_given_stand_in_every_set():
         assert report.summary.target_center_lux == pytest.approx(each.summary.target_center_lux, rel=1e-9)
 
 
-@settings(max_examples=6, deadline=None)
+@settings(max_examples=4, deadline=None)
 @given(
     length=st.floats(0.5, 4.0),
     distance=st.floats(11.0, 39.0),

@@ -29,21 +29,21 @@ with st.container(key="answer"):
         st.subheader("What the operator sees", anchor=False)
         choice = parts.view_controls(here)
         seen = st.container()
-        parts.crack(here)
+        parts.single(here)
 
         st.subheader("What limits", anchor=False)
         left, right = st.columns(2, gap="medium")
+        curves = parts.ask("contrasts", here)
         with left:
             pictures.show("ledger", here.design, report, "What each part alone would allow, in line pairs per mm")
-        with right:
-            curves = parts.ask("contrasts", here)
-            parts.chart("contrasts", here, curves, "Contrast of each part over frequency, and what is needed")
             st.caption(plain(words.needed_words(curves)))
+        with right:
+            parts.chart("contrasts", here, curves, "Contrast of each part over frequency, and what is needed")
 
         over = parts.ask("over", here)
         found = parts.found_helps(here)
         with most:
-            parts.helps_most(found)
+            parts.helps_most(found, report, over[0])
         st.subheader("Smaller is not always sharper", anchor=False)
         left, right = st.columns(2, gap="medium")
         with left:
@@ -57,15 +57,15 @@ with st.container(key="answer"):
             st.subheader("What would help, most first", anchor=False)
             parts.help_list(found)
         with right:
-            st.subheader("Near, far, and at the edge", anchor=False)
-            places = parts.ask("places", here)
-            parts.table(words.place_rows(places), "Detail near, at work, far and at the edge of the field")
-            st.caption(plain(words.place_words(places, report)))
+            viewing = parts.ask("viewing", here)
+            st.subheader(words.VIEWERS[viewing.viewer], anchor=False)
+            st.markdown(plain(words.viewer_words(viewing)))
+            parts.table(words.viewer_rows(viewing), "Numbers of the viewer", header=False)
 
-        viewing = parts.ask("viewing", here)
-        st.subheader(words.VIEWERS[viewing.viewer], anchor=False)
-        st.markdown(plain(words.viewer_words(viewing)))
-        parts.table(words.viewer_rows(viewing), "Numbers of the viewer", header=False)
+        st.subheader("Near, far, and at the edge", anchor=False)
+        places = parts.ask("places", here)
+        parts.table(words.place_rows(places), "Detail near, at work, far and at the edge of the field")
+        st.caption(plain(words.place_words(places, report)))
     st.caption(f"Design {report.design_hash}, version {report.version}. A screening estimate; it certifies nothing.")
     if report.detail is not None:
         with seen:

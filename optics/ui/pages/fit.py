@@ -2,7 +2,7 @@
 
 import streamlit as st
 
-from optics.ui import drawings, fit_parts, headline, look, pictures, rows, sketch
+from optics.ui import drawings, fit_parts, fit_words, headline, look, pictures, rows, sketch
 from optics.ui.words import plain
 
 here = sketch.current()
@@ -26,15 +26,15 @@ with st.container(key="answer"):
     else:
         limits, fill = drawings.view("limits", here), drawings.view("fill", here)
         passage, handling = scope.body.passage, scope.body.handling
-        fit_parts.answer(report, scope, limits, fill)
+        fit_parts.answer(here, limits)
         left, right = st.columns(2, gap="medium")
         with left:
             st.subheader("What the tube holds", anchor=False)
             drawings.show("tube", here, "The tip's face and the tube behind it, to scale")
             weights = drawings.view("weights", here)
-            st.markdown(plain(fit_parts.weight_words(weights, report.fit)))
+            st.markdown(plain(fit_words.weight_words(weights, report.fit)))
             table(fit_parts.weight_table(weights), "What each part adds to the tube")
-            st.markdown(plain(fit_parts.fill_words(fill)))
+            st.markdown(plain(fit_words.fill_words(fill)))
             table(fit_parts.fill_table(fill), "How full the tube is", header=False)
         with right:
             st.subheader("What it passes", anchor=False)
@@ -47,7 +47,7 @@ with st.container(key="answer"):
         left, right = st.columns(2, gap="medium")
         with left:
             st.subheader("Bending", anchor=False)
-            st.markdown(plain(fit_parts.bending_words(bending)))
+            st.markdown(plain(fit_words.bending_words(bending)))
             table(fit_parts.bending_table(bending), "Strain and least radius part by part")
             turn = fit_parts.turned_deg(scope)
             table(fit_parts.slide_table(drawings.view("slides", here, turn), turn), "Slides off the axis")
@@ -60,7 +60,7 @@ with st.container(key="answer"):
             if handling is not None:
                 heats = drawings.view("heats", here)
                 st.subheader("Heat and sterilization", anchor=False)
-                st.markdown(plain(fit_parts.heat_words(scope, heats)))
+                st.markdown(plain(fit_words.heat_words(scope, heats)))
                 table(fit_parts.heat_table(heats), "Temperatures part by part")
             if limits is not None:
                 st.subheader("Pushing", anchor=False)

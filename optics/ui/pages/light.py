@@ -16,32 +16,25 @@ look.dim(here.wrong is not None)
 
 with st.container(key="answer"):
     found = light_parts.found_levers(here)
-    light_parts.answer(report, found)
+    light_parts.answer(here, found)
     light_parts.metrics(report, here.pinned.report if here.pinned else None)
     left, right = st.columns(2, gap="medium")
     with left:
         st.subheader("Step by step", anchor=False)
         pictures.show("budget", here.design, report, "Light left after each step from lamp to exit face")
-        st.table(rows.steps(report), border="horizontal", hide_index=True, alt="Steps of the light with their reasons")
+        cone = drawings.view("cone", here)
+        st.subheader("Cone in, cone out", anchor=False)
+        st.markdown(plain(light_words.cone_words(cone)))
+        drawings.show("cone", here, "Radiance over the angle: launched, after the guide, as it leaves")
     with right:
         st.subheader("What would give more", anchor=False)
         with st.container(gap="xsmall"):
             light_parts.lever_list(report, found)
-
-    left, right = st.columns(2, gap="medium")
-    with left:
-        st.subheader("Cone in, cone out", anchor=False)
-        cone = drawings.view("cone", here)
-        if cone is not None:
-            st.markdown(plain(light_words.cone_words(cone)))
-            drawings.show("cone", here, "Radiance over the angle: launched, after the guide, as it leaves")
-    with right:
-        st.subheader("Bends", anchor=False)
         bends = drawings.view("bends", here)
-        if bends is not None:
-            st.markdown(plain(light_words.bend_words(bends)))
-            drawings.show("bends", here, "Loss of one bend over its radius, with the design's own bends")
-            light_parts.trace(here)
+        st.subheader("Bends", anchor=False)
+        st.markdown(plain(light_words.bend_words(bends)))
+        drawings.show("bends", here, "Loss of one bend over its radius, with the design's own bends")
+        light_parts.trace(here)
 
     st.subheader("Color in, color out", anchor=False)
     color = drawings.view("color", here)
@@ -52,5 +45,7 @@ with st.container(key="answer"):
         st.table(light_words.color_table(color), border="horizontal", hide_index=True, alt="Color before and after")
     with right:
         drawings.show("color", here, "Color of the lamp and of the delivered light beside the black bodies")
+    st.subheader("Why each step is what it is", anchor=False)
+    st.table(rows.steps(report), border="horizontal", hide_index=True, alt="Steps of the light with their reasons")
     headline.caution(report)
     st.caption(f"Design {report.design_hash}, version {report.version}. A screening estimate; it certifies nothing.")

@@ -2,7 +2,7 @@
 
 import streamlit as st
 
-from optics.ui import headline, look, margins_controls, sketch
+from optics.ui import headline, look, margins_controls, margins_rests, sketch
 from optics.ui import margins_parts as parts
 from optics.ui import margins_words as words
 from optics.ui.words import plain
@@ -32,7 +32,7 @@ with controls:
         )
     margins_controls.run(found)
     if one is not None:
-        st.caption(plain(words.run_words(one.found)))
+        st.caption(plain(margins_rests.run_words(one.found)))
 
 if one is not None:
     with pictures:
@@ -56,7 +56,7 @@ with tabs[2]:
         margins_controls.years(found)
 with tabs[3]:
     if tabs[3].open and one is not None:
-        st.markdown("\n".join(f"- {line}" for line in words.rests(one.found, one.design)))
+        st.markdown("\n".join(f"- {line}" for line in margins_rests.rests(one.found, one.design)))
 if one is not None:
     parts.files(one)
 st.caption(

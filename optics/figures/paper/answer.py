@@ -6,38 +6,42 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Rectangle
 
-from optics.figures import pdf_sheet as paper
-from optics.figures import pdf_words as say
-from optics.figures.palette import LARGE, LIGHT, THIN
-from optics.figures.pdf_sheet import BODY, BOTTOM, FINE, HIGH, SIDE, WIDE, Area, Block, Cell
+from optics.figures.paper import origin
+from optics.figures.paper import blocks, sheet
+from optics.figures.paper import words as say
+from optics.figures.palette import LIGHT, THIN
+from optics.figures.paper.sheet import BODY, BOTTOM, FINE, HIGH, SIDE, WIDE, Area, Block, Cell
 from optics.report.answer import Report
 from optics.report.verdict import sentence
+from optics.study.smallest_change import Change
 from optics.tables import Sourced
 
 LEFT, RIGHT = 6.25, 3.75  # widths of the columns, inches
 ASIDE = WIDE - SIDE - RIGHT
-ANSWER = 17.0  # points
-METRICS, METRIC_HIGH = 4, 0.74  # in a row; height of one
+ANSWER, NUMBER = 17.0, 16.0  # points
+METRICS, METRIC_HIGH = 4, 0.86  # in a row; height of one
 BAR, FULL = 1.2, 1.0  # inches of the margin's bar to each end; the margin that fills it
 
 
-def answer(pages: list[Figure], report: Report, sourced: Mapping[str, Sourced]) -> list[Block]:
+def answer(pages: list[Figure], report: Report, sourced: Mapping[str, Sourced], change: Change | None) -> list[Block]:
     """The first page; hands back the caveats for which it had no room."""
-    figure, axes = paper.page(report.name)
+    figure, axes = sheet.page(report.name)
     pages.append(figure)
-    axes.text(WIDE - SIDE, HIGH - paper.TOP - 0.05, f"Sizing report, {report.setting} use", fontsize=BODY,
+    axes.text(WIDE - SIDE, HIGH - sheet.TOP - 0.05, f"Sizing report, {report.setting} use", fontsize=BODY,
               color=LIGHT.soft, ha="right", va="top")  # fmt: skip
-    top = paper.FIRST - 0.05
+    top = sheet.FIRST - 0.05
     first, rest = say.parted(sentence(report))
     mark = {True: say.MET, False: say.SHORT, None: say.OPEN}[report.summary.needs_met]
     ink = LIGHT.accent if report.summary.needs_met is False else LIGHT.ink
-    said = [paper.words(f"{mark} {first}", LEFT, size=ANSWER, bold=True, color=ink, below=0.05)]
-    said += [paper.words(rest, LEFT, size=11.0, below=0.22)] if rest else [paper.space(0.15)]
-    said += [*_metrics(say.headline(report)), paper.space(0.1), *_needs(report)]
-    paper.flow(said, iter([Area(axes, SIDE, top)]))
-    caution, screen = _caution(report), [paper.heading("What to know about these numbers", RIGHT)]
-    y = paper.flow([caution], iter([Area(axes, ASIDE, top)]))
-    screen += [paper.words(say.softness(sourced), RIGHT)] if sourced else []
+    said = [blocks.words(f"{mark} {first}", LEFT, size=ANSWER, bold=True, color=ink, below=0.05)]
+    said += [blocks.words(rest, LEFT, size=11.0, below=0.22)] if rest else [sheet.space(0.15)]
+    said += [*_metrics(say.headline(report)), sheet.space(0.1), *_needs(report)]
+    if told := say.change(report.summary.needs_met, change):
+        said += [sheet.space(0.08), blocks.words(told, LEFT, size=9.0)]
+    sheet.flow(said, iter([Area(axes, SIDE, top)]))
+    caution, screen = _caution(report), [blocks.heading("What to know about these numbers", RIGHT)]
+    y = sheet.flow([caution], iter([Area(axes, ASIDE, top)]))
+    screen += [blocks.words(origin.softness(sourced), RIGHT)] if sourced else []
     return _caveats(axes, report, screen, y)
 
 
@@ -49,9 +53,9 @@ def _metrics(numbers: list[tuple[str, str, str]]) -> list[Block]:
         def draw(axes: Axes, x: float, y: float) -> None:
             for name, number, meaning in shown:
                 axes.text(x, y, name, fontsize=BODY, color=LIGHT.soft, va="top")
-                axes.text(x, y - 0.17, number, fontsize=LARGE, weight="bold", color=LIGHT.ink, va="top")
-                for turn, line in enumerate(paper.wrapped(meaning, FINE - 0.4, wide - 0.12)):
-                    axes.text(x, y - 0.42 - turn * 0.115, line, fontsize=FINE - 0.4, color=LIGHT.soft, va="top")
+                axes.text(x, y - 0.18, number, fontsize=NUMBER, weight="bold", color=LIGHT.ink, va="top")
+                for turn, line in enumerate(blocks.wrapped(meaning, FINE - 0.4, wide - 0.12)):
+                    axes.text(x, y - 0.47 - turn * 0.115, line, fontsize=FINE - 0.4, color=LIGHT.soft, va="top")
                 x += wide
 
         return Block(METRIC_HIGH, draw)
@@ -62,12 +66,12 @@ def _metrics(numbers: list[tuple[str, str, str]]) -> list[Block]:
 def _needs(report: Report) -> list[Block]:
     """Needs, short ones first, with their margin as a number and as a bar."""
     if not report.needs:
-        return [paper.heading("Needs", LEFT), paper.words("No needs are set in this design.", LEFT)]
-    widths = (0.26, 1.72, 1.42, 1.0, 0.95, LEFT - 5.35)
-    head = paper.head_row(
+        return [blocks.heading("Needs", LEFT), blocks.words("No needs are set in this design.", LEFT)]
+    widths = (0.26, 1.7, 1.42, 1.12, 0.9, LEFT - 5.4)
+    head = blocks.head_row(
         [Cell(""), Cell("need"), Cell("wanted"), Cell("got"), Cell("margin", right=True), Cell("")], widths
     )
-    rows = [paper.heading("Needs and margins", LEFT), head]
+    rows = [blocks.heading("Needs and margins", LEFT), head]
     for need in say.needs(report):
         ink = LIGHT.ink if need.met else LIGHT.accent
         cells = [
@@ -78,7 +82,11 @@ def _needs(report: Report) -> list[Block]:
             Cell(need.margin, not need.met, ink, right=True),
             Cell(""),
         ]
-        rows.append(_barred(paper.row(cells, widths, size=9.0, pad=0.07, least=0.22), need, sum(widths[:5]) + 0.05, widths[5] - 0.05))
+        rows.append(
+            _barred(
+                blocks.row(cells, widths, size=9.0, pad=0.07, least=0.25), need, sum(widths[:5]) + 0.05, widths[5] - 0.05
+            )
+        )
     return rows
 
 
@@ -89,7 +97,7 @@ def _barred(row: Block, need: say.Need, left: float, wide: float) -> Block:
         row.draw(axes, x, y)
         middle, half = x + left + wide / 2, wide / 2
         share = -FULL if need.margin_share is None else max(-FULL, min(need.margin_share, FULL))
-        long, low, high = half * share / FULL, y - 0.165, 0.11
+        long, low, high = half * share / FULL, y - 0.18, 0.11
         color = LIGHT.back if need.met else LIGHT.accent
         axes.add_patch(Rectangle((x + left, low), wide, high, facecolor=LIGHT.ghost, linewidth=0))
         axes.add_patch(Rectangle((min(middle, middle + long), low), abs(long), high, facecolor=color, linewidth=0))
@@ -103,10 +111,11 @@ def _caution(report: Report) -> Block:
     pad, inner = 0.13, RIGHT - 0.26
     text = next(item.text for item in report.caveats if item.where == "setting")
     inside = [
-        paper.words(f"Caution: {report.setting} use", inner, size=10.0, bold=True),
-        paper.words(text, inner, below=0.08),
-        paper.words(say.SCREENING, inner, bold=True, below=0.0),
+        blocks.words(f"Caution: {report.setting} use", inner, size=10.0, bold=True),
+        blocks.words(text, inner, below=0.08),
     ]
+    if "certifies nothing" not in text:
+        inside.append(blocks.words(say.SCREENING, inner, bold=True, below=0.0))
     high = sum(block.high for block in inside) + 2 * pad
 
     def draw(axes: Axes, x: float, y: float) -> None:
@@ -124,18 +133,18 @@ def _caveats(axes: Axes, report: Report, screen: list[Block], y: float) -> list[
     items = [item for item in report.caveats if item.where not in ("setting", "sources")]
     done = 0
     for item in items:
-        block = _caveat(item.where, item.text, RIGHT)
-        if y - sum(b.high for b in screen) - block.high < BOTTOM:
+        block = _caveat(item.where, say.typeset(item.text), RIGHT)
+        if y - sum(b.high for b in screen) - block.high < BOTTOM + 0.2:
             break
         screen.append(block)
         done += 1
-    paper.flow(screen, iter([Area(axes, ASIDE, y)]))
-    left = [_caveat(item.where, item.text, paper.COLUMN) for item in items[done:]]
-    return [paper.heading("More to know about these numbers"), *left] if left else []
+    sheet.flow(screen, iter([Area(axes, ASIDE, y)]))
+    left = [_caveat(item.where, say.typeset(item.text), sheet.COLUMN) for item in items[done:]]
+    return [blocks.heading("More to know about these numbers"), *left] if left else []
 
 
 def _caveat(where: str, text: str, width: float) -> Block:
-    parts = [paper.words(where, width, size=FINE, color=LIGHT.soft, below=0.0), paper.words(text, width, below=0.07)]
+    parts = [blocks.words(where, width, size=FINE, color=LIGHT.soft, below=0.0), blocks.words(text, width, below=0.07)]
 
     def draw(axes: Axes, x: float, y: float) -> None:
         for part in parts:
@@ -143,3 +152,13 @@ def _caveat(where: str, text: str, width: float) -> Block:
             y -= part.high
 
     return Block(sum(part.high for part in parts), draw)
+
+
+def table_of_contents(pages: list[Figure]) -> None:
+    """What stands on which page, in one line at the foot of the first."""
+    titles: dict[str, list[int]] = {}
+    for number, page in enumerate(pages[1:], 2):
+        titles.setdefault(page.axes[0].texts[0].get_text(), []).append(number)
+    told = [f"{'–'.join(map(str, sorted({on[0], on[-1]})))} {title}" for title, on in titles.items()]
+    axes = pages[0].axes[0]
+    axes.text(SIDE, BOTTOM - 0.02, "Page  " + "   ·   ".join(told), fontsize=FINE, color=LIGHT.soft, va="bottom")

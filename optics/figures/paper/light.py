@@ -4,12 +4,13 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Rectangle
 
-from optics.figures import pdf_sheet as paper
+from optics.figures.paper import blocks, sheet
 from optics.figures.canvas import lost, three
 from optics.figures.palette import LIGHT, THIN
-from optics.figures.pdf_sheet import BODY, FINE, FIRST, GAP, ROOM, SIDE, Area, Block, Cell
+from optics.figures.paper.sheet import BODY, FINE, FIRST, GAP, ROOM, SIDE, Area, Block, Cell
+from optics.figures.paper.words import typeset
 from optics.figures.strip import EDGE, light_strip
-from optics.figures.strip_words import Leg, full_scale_db, outward
+from optics.figures.strip_words import outward
 from optics.report.answer import Report
 from optics.units import db_from_transmission
 
@@ -19,17 +20,17 @@ LEAST, MOST = 0.148, 0.2  # height of a row, inches
 
 def light(pages: list[Figure], report: Report) -> None:
     """The strip over the page's width, the budget below it; on a page more where it is very long."""
-    figure, axes = paper.page("The light, from the lamp on")
+    figure, axes = sheet.page("The light, from the lamp on")
     pages.append(figure)
     strip = light_strip(report, width_in=ROOM + 2 * EDGE)
-    y = paper.flow([paper.picture(strip, 0.02)], iter([Area(axes, SIDE - EDGE, FIRST + 0.12)]))
-    paper.flow(budget(report, y - paper.BOTTOM), _areas(pages, Area(axes, SIDE, y)))
+    y = sheet.flow([sheet.picture(strip, 0.02)], iter([Area(axes, SIDE - EDGE, FIRST + 0.12)]))
+    sheet.flow(budget(report, y - sheet.BOTTOM), _areas(pages, Area(axes, SIDE, y)))
 
 
 def _areas(pages: list[Figure], first: Area):
     yield first
     while True:
-        figure, axes = paper.page("The light, continued")
+        figure, axes = sheet.page("The light, continued")
         pages.append(figure)
         yield Area(axes, SIDE, FIRST)
 
@@ -40,9 +41,11 @@ def budget(report: Report, high: float) -> list[Block]:
     least = min(max(high / (len(steps) + 2.3), LEAST), MOST)
     widths = (STEP, LEFT_LM, LOSS, GAP / 2, BAR, GAP / 2, ROOM - STEP - LEFT_LM - LOSS - BAR - GAP)
     size = BODY if least > 0.16 else FINE + 0.3
-    scale_db = full_scale_db(legs)
-    names = (Cell("Step"), Cell("lm after", right=True), Cell("loss", right=True), Cell(""))
-    top = paper.head_row([*names, Cell(f"light lost, full width {three(scale_db)} dB"), Cell(""), Cell("because")], widths)
+    scale_db = max(float(db_from_transmission(max(legs[-1].left if legs else 1.0, 1e-12))), 1.0)
+    names = (Cell("step"), Cell("lm after", right=True), Cell("loss", right=True), Cell(""))
+    top = blocks.head_row(
+        [*names, Cell(f"light lost; the bar's width is {three(scale_db)} dB"), Cell(""), Cell("because")], widths
+    )
     rows = [top]
     before = 1.0
     for step, leg in zip(steps, [None, *legs]):
@@ -54,16 +57,16 @@ def budget(report: Report, high: float) -> list[Block]:
             Cell(three(step.after_lm), marked, color, True),
             Cell(lost(step.factor) if leg else "", marked, color, True),
             Cell(""), Cell(""), Cell(""),
-            Cell(step.because, color=color if marked else LIGHT.ink),
+            Cell(typeset(step.because), color=color),
         ]  # fmt: skip
-        row = paper.row(cells, widths, size=size, pad=0.02, least=least)
+        row = blocks.row(cells, widths, size=size, pad=0.02, least=least)
         rows.append(_barred(row, before, after, scale_db, marked, sum(widths[:4])))
         before = after
     found = report.light
     said = f"{three(found.delivered_w)} W, {three(found.transmission * 100)} % of the lamp; 95 % of it within NA {found.exit_na:.3f}"
     cells = [Cell("delivered", True), Cell(three(found.delivered_lm), True, right=True),
              Cell(lost(found.transmission), True, right=True), Cell(""), Cell(""), Cell(""), Cell(said, True)]  # fmt: skip
-    return [*rows, paper.row(cells, widths, size=size, pad=0.02, least=least, rule=False)]
+    return [*rows, blocks.row(cells, widths, size=size, pad=0.02, least=least, rule=False)]
 
 
 def _barred(row: Block, before: float, after: float, scale_db: float, marked: bool, left: float) -> Block:
@@ -74,14 +77,18 @@ def _barred(row: Block, before: float, after: float, scale_db: float, marked: bo
 
     def draw(axes: Axes, x: float, y: float) -> None:
         row.draw(axes, x, y)
-        x, low, high = x + left, y - row.high + 0.02, row.high - 0.04
+        x, high = x + left, min(row.high, MOST) - 0.05
+        low = y - (row.high + high) / 2
         axes.add_patch(Rectangle((x, low), BAR, high, facecolor=LIGHT.ghost, linewidth=0))
         start, end = sorted((place(before), place(after)))
         color = LIGHT.accent if marked else LIGHT.light
         axes.add_patch(Rectangle((x + start, low), end - start, high, facecolor=color, linewidth=0))
-        axes.plot([x + place(after)] * 2, [low - 0.02, low + high], color=LIGHT.soft, linewidth=THIN, solid_capstyle="butt")
+        axes.plot(
+            [x + place(after)] * 2,
+            [low - 0.015, low + high + 0.015],
+            color=LIGHT.soft,
+            linewidth=THIN,
+            solid_capstyle="butt",
+        )
 
     return Block(row.high, draw, row.keep)
-
-
-__all__ = ["Leg", "budget", "light"]

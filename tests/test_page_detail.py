@@ -1,0 +1,168 @@
+"""The page on detail in process: it answers for every kind of design, and follows what people do to it."""
+
+from contextlib import ExitStack
+from unittest.mock import patch
+
+import pytest
+from app_driver import BLANK, DEMO, click, opened, put, ran, report
+from random_designs import CHIP
+
+from optics import presets
+from optics.report.size import size
+from optics.tables import preset_names
+from optics.ui import detail_parts, detail_words, link, pictures
+from optics.ui.words import number
+
+PAGE = "optics/ui/pages/detail.py"
+BARE = dict.fromkeys(("scene", "image", "viewer", "body"))
+KINDS = {
+    "eye": {"viewer.form": "eye"},
+    "chip": {"image.form": "chip", "image.chip": CHIP, "viewer": None},
+    "dark": {"source.lamp.flux_lm": 1e-6},
+    "few pixels": {"viewer.camera.relay_magnification": 0.6},
+    "water": {"scene.target.medium": "water"},
+    "bore": {"scene.target.form": "bore", "scene.target.bore_mm": 20.0},
+    "no needs": {"needs": {}},
+}
+
+
+@pytest.fixture
+def blank():
+    """Blank sheets for all pictures of the page: drawing takes most of the time."""
+    with ExitStack() as stack:
+        stack.enter_context(patch.object(pictures, "_picture", lambda *_: BLANK))
+        stack.enter_context(patch.object(detail_parts, "_chart", lambda *_: BLANK))
+        stack.enter_context(patch.object(detail_parts, "_drawn", lambda *_: BLANK))
+        yield
+
+
+def page(demo: str = "gearbox_tooth", settings: dict | None = None, drawn: bool = False):
+    app = opened(d=link.written(demo, settings or {}))
+    app.switch_page(PAGE)
+    return ran(app, drawn)
+
+
+def said(app) -> str:
+    """Everything that the page says in words, markup marks left off."""
+    kinds = (app.header, app.subheader, app.markdown, app.caption)
+    return "\n".join(item.value for kind in kinds for item in kind).replace("\\", "")
+
+
+def tables(app) -> list:
+    return [item.value for item in app.table]
+
+
+@pytest.mark.parametrize("name", preset_names("fiberscopes"))
+def test_every_demo_is_drawn(name):
+    app = page(name, drawn=True)
+    assert app.header[0].value[0] in "✓✗"
+    assert "Most would come from" in said(app)
+    assert len(app.get("image")) == 6
+
+
+def test_the_answer_is_that_of_size(blank):
+    app, seen = page(), size(presets.open("gearbox_tooth").fiberscope).summary
+    assert number(seen.smallest_gap_mm) in app.header[0].value
+    shown = {item.label: item.value for item in app.metric}
+    assert shown["Smallest gap"] == f"{number(seen.smallest_gap_mm)} mm"
+    assert shown["Thinnest line"] == f"{number(seen.smallest_line_mm)} mm"
+    assert "lattice limits" in said(app)
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_every_kind_of_design_is_answered(kind, blank):
+    app = page(settings=KINDS[kind])
+    assert "Smaller is not always sharper" in said(app)
+    assert ("The eye" in said(app)) is (kind == "eye")
+    assert ("✗" in app.header[0].value) is (kind == "dark")
+    assert ("beat with the cores, worst" in said(app)) is (kind == "few pixels")
+    assert ("No edge is reckoned" in said(app)) is (kind == "bore")
+
+
+def test_a_bare_light_guide_says_so_in_a_line(blank):
+    app = page(settings=BARE)
+    assert app.header[0].value == "No image: this design is a light guide alone."
+    assert not app.get("image")
+    assert not app.metric
+
+
+def test_the_view_follows_its_controls(blank):
+    app = page()
+    asked = []
+    with patch.object(detail_parts, "view_of", lambda scope, **how: asked.append(how) or drawn_of(scope, **how)):
+        for key, value in (("detail:subject", "cracks"), ("detail:smooth", 0.03)):
+            app.selectbox(key=key).set_value(value)
+            ran(app)
+        app.toggle(key="detail:noise").set_value(False)
+        app.number_input(key="detail:seed").set_value(7)
+        app.button_group(key="detail:zoom").set_value(4)
+        ran(app)
+    assert asked[-1] == {"subject": "cracks", "width_px": 1600, "seed": 7, "smooth": 0.03, "noise": False}
+    assert "noise not drawn" in said(app)
+    assert "Smoothed to 3 % of the honeycomb: that keeps" in said(app)
+
+
+def drawn_of(scope, **how):
+    from optics.report.picture import view_of
+
+    return view_of(scope, **{**how, "width_px": 64})
+
+
+def test_the_choices_survive_another_page(blank):
+    app = page()
+    app.selectbox(key="detail:subject").set_value("gear")
+    ran(app).switch_page("optics/ui/pages/sizing.py")
+    ran(app).switch_page(PAGE)
+    assert ran(app).selectbox(key="detail:subject").value == "gear"
+
+
+def test_a_crack_is_told_by_its_width(blank):
+    app = page()
+    for width, words in ((0.02, "lost in the noise"), (0.1, "run together"), (0.5, "told apart")):
+        app.number_input(key="detail:crack").set_value(width)
+        assert words in said(ran(app))
+
+
+def test_what_helps_can_be_tried_and_compared(blank):
+    app = page()
+    before = report(app).summary.smallest_gap_mm
+    click(app, "help:image.bundle.pitch_um")
+    assert report(app).summary.smallest_gap_mm < 0.7 * before
+    assert app.session_state["sketch"].pinned.report.summary.smallest_gap_mm == before
+    moved = {item.label: item.delta for item in app.metric}
+    assert moved["Smallest gap"].startswith("−")
+    click(app, "pin:back")
+    assert app.session_state["sketch"].document == DEMO
+
+
+def test_the_page_follows_a_change_and_keeps_the_last_answer(blank):
+    app = page()
+    before = app.header[0].value
+    put(app, "image.bundle.pitch_um", 12.0)
+    after = app.header[0].value
+    assert after != before
+    put(app, "image.bundle.pitch_um", -1.0)
+    assert app.error
+    assert app.header[0].value == after
+
+
+def test_where_smaller_hardly_helps_it_is_said(blank):
+    app = page(settings={"image.bundle.preset": "drawn_silica_3um"})
+    assert "A finer pitch alone gains" in said(app)
+    assert "crosstalk takes over" in said(app)
+    assert "A finer pitch alone gains" not in said(page())
+
+
+def test_words_of_changes():
+    from optics.study.sharper_helps import Help
+
+    help = Help({"image.objective.focal_mm": 1.25}, 2.8, 0.179, 0.27, 41.1, "lattice", ())
+    assert detail_words.help_words((help,)) == (
+        "Most would come from a focal length of 1.25 mm: a gap of 0.179 mm over a field of 41.1°."
+    )
+    assert "without giving up a need" in detail_words.help_words(())
+
+
+def test_tables_have_a_row_for_each_place(blank):
+    app = page()
+    assert [len(found) for found in tables(app)] == [5, 4]
