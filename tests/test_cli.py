@@ -156,7 +156,12 @@ def test_list_shows_designs_and_presets(capsys):
     assert {"fiberscopes", "lamps", "fibers"} <= set(found)
 
 
-def test_check_holds_the_published_rows(capsys):
+def test_check_holds_the_published_rows(capsys, monkeypatch):
+    """On some of the rows: `tests/test_published.py` holds each of them."""
+    from optics.commands import check
+    from optics.published import rows
+
+    monkeypatch.setattr(check, "rows", lambda: [row for row in rows() if row.quantity.startswith(("media", "image"))])
     status, out, _ = run(capsys, "check")
     assert status == 0
     assert "0 disagree" in out

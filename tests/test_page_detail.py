@@ -1,14 +1,22 @@
 """The page on detail in process: it answers for every kind of design, and follows what people do to it."""
 
+import itertools
+import re
 from contextlib import ExitStack
 from unittest.mock import patch
 
 import pytest
 from app_driver import BLANK, DEMO, click, opened, put, ran, report
 from random_designs import CHIP
+from test_figures import words
 
 from optics import presets
+from optics.figures import image
+from optics.figures import sharper as sharper_figure
+from optics.figures.palette import DARK
 from optics.report.size import size
+from optics.study.sharper import over_all
+from optics.study.sharper_curves import contrasts
 from optics.tables import preset_names
 from optics.ui import detail_parts, detail_words, link, pictures
 from optics.ui.words import number
@@ -166,3 +174,52 @@ def test_words_of_changes():
 def test_tables_have_a_row_for_each_place(blank):
     app = page()
     assert [len(found) for found in tables(app)] == [5, 4]
+
+
+# The pictures
+
+
+FIGURE_KINDS = {
+    **KINDS,
+    "demo": {},
+    "fine": {"image.bundle.preset": "drawn_silica_3um"},
+    "out of focus": {"scene.target.distance_mm": 8.0, "scene.target.near_mm": None, "image.objective.f_number": 2.0},
+    "coarse": {"image.bundle.pitch_um": 40.0, "image.bundle.core_um": 30.0},
+    "dim": {"source.lamp.flux_lm": 0.003},
+}
+
+
+@pytest.mark.parametrize("kind", FIGURE_KINDS)
+def test_pictures_clip_nothing_and_keep_words_apart(kind):
+    scope = presets.resolve(presets.edited(DEMO, FIGURE_KINDS[kind])).fiberscope
+    curves, wanted = over_all(scope, 41), scope.needs.smallest_gap_mm
+    shown = {"top_lp_mm": max(curve.best_lp_mm for curve in curves), "wanted_lp_mm": 0.5 / wanted if wanted else None}
+    for figure, unit in (
+        (image.contrasts(contrasts(scope), palette=DARK), "line pairs per mm"),
+        (sharper_figure.sharper(curves[:1], panel_in=detail_parts.PITCH_IN, **shown), "pitch, µm"),
+        (sharper_figure.sharper(curves[1:], **shown, palette=DARK), "light, lm"),
+    ):
+        width, height = figure.get_size_inches() * figure.dpi
+        found = list(words(figure))
+        assert any(unit in text for text, _ in found)
+        assert not any(re.search(r"\b(nan|inf|None)\b", text) for text, _ in found)
+        for text, box in found:
+            assert box.x0 >= -1 and box.y0 >= -1 and box.x1 <= width + 1 and box.y1 <= height + 1, (
+                f"{text!r} is cut off"
+            )
+        for (text, box), (other, its) in itertools.combinations(found, 2):
+            across = min(box.x1, its.x1) - max(box.x0, its.x0)
+            down = min(box.y1, its.y1) - max(box.y0, its.y0)
+            assert across <= 1.5 or down <= 2.5, f"{text!r} lies on {other!r}"
+
+
+def test_the_pictures_say_what_takes_over():
+    fine, plain = (
+        over_all(presets.resolve(presets.edited(DEMO, FIGURE_KINDS[kind])).fiberscope, 41) for kind in ("fine", "demo")
+    )
+    assert sharper_figure.what_it_says(fine[0]) == "Smaller than 2.8 µm gains little: crosstalk limits"
+    assert sharper_figure.what_it_says(plain[0]) == "Smaller stops being sharper near 3.8 µm: crosstalk takes over"
+    assert sharper_figure.what_it_says(plain[2]).startswith("More light than ")
+    told = [text for text, _ in words(image.contrasts(contrasts(presets.load("gearbox_tooth"))))]
+    assert "needed" in told
+    assert any(text.startswith("the lattice ends at 3.04") for text in told)

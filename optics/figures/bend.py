@@ -69,18 +69,24 @@ def _top_db(view: BendView) -> float:
 
 
 def _own_names(axes: Axes, palette: Palette, view: BendView, top: float) -> None:
-    """The design's bends, each said beside its dot, stepping up where they crowd."""
-    low, high = np.log(view.radius_mm[[0, -1]])
-    for step, bend in enumerate(sorted(view.own, key=lambda bend: bend.radius_mm)):
-        far = (np.log(bend.radius_mm) - low) / (high - low)
-        times = f"{bend.repeats_count} × " if bend.repeats_count > 1 else ""
-        said = f"{times}{three(bend.angle_deg)}° at {three(bend.radius_mm)} mm\n{decibels(bend.loss_db)} each"
-        axes.annotate(
-            said, (bend.radius_mm, min(bend.loss_db, top)), (0, 14 + 30 * step), textcoords="offset points", color=palette.ink,
-            fontsize=SMALL, ha="right" if far > 0.72 else "left", va="bottom", linespacing=1.15,
-            arrowprops={"arrowstyle": "-", "color": palette.ink, "linewidth": THIN, "shrinkB": 4},
-            bbox={"facecolor": palette.paper, "edgecolor": "none", "pad": 1.0, "alpha": 0.85},
-        )  # fmt: skip
+    """The design's bends in words: one beside its dot, several as a list in the corner that the curves leave free."""
+    box = {"facecolor": palette.paper, "edgecolor": "none", "pad": 1.0, "alpha": 0.8}
+    look = {"textcoords": "offset points", "color": palette.ink, "fontsize": SMALL, "linespacing": 1.15, "bbox": box}
+    said = [
+        f"{f'{bend.repeats_count} × ' if bend.repeats_count > 1 else ''}{three(bend.angle_deg)}° at {three(bend.radius_mm)} mm"
+        for bend in view.own
+    ]
+    if len(view.own) == 1:
+        bend, (low, high) = view.own[0], np.log(view.radius_mm[[0, -1]])
+        far = (np.log(bend.radius_mm) - low) / (high - low) > 0.72
+        at = (bend.radius_mm, min(bend.loss_db, top))
+        line = {"arrowstyle": "-", "color": palette.ink, "linewidth": THIN, "shrinkB": 4}
+        each = f"{said[0]}\n{decibels(bend.loss_db)}{' each' if bend.repeats_count > 1 else ''}"
+        axes.annotate(each, at, (0, 14), ha="right" if far else "left", va="bottom", arrowprops=line, **look)
+    elif said:
+        lines = [f"{text}: {decibels(bend.loss_db)}" for text, bend in zip(said, view.own)]
+        at = (view.radius_mm[-1], 0.87 * top)
+        axes.annotate("\n".join(lines), at, (-2, 0), ha="right", va="top", **look)
 
 
 def decibels(loss_db: float) -> str:

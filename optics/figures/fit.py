@@ -116,7 +116,7 @@ def _key(view: TubeView, parts: Sequence[Part], *, tube: bool) -> Iterator[tuple
     """(kind, words) for each kind and size of part, the wall first, the fibers last."""
     yield "wall", f"{'tube' if tube else 'tip'} ⌀ {three(view.outer_diameter_mm)}, lumen ⌀ {three(view.lumen_mm)} mm"
     if not view.fits:
-        yield "needed", f"✗ needs a lumen of ⌀ {three(view.needed_lumen_mm)} mm (dashed)"
+        yield "needed", f"✗ needed ⌀ {three(view.needed_lumen_mm)} mm, dashed"
     for kind, names in NAMES.items():
         for size in sorted({part.diameter_mm for part in parts if part.kind == kind}, reverse=True):
             same = [part for part in parts if part.kind == kind and part.diameter_mm == size]

@@ -5,20 +5,19 @@ every value with its source. A part that the design does not have takes no page.
 """
 
 import io
-from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
+import numpy as np
 from matplotlib.backends.backend_pdf import PdfPages
 from matplotlib.figure import Figure
 
-from optics.figures import body, detail, pdf_answer, pdf_light, target, working_range
+from optics.figures import body, detail, target, working_range
 from optics.figures import light as light_pictures
-from optics.figures.paper import blocks, sheet
-from optics.figures.paper import values
-from optics.figures.paper import words as say
-from optics.figures.canvas import width_of
 from optics.figures.palette import LIGHT, THIN
-from optics.figures.paper.sheet import COLUMN, FINE, FIRST, GAP, SIDE, Area, Block, Cell
+from optics.figures.paper import answer, blocks, light, sheet, values
+from optics.figures.paper import words as say
+from optics.figures.paper.blocks import Cell
+from optics.figures.paper.sheet import COLUMN, FINE, FIRST, GAP, SIDE, Area, Block
 from optics.presets import Design
 from optics.report.answer import Report
 from optics.report.views import PassageView, SectionView, Spectra, TargetMap
@@ -27,7 +26,7 @@ from optics.study.working_range import RangeCurves
 
 LEFT, RIGHT = SIDE, SIDE + COLUMN + GAP
 ROOM_DOWN = FIRST - sheet.BOTTOM
-MAP_WIDTHS = tuple(0.1 * tenth for tenth in range(50, 23, -1))  # inches, widest first
+LEAST_MAP = 2.6  # inches
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,21 +61,15 @@ def pdf(contents: Contents) -> bytes:
 def sheets(contents: Contents) -> list[Figure]:
     """The pages, footers and all."""
     pages: list[Figure] = []
-    told = [*pdf_answer.answer(pages, contents.report, contents.design.sourced, contents.change)]
-    pdf_light.light(pages, contents.report)
+    told = [*answer.answer(pages, contents.report, contents.design.sourced, contents.change)]
+    light.light(pages, contents.report)
     _target_and_detail(pages, contents)
     _fit(pages, contents)
     _rest(pages, contents, told)
-    pdf_answer.table_of_contents(pages)
+    answer.table_of_contents(pages)
     for number, page in enumerate(pages, 1):
         _footer(page, contents.report, number, len(pages))
     return pages
-
-
-def _page(pages: list[Figure], title: str):
-    figure, axes = sheet.page(title)
-    pages.append(figure)
-    return axes
 
 
 def pairs(rows: list[say.Pair], width: float = COLUMN) -> list[Block]:
@@ -92,15 +85,15 @@ def _target_and_detail(pages: list[Figure], contents: Contents) -> None:
     report = contents.report
     if contents.target is None:
         return
-    axes = _page(pages, "On the target, and what is seen of it" if report.detail else "On the target")
+    axes = sheet.page(pages, "On the target, and what is seen of it" if report.detail else "On the target")
     left = [blocks.heading("The light, in numbers"), *_two_columns(say.target(report))]
     if report.detail:
         left += [sheet.space(0.1), blocks.heading("The detail, in numbers"), *_two_columns(say.detail(report))]
     top = blocks.heading("The light on the target")
     deep = ROOM_DOWN - sum(block.high for block in left) - top.high
-    picture = fitted(lambda wide: target.irradiance_map(contents.target, width_in=wide), deep)
+    picture = _map(contents.target, deep)
     shown = [top, sheet.picture(picture, 0.0)] if picture else []
-    sheet.flow([*shown, *left], iter([Area(axes, LEFT, FIRST)]))
+    sheet.flow([*shown, *left], sheet.column(pages, axes, LEFT, FIRST))
     right = [sheet.picture(target.profile(contents.target, width_in=COLUMN), 0.05)]
     if report.detail:
         right += [
@@ -108,7 +101,7 @@ def _target_and_detail(pages: list[Figure], contents: Contents) -> None:
             blocks.words(say.limits(report), below=0.0),
             sheet.picture(detail.ledger(report, width_in=COLUMN), 0.0),
         ]
-    sheet.flow(right, iter([Area(axes, RIGHT, FIRST, 0.0)]))
+    sheet.flow(right, sheet.column(pages, axes, RIGHT, FIRST))
 
 
 def _two_columns(rows: list[say.Pair]) -> list[Block]:
@@ -126,13 +119,11 @@ def _two_columns(rows: list[say.Pair]) -> list[Block]:
     ]
 
 
-def fitted(draw: Callable[[float], Figure], high: float) -> Figure | None:
-    """A picture as wide as the column, or as its height allows; None where even the narrowest is too high."""
-    for wide in MAP_WIDTHS:
-        figure = draw(wide)
-        if figure.get_size_inches()[1] <= high:
-            return figure
-    return None
+def _map(view: TargetMap, high: float) -> Figure | None:
+    """The map as wide as the column, or as its height allows; None where that is too narrow for its words."""
+    steep = float(np.ptp(view.v_mm) / np.ptp(view.u_mm))
+    wide = min((high - target.BELOW - target.ABOVE - 0.01) / steep + target.LEFT + target.RIGHT, COLUMN)
+    return target.irradiance_map(view, width_in=wide) if wide >= LEAST_MAP else None
 
 
 def _fit(pages: list[Figure], contents: Contents) -> None:
@@ -140,32 +131,32 @@ def _fit(pages: list[Figure], contents: Contents) -> None:
     report = contents.report
     if contents.section is None:
         return
-    axes = _page(pages, "Fit and passage" if contents.passage else "Fit")
+    axes = sheet.page(pages, "Fit and passage" if contents.passage else "Fit")
     left = [
         blocks.heading("Cross-section, to scale"),
         sheet.picture(body.section(contents.section, width_in=COLUMN), 0.2),
     ]
-    sheet.flow([*left, *pairs(say.fit(report))], iter([Area(axes, LEFT, FIRST)]))
+    sheet.flow([*left, *pairs(say.fit(report))], sheet.column(pages, axes, LEFT, FIRST))
     right = [*pairs(say.passage(report))]
     if contents.passage:
         drawn = sheet.picture(body.passage(contents.passage, width_in=COLUMN), 0.2)
         right = [blocks.heading("The tip in the bend of the bore, to scale"), drawn, *right]
     else:
         right = [blocks.heading("Bending"), *right]
-    sheet.flow(right, iter([Area(axes, RIGHT, FIRST)]))
+    sheet.flow(right, sheet.column(pages, axes, RIGHT, FIRST))
 
 
 def _rest(pages: list[Figure], contents: Contents, told: list[Block]) -> None:
     """Working range, or the color of the light; then, flowing on, the screening, the file and the values."""
     report = contents.report
     if contents.working_range is not None:
-        axes = _page(pages, "Working range, screening and sources")
+        axes = sheet.page(pages, "Working range, screening and sources")
         drawn = working_range.curves(contents.working_range, width_in=COLUMN)
-        sheet.flow([sheet.picture(drawn)], iter([Area(axes, LEFT, FIRST + 0.06)]))
+        sheet.flow([sheet.picture(drawn)], sheet.column(pages, axes, LEFT, FIRST + 0.06))
         said = [blocks.heading("Over the working range")]
         said += [blocks.words("  ".join(say.working_range(contents.working_range)), below=0.14)]
     else:
-        axes = _page(pages, "The light's color, screening and sources")
+        axes = sheet.page(pages, "The light's color, screening and sources")
         drawn = light_pictures.spectra(contents.spectra, width_in=COLUMN)
         left = [
             blocks.heading("Spectra, in and out"),
@@ -173,20 +164,12 @@ def _rest(pages: list[Figure], contents: Contents, told: list[Block]) -> None:
             blocks.heading("In numbers"),
             *pairs(say.light(report)),
         ]
-        sheet.flow(left, iter([Area(axes, LEFT, FIRST)]))
+        sheet.flow(left, sheet.column(pages, axes, LEFT, FIRST))
         said = []
     said += [*told, *values.screening(report), *values.file(contents.file)]
     said += values.values(contents.design.document, contents.design.sourced)
-    sheet.flow(said, _areas(pages, Area(axes, RIGHT, FIRST)))
-
-
-def _areas(pages: list[Figure], first: Area) -> Iterator[Area]:
-    """Columns on and on, a new page for every two."""
-    yield first
-    while True:
-        axes = _page(pages, "Screening, the design file and sources")
-        yield Area(axes, LEFT, FIRST)
-        yield Area(axes, RIGHT, FIRST)
+    more = sheet.areas(pages, Area(axes, RIGHT, FIRST), "Screening, the design file and sources", (LEFT, RIGHT))
+    sheet.flow(said, more)
 
 
 def _footer(page: Figure, report: Report, number: int, count: int) -> None:
@@ -194,9 +177,7 @@ def _footer(page: Figure, report: Report, number: int, count: int) -> None:
     axes, y = page.axes[0], sheet.FOOTER
     look = {"fontsize": FINE, "color": LIGHT.soft, "va": "baseline"}
     axes.plot([SIDE, sheet.WIDE - SIDE], [y + 0.14] * 2, color=LIGHT.grid, linewidth=THIN)
-    name = report.name
-    while width_of(name, FINE) > 3.2:
-        name = name[:-2].rstrip() + "…"
+    name = sheet.trimmed(report.name, FINE, 3.0)
     axes.text(SIDE, y, f"{name}  ·  design {report.design_hash}  ·  version {report.version}", **look)
     axes.text(sheet.WIDE / 2 + 0.9, y, say.SCREENING, ha="center", **look)
     axes.text(sheet.WIDE - SIDE, y, f"page {number} of {count}", ha="right", **look)

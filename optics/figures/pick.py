@@ -9,13 +9,13 @@ from matplotlib.colors import to_hex, to_rgb
 from matplotlib.figure import Figure
 from matplotlib.lines import Line2D
 
-from optics.figures.canvas import chart, three, width_of
+from optics.figures.canvas import chart, three, width_of, wrapped
 from optics.figures.palette import LIGHT, SMALL, TEXT, THIN, WIDTH_IN, Palette
 
 SMALLEST_PT, LARGEST_PT = 6.0, 15.0  # dots of the thinnest and the thickest tube
 SHADES = (0.08, 0.3, 0.52, 0.76, 1.0)  # of cost classes 1 to 5, from paper to ink
 DASHED = (0, (4, 2))
-ROW_IN = 0.34
+ROW_IN, MOST_LEFT_IN = 0.34, 2.2
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,7 +52,9 @@ def front(view: Front, *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) 
     """
     figure, axes = chart(width_in, 4.1, palette, left=0.74, right=0.24, bottom=0.52, top=0.86)
     read, label, log = _upward(view)
-    every = [dot for dot in (*view.picks, *([view.now] if view.now else [])) if np.isfinite(dot.light) and dot.light > 0]
+    every = [
+        dot for dot in (*view.picks, *([view.now] if view.now else [])) if np.isfinite(dot.light) and dot.light > 0
+    ]
     _scales(axes, view, [(dot.light, read(dot)) for dot in every], log)
     axes.set(xlabel=view.light_label, ylabel=label)
     if log and len(view.others):
@@ -79,9 +81,7 @@ def front(view: Front, *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) 
 def shade(cost_class: int, palette: Palette) -> str:
     """The fill of a cost class, even steps from paper to the color of the way back."""
     part = SHADES[cost_class - 1]
-    mixed = [
-        (1 - part) * paper + part * full for paper, full in zip(to_rgb(palette.paper), to_rgb(palette.back))
-    ]
+    mixed = [(1 - part) * paper + part * full for paper, full in zip(to_rgb(palette.paper), to_rgb(palette.back))]
     return to_hex(mixed)
 
 
@@ -150,7 +150,9 @@ def _key(figure: Figure, palette: Palette, view: Front, low: float, high: float)
         x = 0.14
         for look, said in entries:
             if look:
-                figure.add_artist(Line2D([(x + 0.06) / width], [1 - place / height], linestyle="none", marker="o", **look))
+                figure.add_artist(
+                    Line2D([(x + 0.06) / width], [1 - place / height], linestyle="none", **{"marker": "o", **look})
+                )
                 x += 0.2
             figure.text(x / width, 1 - place / height, said, color=palette.ink if look else palette.soft, fontsize=SMALL,
                         va="center_baseline")  # fmt: skip
@@ -175,16 +177,24 @@ def _key(figure: Figure, palette: Palette, view: Front, low: float, high: float)
 
 def failing(counts: Mapping[str, int], *, palette: Palette = LIGHT, width_in: float = WIDTH_IN) -> Figure:
     """What the candidates fail first, in the order of the light: bars of how many, the longest one in the accent."""
-    left = 0.24 + max(width_of(name, TEXT) for name in counts)
+    names = {name: wrapped(name, TEXT, MOST_LEFT_IN) for name in counts}
+    left = 0.3 + max(width_of(name, TEXT, True) for name in names.values())
+    lines = max(name.count("\n") + 1 for name in names.values())
     figure, axes = chart(
-        width_in, ROW_IN * len(counts) + 0.24, palette, left=min(left, 3.2), right=0.7, bottom=0.1, top=0.1
+        width_in,
+        ROW_IN * (1 + 0.35 * (lines - 1)) * len(counts) + 0.24,
+        palette,
+        left=left,
+        right=0.7,
+        bottom=0.1,
+        top=0.1,
     )
     most = max(counts.values())
     for place, (name, count) in enumerate(counts.items()):
         worst = count == most
         axes.barh(place, count, height=0.56, color=palette.accent if worst else palette.back, linewidth=0)
-        axes.text(-0.02 * most, place, name, ha="right", va="center_baseline", fontsize=TEXT, color=palette.ink,
-                  weight="bold" if worst else "normal")  # fmt: skip
+        axes.text(-0.02 * most, place, names[name], ha="right", va="center", fontsize=TEXT, color=palette.ink,
+                  linespacing=1.05, weight="bold" if worst else "normal")  # fmt: skip
         axes.text(count + 0.02 * most, place, f"{count:,}", va="center_baseline", fontsize=TEXT, color=palette.ink)
     axes.set(xlim=(0, most), ylim=(len(counts) - 0.5, -0.5), xticks=[], yticks=[])
     for spine in axes.spines.values():

@@ -16,6 +16,7 @@ from optics.study.sharper import FLAT, Sharpness
 # Inches: of a panel, from one to the next, and margins
 PANEL, GAP, TOP, FOOT, LEFT, EDGE = 1.5, 0.95, 0.36, 0.5, 0.62, 0.2
 CORES = 0.26  # above the panel of the pitch, for the scale of cores
+AWAY, MARKED = 0.13, 0.45  # of the axis: so far names keep from the marks, and from the words on their right
 ROOM = 0.8  # inches of a line that can carry its name
 # Of each number: its name, its unit, the word for more of it, and how a value of it is written
 NAMES = {
@@ -83,39 +84,58 @@ def _has_cores(curve: Sharpness) -> bool:
     return curve.path.endswith("pitch_um")
 
 
+def _share(curve: Sharpness, at: float) -> float:
+    """Place along the axis, 0 to 1."""
+    return float(np.log(at / curve.value[0]) / np.log(curve.value[-1] / curve.value[0]))
+
+
 def _colored(axes: Axes, curve: Sharpness, palette: Palette, wide_in: float) -> None:
-    """The line in runs of one limiting part each; a run that has room carries its name."""
+    """The line in runs of one limiting part each; a run that has room carries its name, away from the marks."""
     x, y, row = curve.value, curve.resolved_lp_mm, 0
+    marks = (_share(curve, curve.now), _share(curve, curve.best))
     for part, group in groupby(curve.limited_by):
         run = slice(row, row + len(list(group)) + 1)  # up to the first of the next
         row = run.stop - 1
         color = part_color(part, palette)
         axes.plot(x[run], y[run], color=color, linewidth=BOLD, solid_capstyle="round")
-        long = wide_in * np.log(x[run][-1] / x[run][0]) / np.log(x[-1] / x[0])
-        if part and long > ROOM and y[run].max() > 0:
-            middle = row - len(x[run]) // 2
-            low = y[middle] < 0.25 * axes.get_ylim()[1]
-            axes.annotate(part, (x[middle], y[middle]), (-3, 6 if low else -6), textcoords="offset points", ha="right",
-                          va="bottom" if low else "top", color=color, fontsize=SMALL)  # fmt: skip
+        ends = [_share(curve, at) for at in x[run][[0, -1]]]
+        if part is None or wide_in * (ends[1] - ends[0]) < ROOM or y[run].max() <= 0:
+            continue
+        for share in (0.5, 0.4, 0.6, 0.3, 0.7, 0.15, 0.85):
+            place = ends[0] + share * (ends[1] - ends[0])
+            at = float(x[0] * (x[-1] / x[0]) ** place)
+            height = float(np.interp(at, x, y))
+            above = height < 0.25 * axes.get_ylim()[1]
+            if place > AWAY and not any(-AWAY < place - mark < (MARKED if above else AWAY) for mark in marks):
+                rises = np.interp(1.1 * at, x, y) > np.interp(at / 1.1, x, y)
+                _name(axes, part, color, (at, height), above, bool(rises) != above)
+                break
+
+
+def _name(axes: Axes, said: str, color: str, at: tuple[float, float], above: bool, right: bool) -> None:
+    """A name beside a line, on the side where it leaves room."""
+    axes.annotate(said, at, (3 if right else -3, 6 if above else -6), textcoords="offset points", color=color,
+                  ha="left" if right else "right", va="bottom" if above else "top", fontsize=SMALL)  # fmt: skip
 
 
 def _marks(axes: Axes, curve: Sharpness, palette: Palette) -> None:
-    x = curve.value
+    """Ring and dot, each with the gap there."""
+    x, y = curve.value, curve.resolved_lp_mm
     ring = {"color": palette.paper, "markeredgecolor": palette.ink, "markersize": 7, "markeredgewidth": LINE}
     axes.plot(curve.now, curve.now_lp_mm, "o", clip_on=False, zorder=5, **ring)
-    share = {at: float(np.log(at / x[0]) / np.log(x[-1] / x[0])) for at in (curve.now, curve.best)}
-    marks = [("now", curve.now, curve.now_lp_mm)]
-    if curve.best_lp_mm > 1.02 * curve.now_lp_mm and abs(share[curve.best] - share[curve.now]) > 0.03:
+    marks, apart = [("now", curve.now, curve.now_lp_mm)], abs(_share(curve, curve.now) - _share(curve, curve.best))
+    if curve.best_lp_mm > 1.02 * curve.now_lp_mm and apart > 0.03:
         dot = {"color": palette.ink, "markersize": 6, "markeredgecolor": palette.paper}
         axes.plot(curve.best, curve.best_lp_mm, "o", clip_on=False, zorder=5, **dot)
         marks.append(("sharpest", curve.best, curve.best_lp_mm))
+    tight = apart < 2 * AWAY and curve.best_lp_mm - curve.now_lp_mm < 0.12 * axes.get_ylim()[1]
     for said, at, height in marks:
         here = int(np.argmin(np.abs(np.log(x / at))))
-        rises = curve.resolved_lp_mm[min(here + 1, len(x) - 1)] > 1.002 * curve.resolved_lp_mm[max(here - 1, 0)]
-        left = share[at] < (0.25 if rises else 0.72)
+        rises = y[min(here + 1, len(x) - 1)] > 1.002 * y[max(here - 1, 0)]
+        left, below = _share(curve, at) < (0.25 if rises else 0.72), said == "now" and len(marks) > 1 and tight
         gap = f"{three(0.5 / height)} mm" if height > 0 else "nothing"
-        axes.annotate(f"{said} {gap}", (at, height), (5 if left else -5, 6), textcoords="offset points", va="bottom",
-                      ha="left" if left else "right", color=palette.ink, fontsize=SMALL,
+        axes.annotate(f"{said} {gap}", (at, height), (5 if left else -5, -7 if below else 6), textcoords="offset points",
+                      va="top" if below else "bottom", ha="left" if left else "right", color=palette.ink, fontsize=SMALL,
                       weight="bold" if said == "now" else "normal")  # fmt: skip
 
 
@@ -136,6 +156,8 @@ def _cores(axes: Axes, curve: Sharpness, palette: Palette) -> None:
     places = np.exp(np.interp(np.log(counts), np.log(cores[::-1]), np.log(curve.value[::-1])))
     look = {"textcoords": "offset points", "color": palette.soft, "fontsize": SMALL}
     for place, count in zip(places, counts):
+        if _share(curve, place) < 0.08:  # the word stands there
+            continue
         axes.annotate(f"{count:,.0f}", (place, 1), (0, 4), xycoords=("data", "axes fraction"), ha="center", **look)
         axes.plot([place, place], [1, 1.02], transform=axes.get_xaxis_transform(), color=palette.soft, linewidth=THIN,
                   clip_on=False)  # fmt: skip

@@ -132,7 +132,7 @@ def bend_matrix(
     edges counts in the outermost bin on that side.
     Same law, ranges and references as bend_transmission, which is the mean of the rows (but for what leaves
     a short sharp bend unguided: up to 0.03, beyond X 0.5 and below 25 degrees). From bend to bend the
-    skewness is carried by three moments: five bends alike come within 0.01 of the trace. One design gives
+    skewness is carried by three moments: five bends alike come within 0.012 of the trace. One design gives
     the same numbers alone and in a batch.
     """
     edges, na, index, core = (np.asarray(part, float) for part in (sine2_edges, na, core_index, core_um))

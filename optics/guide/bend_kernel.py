@@ -4,7 +4,7 @@ s is sin^2 of the angle over that of the guided limit, (n1 sin theta/NA)^2; l th
 x y' - y x'. Both are kept by a straight fiber. In the bend (R - the axis radius in core radii, m =
 NA^2/n1^2, X = 2/(R m)) a ray that moves from u to u' across the core ends with
 R ln((R + u')/(R + u)) = zeta(s') - zeta(s), zeta(s) = -ln(1 - m s)/(X m), exactly: the step in zeta is
-bounded by SPAN = R ln((R + 1)/(R - 1)) whatever the bend, and light with zeta(s) < zeta(1) - SPAN
+bounded by span = R ln((R + 1)/(R - 1)) whatever the bend, and light with zeta(s) < zeta(1) - span
 cannot be lost. So everything is tabulated over the distance to the limit in zeta.
 
 The state of the light behind a bend is, for each s, a distribution over the skewness; it is carried as
@@ -56,7 +56,7 @@ def span(x, m):
 
 
 def safe_level(x, m):
-    """s below which no ray can reach the limit in the bend: zeta(s) = zeta(1) - SPAN (negative if there is none)."""
+    """s below which no ray can reach the limit in the bend: zeta(s) = zeta(1) - span (negative if there is none)."""
     return -np.expm1(np.log1p(-m) + x * m * span(x, m)) / m
 
 
@@ -207,7 +207,7 @@ def at_level(columns: np.ndarray, level: np.ndarray) -> np.ndarray:
 
 
 def columns(x, share, turn):
-    """Survival [design, level], the share of it that a straight fiber guides, and (how much of the bend acts, scores).
+    """Survival [design, level], the place in the table (for guided_columns), and how much of the bend acts, 0 to 1.
 
     The edges of the table: angles below the first node blend toward no bend at all; weaker bends lose as
     Xe^1.4; beyond the sharpest nothing survives (the mode-count bound, X above 1); longer bends stay at

@@ -115,7 +115,8 @@ def answer(report: Report) -> None:
 
 def helps_most(found: tuple[Help, ...], report: Report, pitch: Sharpness) -> None:
     little = words.pitch_limit_words(pitch) if report.summary.limited_by == "lattice" else ""
-    st.markdown(f"**{plain(words.help_words(found))}** {plain(little)}")
+    wanted = {line.name: line.wanted for line in report.needs if not line.met}.get("smallest_gap_mm")
+    st.markdown(f"**{plain(words.help_words(found, wanted))}** {plain(little)}")
 
 
 def needs(report: Report) -> None:

@@ -50,14 +50,16 @@ def limit_words(report: Report) -> str:
     return f"{said} limits: {limit_reason(part)}."
 
 
-def help_words(found: tuple[Help, ...]) -> str:
-    """What would help most, in one clause."""
+def help_words(found: tuple[Help, ...], wanted_mm: float | None = None) -> str:
+    """What would help most, in one clause; and whether any single change reaches the gap that is wanted."""
     kept = [help for help in found if not help.breaks]
     if not kept:
         return "No single change that was tried shows clearly finer detail without giving up a need."
     best = kept[0]
     field = f" over a field of {number(best.field_of_view_deg)}°" if leads(best) == FOCAL else ""
-    return f"Most would come from {change_words(best, short=True)}: a gap of {number(best.smallest_gap_mm)} mm{field}."
+    short = wanted_mm is not None and min(help.smallest_gap_mm for help in found) > wanted_mm
+    none = f"; no single change that was tried reaches the {number(wanted_mm)} mm asked" if short else ""
+    return f"Most would come from {change_words(best, short=True)}: a gap of {number(best.smallest_gap_mm)} mm{field}{none}."
 
 
 def pitch_limit_words(curve: Sharpness) -> str:
@@ -154,7 +156,7 @@ def viewer_rows(found: Viewing) -> Columns:
             "pixels a core pitch",
             found.pixels_per_pitch,
             "",
-            "✗ they beat with the cores" if beat else "✓ at least 2.31",
+            "✗ they beat with the cores" if beat else _enough(found),
         ),
         ("coarsest beat", found.beat_mm, "mm", "period at the target, at the worst turn of the camera"),
         ("eyepiece enlarges", found.eyepiece_magnification, "times", "against the naked eye at 250 mm"),
@@ -178,7 +180,7 @@ def spot_words(found: Viewing) -> str:
         return "No round spot of this contrast is told from its surround in the signal that there is."
     return (
         f"A round pit of the same contrast is told from its surround from {number(found.spot_mm)} mm across: there the light "
-        "counted over its blurred image outweighs the noise as often as asked (Rose). One that falls between cores may be missed."
+        "counted over its blurred image outweighs the noise by the factor asked (Rose). One between cores may be missed."
     )
 
 

@@ -1,5 +1,6 @@
 """A search in words for the screen: what is asked, the answer, the candidates and what they lack."""
 
+import re
 from dataclasses import dataclass
 
 from optics.fiberscope import SOLVE, Fiberscope
@@ -11,11 +12,18 @@ from optics.study.pick_needs import SHORT
 from optics.study.smallest_change import Change
 from optics.ui.margins_words import limit
 from optics.ui.names import field_name, place, preset_name
-from optics.ui.rows import margin
-from optics.ui.words import exact, number, plain, sentence_case, unit, with_unit
+from optics.ui.rows import Columns, columns, margin
+from optics.ui.words import exact, number, plain, sentence_case, unit
 
 PORTS = {"annulus": "ring", "placed": "placed ports", "crescent": "crescent"}
-AXES = {"guide": "light guides", "lamp": "lamps", "ports": "shapes of light ports", "image": "image parts with their lenses"}
+AXES = {
+    "guide": "light guides",
+    "lamp": "lamps",
+    "ports": "shapes of light ports",
+    "image": "image parts with their lenses",
+}
+RELAXED = {"body.passage.bore_mm": "the bore", "body.section.outer_diameter_mm": "the tube's outer diameter"}
+COST = "1 cheap, 5 dear, by plain rules of the trade; no price stands behind them."
 CHOSEN = "field_of_view_deg"  # the lens is chosen for it, so its margin says nothing
 
 
@@ -29,7 +37,9 @@ class Parts:
     lamp: str
 
     def __str__(self) -> str:
-        return "; ".join(part for part in (self.guide, " ".join(filter(None, (self.image, self.lens))), self.lamp) if part)
+        return "; ".join(
+            part for part in (self.guide, " ".join(filter(None, (self.image, self.lens))), self.lamp) if part
+        )
 
 
 def parts(document: Document, scope: Fiberscope) -> Parts:
@@ -77,10 +87,49 @@ def asked(scope: Fiberscope) -> str:
     return "**Asked\\:** " + plain("; ".join(said)) + "."
 
 
-def tried(sizes: dict[str, int]) -> str:
-    """What a search goes through."""
-    said = [f"{count} {AXES.get(name, name)}" for name, count in sizes.items()]
-    return f"{', '.join(said[:-1])} and {said[-1]}" if len(said) > 1 else said[0]
+@dataclass(frozen=True, slots=True)
+class Tried:
+    """One axis of a search: how many choices, and what they are."""
+
+    count: int
+    name: str
+    what: str
+
+
+def tried(axis: str, made: list[Parts]) -> Tried:
+    """The choices of one axis in words, each once."""
+    read = {"guide": lambda one: one.guide.split(",")[0], "lamp": lambda one: one.lamp, "image": lambda one: one.image}
+    said = [read[axis](one) if axis in read else one.guide.rpartition(", ")[2] for one in made]
+    if axis in ("guide", "image"):
+        said = gathered(said)
+    return Tried(max(len(made) - 1, 1), AXES.get(axis, axis), "; ".join(dict.fromkeys(said)))
+
+
+def gathered(said: list[str]) -> list[str]:
+    """Sizes of the same part behind one another.
+
+    >>> gathered(["glass 1 mm", "glass 2 mm", "chip"])
+    ['glass: 1, 2 mm', 'chip']
+    """
+    sizes: dict[str, list[str]] = {}
+    for one in dict.fromkeys(said):
+        found = re.fullmatch(r"(.+) ([\d.]+) mm", one)
+        sizes.setdefault(found[1] if found else one, []).extend([found[2]] if found else [])
+    return [f"{name}: {', '.join(many)} mm" if many else name for name, many in sizes.items()]
+
+
+def search_words(found: tuple[Tried, ...]) -> str:
+    said = [f"{each.count} {each.name if each.count > 1 else 'of the ' + each.name}" for each in found]
+    listed = f"{', '.join(said[:-1])} and {said[-1]}" if len(said) > 1 else said[0]
+    return (
+        f"A search puts together {listed}, sends each combination through the whole chain, and keeps those that no other "
+        "beats in everything: detail, light, outer diameter, bend radius and cost class. The job stays as the sketch has it."
+    )
+
+
+def tried_table(found: tuple[Tried, ...]) -> Columns:
+    rows = [(f"{each.count} {each.name}", plain(each.what)) for each in found]
+    return columns(("tried", "the design's own first"), rows)
 
 
 # The answer
@@ -104,6 +153,17 @@ def plainest(first: Pick, made: Parts) -> str:
     outer = first.summary.outer_diameter_mm
     outer = "" if outer is None else f", of those the thinnest with {number(outer)} mm"
     return f"**The plainest** (cost class {first.cost_class}{outer})\\: {plain(str(made))}. {plain(gives(first))}."
+
+
+def best(row: int, name: str, one: Pick, made: Parts) -> str:
+    """A pick that is best in something: what it is, and its numbers."""
+    summary = one.summary
+    said = [] if summary.smallest_gap_mm is None else [f"gap {number(summary.smallest_gap_mm)} mm"]
+    light = summary.target_center_lux
+    said.append(f"{number(one.delivered_lm)} lm" if light is None else f"{number(light)} lx")
+    said += [] if summary.outer_diameter_mm is None else [f"tube {number(summary.outer_diameter_mm)} mm"]
+    said.append(f"cost class {one.cost_class}")
+    return f"**{row} · {sentence_case(name)}**\\: {plain(', '.join(said))}  \n:gray[{plain(str(made))}]"
 
 
 def gives(one: Pick) -> str:
@@ -135,7 +195,7 @@ def how(found: Picked, seconds: float) -> str:
         said += f"The candidates are a seeded choice of {found.combinations:,} combinations. "
     if found.impossible:
         said += f"{found.impossible:,} more cannot be built. "
-    return said + "Cost classes go by plain rules of the trade; no price stands behind them."
+    return f"{said}Cost classes\\: {COST}"
 
 
 def failing(found: Picked) -> dict[str, int]:
@@ -147,9 +207,12 @@ def failing(found: Picked) -> dict[str, int]:
 
 
 def change(moved: Change) -> str:
-    """A number moved, in words: 'Bundle, diameter 1.92 mm instead of 2 mm'."""
-    name = moved.path.rpartition(".")[2]
-    return f"{place(moved.path)} {with_unit(moved.after, name)} instead of {with_unit(moved.before, name)}"
+    """A number moved, in words: 'Bundle, diameter 1.92 mm instead of 2 mm'; as many digits as tell the two apart."""
+    digits = next((n for n in range(3, 9) if f"{moved.after:.{n}g}" != f"{moved.before:.{n}g}"), 9)
+    sign = unit(moved.path.rpartition(".")[2])
+    return (
+        f"{place(moved.path)} {number(moved.after, digits)} instead of {number(moved.before, digits)} {sign}".rstrip()
+    )
 
 
 def nearly(failed: Failed, made: Parts) -> str:
@@ -163,20 +226,21 @@ def nearly(failed: Failed, made: Parts) -> str:
     return f"{plain(sentence_case(failed.first_reason))}.  \n{help}  \n:gray[{plain(str(made))}]"
 
 
-def relaxed(found: Picked) -> str:
-    """What to relax so that something does the job."""
+def relaxed(found: Picked, other_way: bool) -> str:
+    """What to relax so that something does the job; `other_way`: one changed number does it too."""
     moved = found.nearest_relaxation
     if moved is None:
         return (
-            "No need, relaxed, would help: nothing is resolved by any candidate, or no material stands the job. "
-            "More light, more contrast or another subject is needed first."
+            ""
+            if other_way
+            else "No need, relaxed, would help: nothing is resolved by any candidate, or no material stands the "
+            "job. More light, more contrast or another subject is needed first."
         )
-    said = [f"{_relaxes(each)}" for each in moved.relax]
-    return f"**Relax {' and '.join(said)}, and one does.**"
+    said = " and ".join(plain(_relaxes(each)) for each in moved.relax)
+    return f"**{'Or relax' if other_way else 'Relax'} {said}, and one does{'' if other_way else ' the job'}.**"
 
 
 def _relaxes(moved: Change) -> str:
-    name = moved.path.rpartition(".")[2]
-    what = field_name(name, moved.path) if moved.path.startswith("needs.") else place(moved.path)
-    sign = unit(name)
-    return plain(f"{what[:1].lower() + what[1:]} from {number(moved.before, 4)} to {number(moved.after, 4)} {sign}".rstrip())
+    what = RELAXED.get(moved.path) or NAMES[moved.path.removeprefix("needs.")]
+    sign = unit(moved.path.rpartition(".")[2])
+    return f"{what} from {number(moved.before, 4)} to {number(moved.after, 4)} {sign}".rstrip()

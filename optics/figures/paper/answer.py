@@ -6,11 +6,12 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Rectangle
 
-from optics.figures.paper import origin
-from optics.figures.paper import blocks, sheet
-from optics.figures.paper import words as say
+from optics.figures.canvas import width_of
 from optics.figures.palette import LIGHT, THIN
-from optics.figures.paper.sheet import BODY, BOTTOM, FINE, HIGH, SIDE, WIDE, Area, Block, Cell
+from optics.figures.paper import blocks, origin, sheet, verdict
+from optics.figures.paper import words as say
+from optics.figures.paper.blocks import Cell
+from optics.figures.paper.sheet import BODY, BOTTOM, FINE, HIGH, SIDE, WIDE, Block
 from optics.report.answer import Report
 from optics.report.verdict import sentence
 from optics.study.smallest_change import Change
@@ -25,24 +26,23 @@ BAR, FULL = 1.2, 1.0  # inches of the margin's bar to each end; the margin that 
 
 def answer(pages: list[Figure], report: Report, sourced: Mapping[str, Sourced], change: Change | None) -> list[Block]:
     """The first page; hands back the caveats for which it had no room."""
-    figure, axes = sheet.page(report.name)
-    pages.append(figure)
+    axes = sheet.page(pages, report.name)
     axes.text(WIDE - SIDE, HIGH - sheet.TOP - 0.05, f"Sizing report, {report.setting} use", fontsize=BODY,
               color=LIGHT.soft, ha="right", va="top")  # fmt: skip
     top = sheet.FIRST - 0.05
-    first, rest = say.parted(sentence(report))
+    first, rest = verdict.parted(sentence(report))
     mark = {True: say.MET, False: say.SHORT, None: say.OPEN}[report.summary.needs_met]
     ink = LIGHT.accent if report.summary.needs_met is False else LIGHT.ink
     said = [blocks.words(f"{mark} {first}", LEFT, size=ANSWER, bold=True, color=ink, below=0.05)]
     said += [blocks.words(rest, LEFT, size=11.0, below=0.22)] if rest else [sheet.space(0.15)]
-    said += [*_metrics(say.headline(report)), sheet.space(0.1), *_needs(report)]
-    if told := say.change(report.summary.needs_met, change):
+    said += [*_metrics(verdict.headline(report)), sheet.space(0.1), *_needs(report)]
+    if told := verdict.change(report.summary.needs_met, change):
         said += [sheet.space(0.08), blocks.words(told, LEFT, size=9.0)]
-    sheet.flow(said, iter([Area(axes, SIDE, top)]))
+    sheet.flow(said, sheet.column(pages, axes, SIDE, top))
     caution, screen = _caution(report), [blocks.heading("What to know about these numbers", RIGHT)]
-    y = sheet.flow([caution], iter([Area(axes, ASIDE, top)]))
+    y = sheet.flow([caution], sheet.column(pages, axes, ASIDE, top))
     screen += [blocks.words(origin.softness(sourced), RIGHT)] if sourced else []
-    return _caveats(axes, report, screen, y)
+    return _caveats(pages, axes, report, screen, y)
 
 
 def _metrics(numbers: list[tuple[str, str, str]]) -> list[Block]:
@@ -53,7 +53,8 @@ def _metrics(numbers: list[tuple[str, str, str]]) -> list[Block]:
         def draw(axes: Axes, x: float, y: float) -> None:
             for name, number, meaning in shown:
                 axes.text(x, y, name, fontsize=BODY, color=LIGHT.soft, va="top")
-                axes.text(x, y - 0.18, number, fontsize=NUMBER, weight="bold", color=LIGHT.ink, va="top")
+                size = NUMBER * min(1.0, (wide - 0.1) / width_of(number, NUMBER, True))
+                axes.text(x, y - 0.18, number, fontsize=size, weight="bold", color=LIGHT.ink, va="top")
                 for turn, line in enumerate(blocks.wrapped(meaning, FINE - 0.4, wide - 0.12)):
                     axes.text(x, y - 0.47 - turn * 0.115, line, fontsize=FINE - 0.4, color=LIGHT.soft, va="top")
                 x += wide
@@ -67,12 +68,12 @@ def _needs(report: Report) -> list[Block]:
     """Needs, short ones first, with their margin as a number and as a bar."""
     if not report.needs:
         return [blocks.heading("Needs", LEFT), blocks.words("No needs are set in this design.", LEFT)]
-    widths = (0.26, 1.7, 1.42, 1.12, 0.9, LEFT - 5.4)
+    widths = (0.26, 1.66, 1.42, 1.06, 1.02, LEFT - 5.42)
     head = blocks.head_row(
         [Cell(""), Cell("need"), Cell("wanted"), Cell("got"), Cell("margin", right=True), Cell("")], widths
     )
     rows = [blocks.heading("Needs and margins", LEFT), head]
-    for need in say.needs(report):
+    for need in verdict.needs(report):
         ink = LIGHT.ink if need.met else LIGHT.accent
         cells = [
             Cell(need.mark, True, ink),
@@ -84,13 +85,16 @@ def _needs(report: Report) -> list[Block]:
         ]
         rows.append(
             _barred(
-                blocks.row(cells, widths, size=9.0, pad=0.07, least=0.25), need, sum(widths[:5]) + 0.05, widths[5] - 0.05
+                blocks.row(cells, widths, size=9.0, pad=0.07, least=0.25),
+                need,
+                sum(widths[:5]) + 0.05,
+                widths[5] - 0.05,
             )
         )
     return rows
 
 
-def _barred(row: Block, need: say.Need, left: float, wide: float) -> Block:
+def _barred(row: Block, need: verdict.Need, left: float, wide: float) -> Block:
     """A row with its margin as a bar from the middle: to the right met, to the left short, full at 100 %."""
 
     def draw(axes: Axes, x: float, y: float) -> None:
@@ -128,7 +132,7 @@ def _caution(report: Report) -> Block:
     return Block(high + 0.2, draw)
 
 
-def _caveats(axes: Axes, report: Report, screen: list[Block], y: float) -> list[Block]:
+def _caveats(pages: list[Figure], axes: Axes, report: Report, screen: list[Block], y: float) -> list[Block]:
     """Caveats below the caution, as many as there is room for; the rest as blocks for a later page."""
     items = [item for item in report.caveats if item.where not in ("setting", "sources")]
     done = 0
@@ -138,7 +142,7 @@ def _caveats(axes: Axes, report: Report, screen: list[Block], y: float) -> list[
             break
         screen.append(block)
         done += 1
-    sheet.flow(screen, iter([Area(axes, ASIDE, y)]))
+    sheet.flow(screen, sheet.column(pages, axes, ASIDE, y))
     left = [_caveat(item.where, say.typeset(item.text), sheet.COLUMN) for item in items[done:]]
     return [blocks.heading("More to know about these numbers"), *left] if left else []
 
@@ -155,10 +159,11 @@ def _caveat(where: str, text: str, width: float) -> Block:
 
 
 def table_of_contents(pages: list[Figure]) -> None:
-    """What stands on which page, in one line at the foot of the first."""
+    """What stands on which page, in a line or two at the foot of the first."""
     titles: dict[str, list[int]] = {}
     for number, page in enumerate(pages[1:], 2):
-        titles.setdefault(page.axes[0].texts[0].get_text(), []).append(number)
+        title = page.axes[0].texts[0].get_text()
+        titles.setdefault(title if "ontinued" not in title else list(titles)[-1], []).append(number)
     told = [f"{'–'.join(map(str, sorted({on[0], on[-1]})))} {title}" for title, on in titles.items()]
-    axes = pages[0].axes[0]
-    axes.text(SIDE, BOTTOM - 0.02, "Page  " + "   ·   ".join(told), fontsize=FINE, color=LIGHT.soft, va="bottom")
+    block = blocks.words("Pages: " + "  ·  ".join(told), sheet.ROOM, size=FINE, color=LIGHT.soft, below=0.0)
+    block.draw(pages[0].axes[0], SIDE, BOTTOM + block.high - 0.02)

@@ -4,10 +4,11 @@ from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.patches import Rectangle
 
-from optics.figures.paper import blocks, sheet
 from optics.figures.canvas import lost, three
 from optics.figures.palette import LIGHT, THIN
-from optics.figures.paper.sheet import BODY, FINE, FIRST, GAP, ROOM, SIDE, Area, Block, Cell
+from optics.figures.paper import blocks, sheet
+from optics.figures.paper.blocks import Cell
+from optics.figures.paper.sheet import BODY, FINE, FIRST, GAP, ROOM, SIDE, Area, Block
 from optics.figures.paper.words import typeset
 from optics.figures.strip import EDGE, light_strip
 from optics.figures.strip_words import outward
@@ -15,24 +16,19 @@ from optics.report.answer import Report
 from optics.units import db_from_transmission
 
 STEP, LEFT_LM, LOSS, BAR = 1.3, 0.8, 0.75, 2.6  # widths of the columns, inches; the reasons take the rest
-LEAST, MOST = 0.148, 0.2  # height of a row, inches
+LEAST, MOST = 0.126, 0.2  # height of a row, inches
 
 
 def light(pages: list[Figure], report: Report) -> None:
     """The strip over the page's width, the budget below it; on a page more where it is very long."""
-    figure, axes = sheet.page("The light, from the lamp on")
-    pages.append(figure)
+    axes = sheet.page(pages, "The light, from the lamp on")
     strip = light_strip(report, width_in=ROOM + 2 * EDGE)
-    y = sheet.flow([sheet.picture(strip, 0.02)], iter([Area(axes, SIDE - EDGE, FIRST + 0.12)]))
-    sheet.flow(budget(report, y - sheet.BOTTOM), _areas(pages, Area(axes, SIDE, y)))
-
-
-def _areas(pages: list[Figure], first: Area):
-    yield first
-    while True:
-        figure, axes = sheet.page("The light, continued")
-        pages.append(figure)
-        yield Area(axes, SIDE, FIRST)
+    y = sheet.flow(
+        [sheet.picture(strip, 0.02)],
+        sheet.column(pages, axes, SIDE - EDGE, FIRST + 0.2),
+    )
+    more = sheet.areas(pages, Area(axes, SIDE, y), "The light, continued", (SIDE,))
+    sheet.flow(budget(report, y - sheet.BOTTOM), more)
 
 
 def budget(report: Report, high: float) -> list[Block]:
@@ -40,11 +36,11 @@ def budget(report: Report, high: float) -> list[Block]:
     steps, legs = report.light.steps, outward(report)
     least = min(max(high / (len(steps) + 2.3), LEAST), MOST)
     widths = (STEP, LEFT_LM, LOSS, GAP / 2, BAR, GAP / 2, ROOM - STEP - LEFT_LM - LOSS - BAR - GAP)
-    size = BODY if least > 0.16 else FINE + 0.3
+    size = BODY if least > 0.16 else FINE + 0.3 if least > 0.14 else FINE
     scale_db = max(float(db_from_transmission(max(legs[-1].left if legs else 1.0, 1e-12))), 1.0)
     names = (Cell("step"), Cell("lm after", right=True), Cell("loss", right=True), Cell(""))
     top = blocks.head_row(
-        [*names, Cell(f"light lost; the bar's width is {three(scale_db)} dB"), Cell(""), Cell("because")], widths
+        [*names, Cell(f"light lost, whole width {three(scale_db)} dB"), Cell(""), Cell("because")], widths
     )
     rows = [top]
     before = 1.0
@@ -59,11 +55,12 @@ def budget(report: Report, high: float) -> list[Block]:
             Cell(""), Cell(""), Cell(""),
             Cell(typeset(step.because), color=color),
         ]  # fmt: skip
-        row = blocks.row(cells, widths, size=size, pad=0.02, least=least)
+        row = blocks.row(cells, widths, size=size, pad=0.0, least=least)
         rows.append(_barred(row, before, after, scale_db, marked, sum(widths[:4])))
         before = after
     found = report.light
-    said = f"{three(found.delivered_w)} W, {three(found.transmission * 100)} % of the lamp; 95 % of it within NA {found.exit_na:.3f}"
+    share = f"{three(found.delivered_w)} W, {three(found.transmission * 100)} % of the lamp"
+    said = f"{share}; 95 % of it within NA {found.exit_na:.3f}"
     cells = [Cell("delivered", True), Cell(three(found.delivered_lm), True, right=True),
              Cell(lost(found.transmission), True, right=True), Cell(""), Cell(""), Cell(""), Cell(said, True)]  # fmt: skip
     return [*rows, blocks.row(cells, widths, size=size, pad=0.02, least=least, rule=False)]
@@ -83,12 +80,7 @@ def _barred(row: Block, before: float, after: float, scale_db: float, marked: bo
         start, end = sorted((place(before), place(after)))
         color = LIGHT.accent if marked else LIGHT.light
         axes.add_patch(Rectangle((x + start, low), end - start, high, facecolor=color, linewidth=0))
-        axes.plot(
-            [x + place(after)] * 2,
-            [low - 0.015, low + high + 0.015],
-            color=LIGHT.soft,
-            linewidth=THIN,
-            solid_capstyle="butt",
-        )
+        mark = [low - 0.015, low + high + 0.015]
+        axes.plot([x + place(after)] * 2, mark, color=LIGHT.soft, linewidth=THIN, solid_capstyle="butt")
 
     return Block(row.high, draw, row.keep)

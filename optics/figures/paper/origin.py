@@ -9,7 +9,7 @@ from optics.presets import Document, value_at
 from optics.tables import UNSOURCED, Sourced, sources
 
 SOFT, SOFT_BASES = "≈", ("assumed", "remembered")
-BOOKS = {"trade": "common practice", "assumed": "assumed", "own_scenario": "given by this design"}
+BOOKS = {"trade": "practice", "assumed": "", "own_scenario": "given by this design"}
 ORDER = ("", "source", "guide", "scene", "image", "viewer", "body", "needs")
 
 Pair = tuple[str, str]
@@ -97,7 +97,7 @@ def source(found: Sourced) -> str:
     title = BOOKS[found.source] if found.source in UNSOURCED else ", ".join(
         str(book[key]) for key in ("title", "year") if book.get(key)
     )  # fmt: skip
-    return f"{title or found.source}: {found.at}" if found.at else title or found.source
+    return ": ".join(filter(None, (title, found.at)))
 
 
 def exact(value: Any) -> str:

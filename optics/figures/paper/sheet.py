@@ -5,21 +5,22 @@ straight onto the page: its lines stay lines, its letters letters.
 """
 
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 from matplotlib.artist import Artist
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 from matplotlib.transforms import Bbox
 
-from optics.figures.canvas import POINTS_IN, sheet, width_of
-from optics.figures.palette import LIGHT, THIN
+from optics.figures.canvas import sheet, width_of
+from optics.figures.palette import LIGHT
 
 # A4, lying: inches
 WIDE, HIGH = 11.69, 8.27
 SIDE, TOP, HEAD, BOTTOM, FOOTER, GAP = 0.6, 0.46, 0.42, 0.56, 0.33, 0.36
 ROOM = WIDE - 2 * SIDE
 COLUMN = (ROOM - GAP) / 2
+TITLE_ROOM = ROOM - 2.4
 FIRST = HIGH - TOP - HEAD  # where what stands below the title begins
 FINE, BODY, HEADING, TITLE = 7.2, 8.5, 10.5, 15.0  # points of type
 
@@ -49,17 +50,17 @@ class Area:
     bottom: float = BOTTOM
 
 
-class _Inset(Artist):
+class Inset(Artist):
     """A figure drawn onto another one, its lower left corner at a place in inches."""
 
     def __init__(self, inner: Figure, left: float, bottom: float) -> None:
         super().__init__()
-        self._inner, self._box = inner, Bbox.from_bounds(left, bottom, *inner.get_size_inches())
+        self._inner, self.box = inner, Bbox.from_bounds(left, bottom, *inner.get_size_inches())
         inner.patch.set_visible(False)
 
     def draw(self, renderer) -> None:
         self._inner.dpi = self.get_figure(root=True).dpi
-        self._inner.bbox_inches.set(self._box)
+        self._inner.bbox_inches.set(self.box)
         self._inner.draw(renderer)
 
 
@@ -67,8 +68,19 @@ def page(pages: list[Figure], title: str) -> Axes:
     """One page more, empty but for its title; its sheet in inches."""
     figure, axes = sheet(WIDE, HIGH, LIGHT)
     pages.append(figure)
-    axes.text(SIDE, HIGH - TOP, title, fontsize=TITLE, weight="bold", color=LIGHT.ink, va="top")
+    size = max(TITLE * min(1.0, TITLE_ROOM / width_of(title, TITLE, True)), HEADING)
+    said = trimmed(title, size, TITLE_ROOM, True)
+    axes.text(SIDE, HIGH - TOP, said, fontsize=size, weight="bold", color=LIGHT.ink, va="top")
     return axes
+
+
+def trimmed(text: str, size: float, room_in: float, bold: bool = False) -> str:
+    """A text that fits on one line, the end left off where it must be."""
+    if width_of(text, size, bold) <= room_in:
+        return text
+    while len(text) > 1 and width_of(f"{text}…", size, bold) > room_in:
+        text = text[:-1].rstrip()
+    return f"{text}…"
 
 
 def space(high: float) -> Block:
@@ -77,7 +89,7 @@ def space(high: float) -> Block:
 
 def picture(figure: Figure, below: float = 0.1) -> Block:
     high = float(figure.get_size_inches()[1])
-    return Block(high + below, lambda axes, x, y: axes.figure.add_artist(_Inset(figure, x, y - high)) and None)
+    return Block(high + below, lambda axes, x, y: axes.figure.add_artist(Inset(figure, x, y - high)) and None)
 
 
 def flow(blocks: Sequence[Block], areas: Iterator[Area]) -> float:
@@ -119,3 +131,8 @@ def areas(pages: list[Figure], first: Area, title: str, lefts: Sequence[float]) 
         axes = page(pages, title)
         for left in lefts:
             yield Area(axes, left, FIRST)
+
+
+def column(pages: list[Figure], axes: Axes, left: float, top: float) -> Iterator[Area]:
+    """One column of a page; what it does not hold goes to pages of its own."""
+    return areas(pages, Area(axes, left, top), "Continued", (left,))

@@ -3,12 +3,12 @@
 from collections.abc import Mapping
 from dataclasses import replace
 
-from optics.figures.paper import origin
-from optics.figures.paper import blocks, sheet
-from optics.figures.paper import words as say
 from optics.figures.canvas import width_of
 from optics.figures.palette import LIGHT
-from optics.figures.paper.sheet import COLUMN, FINE, Block, Cell
+from optics.figures.paper import blocks, origin, sheet
+from optics.figures.paper import words as say
+from optics.figures.paper.blocks import Cell
+from optics.figures.paper.sheet import COLUMN, FINE, Block
 from optics.presets import Document
 from optics.report.answer import Report
 from optics.tables import Sourced
@@ -55,7 +55,7 @@ def values(document: Document, sourced: Mapping[str, Sourced]) -> list[Block]:
     head = blocks.head_row(names, VALUES, SMALLEST)
     found = [
         blocks.heading("Every value and where it comes from"),
-        blocks.words(f"{origin.softness(sourced)} Common practice has no source.", size=FINE),
+        blocks.words(f"{origin.softness(sourced)} Practice: common practice, without a source.", size=FINE),
         head,
     ]
     for table in origin.tables(document, sourced):
@@ -68,8 +68,7 @@ def values(document: Document, sourced: Mapping[str, Sourced]) -> list[Block]:
         if table.defaults:
             told = ", ".join(f"{name} {value}" for name, value in table.defaults)
             found.append(replace(_aside(origin.SOFT, f"left at the default, assumed: {told}"), again=head))
-        for value in table.values:
-            found.append(replace(_value(value), again=head))
+        found += [replace(_value(value), again=head) for value in table.values]
     return found
 
 

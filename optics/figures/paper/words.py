@@ -1,21 +1,16 @@
 """What the PDF report says: rows of words for its tables, from one design's answer. No drawing."""
 
 import re
-from dataclasses import dataclass
 from typing import Any
 
 from optics.figures.canvas import seconds, three
-from optics.needs import AT_MOST
 from optics.report.answer import ExposureLine, Report
 from optics.report.reasons import limit_reason
-from optics.report.verdict import NAMES, UNITS
-from optics.study.smallest_change import Change
+from optics.report.verdict import NAMES
 from optics.study.working_range import RangeCurves
-from optics.units import unit_of
 
 MET, SHORT, OPEN = "✓", "✗", "○"
 SCREENING = "A screening estimate: it certifies nothing."
-
 RAISED = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 Pair = tuple[str, str]
@@ -111,7 +106,7 @@ def fit(report: Report) -> list[Pair]:
         [
             ("outer diameter", found.outer_diameter_mm, "mm"),
             ("lumen", found.lumen_mm, "mm"),
-            ("free area", found.free_area_mm2, "mm²"),
+            ("free area", "none" if found.free_area_mm2 <= 0 else found.free_area_mm2, "mm²"),
             ("light area, fibers", found.light_area_mm2, "mm²"),
             ("whole fibers", f"{found.fiber_count:,}", ""),
         ]
@@ -164,9 +159,10 @@ def screening(line: ExposureLine) -> tuple[str, str, str, str, str]:
 
 
 def screening_count(report: Report) -> str:
+    """How many lines are over, below, and open; what that is worth."""
     marks = [screened(line) for line in report.exposure]
+    over, below, unknown = (marks.count(mark) for mark in (SHORT, MET, OPEN))
     return (
-        f"{marks.count(SHORT)} of {len(marks)} lines exceed their screening figure {SHORT}, {marks.count(MET)} stay below it {MET}, "
-        f"{marks.count(OPEN)} have no figure or no data {OPEN}. {SCREENING} The current edition of each standard and "
-        "measurement decide."
+        f"{over} of {len(marks)} lines exceed their screening figure {SHORT}, {below} stay below it {MET}, {unknown} have no "
+        f"figure or no data {OPEN}. {SCREENING} The current edition of each standard and measurement decide."
     )

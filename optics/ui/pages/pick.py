@@ -2,8 +2,10 @@
 
 import streamlit as st
 
+from optics.report.verdict import sentence
 from optics.ui import headline, look, sketch
 from optics.ui import pick_parts as parts
+from optics.ui import pick_search as search
 from optics.ui import pick_words as words
 from optics.ui.words import plain
 
@@ -14,46 +16,49 @@ with st.container(horizontal=True, vertical_alignment="center", horizontal_align
     headline.reference(here)
 headline.alerts(here)
 look.dim(here.wrong is not None)
-first = st.container(key="answer")
-st.markdown(words.asked(here.design.fiberscope))
-controls = st.container()
-with first:
-    found = parts.answer(here)
-one = found.searched
+answer = st.container(key="answer")
+with answer:
+    found = search.answer(here)
+one, tried = found.searched, search.tried(search.key_of(here.design, here), here.design)
 
-with first:
+with answer:
     if one is None:
-        st.header("Which bundle does this job?", anchor=False)
-        st.markdown(
-            f"A search puts together {words.tried(parts.sizes(parts.key_of(here.design, here), here.design))}, sends each "
-            "combination through the whole chain, and keeps those that no other beats in everything. The job stays as the "
-            "sketch has it\\: target, distance, length, bore and needs."
-        )
-        headline.banner(here.report)
+        st.header("Which combination of parts does this job?", anchor=False)
+        st.markdown(plain(words.search_words(tried)))
     else:
         mark, said = words.headline(one.found)
         st.header(f"{mark} {plain(said)}", anchor=False)
         if one.found.picks:
             st.markdown(words.plainest(one.found.picks[0], one.made[0]))
-            parts.take_button("Take the plainest", "pick:plainest", one, one.found.picks[0].set)
         else:
             parts.relax(one)
-with controls:
-    parts.state(found)
+    st.markdown(words.asked(here.design.fiberscope))
+    if one is None:
+        st.markdown(f"**As it stands\\:** {plain(sentence(here.report))}")
     parts.search(found)
-    if one is not None:
-        st.caption(words.how(one.found, one.seconds))
 
-if one is not None:
+if one is None:
+    st.subheader("What is tried", anchor=False)
+    st.table(words.tried_table(tried), border="horizontal", hide_index=True, alt="The choices of a search")
+else:
     if one.found.picks:
-        parts.show_front(one, here)
-        st.subheader("What no other beats in everything", anchor=False)
+        left, right = st.columns([3, 2], gap="medium")
+        with left:
+            parts.show_front(one, here)
+        with right:
+            st.subheader("Best in something", anchor=False)
+            parts.best(one)
+        st.subheader("All that no other beats in everything", anchor=False)
         parts.table(one, here)
     left, right = st.columns(2, gap="medium")
     with left:
+        st.subheader("Nearly", anchor=False)
         parts.nearly(one)
     with right:
+        st.subheader("What fails first, in the order of the light", anchor=False)
         parts.show_failing(one)
+    with st.expander("What was tried", key="pick:tried"):
+        st.table(words.tried_table(tried), border="horizontal", hide_index=True, alt="The choices of a search")
 st.caption(
     f"Design {here.report.design_hash}, version {here.report.version}. A screening estimate; it certifies nothing."
 )
