@@ -14,7 +14,10 @@ page = st.navigation(
         st.Page("optics/ui/pages/light.py", title="Light", icon=":material/flare:"),
         st.Page("optics/ui/pages/detail.py", title="Detail", icon=":material/grid_on:"),
         st.Page("optics/ui/pages/fit.py", title="Fit", icon=":material/adjust:"),
+        st.Page("optics/ui/pages/pick.py", title="Pick", icon=":material/checklist:"),
+        st.Page("optics/ui/pages/compare.py", title="Compare", icon=":material/compare_arrows:"),
         st.Page("optics/ui/pages/margins.py", title="Margins", icon=":material/stacked_line_chart:"),
+        st.Page("optics/ui/pages/bench.py", title="Bench", icon=":material/science:"),
         st.Page("optics/ui/pages/checks.py", title="Checks", icon=":material/fact_check:"),
     ]
 )

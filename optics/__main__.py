@@ -18,6 +18,7 @@ COMMANDS = {
     "margins": "how sure a design is to meet its needs within its tolerances, and what decides",
     "bench": "readings from a bench, fitted by the design's own model",
     "draw": "one picture of one design, as PNG, SVG or PDF",
+    "report": "the whole answer on paper as PDF, or the section as DXF",
 }
 
 
