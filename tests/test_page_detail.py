@@ -14,9 +14,11 @@ from optics import presets
 from optics.figures import image
 from optics.figures import sharper as sharper_figure
 from optics.figures.palette import DARK
+from optics.report.picture import view_of
 from optics.report.size import size
 from optics.study.sharper import over_all
 from optics.study.sharper_curves import contrasts
+from optics.study.sharper_helps import Help
 from optics.tables import preset_names
 from optics.ui import detail_parts, detail_words, link, pictures
 from optics.ui.words import number
@@ -34,6 +36,11 @@ KINDS = {
 }
 
 
+def small(scope, **how):
+    """The view in few pixels."""
+    return view_of(scope, **{**how, "width_px": 64})
+
+
 @pytest.fixture
 def blank():
     """Blank sheets for all pictures of the page: drawing takes most of the time."""
@@ -41,6 +48,7 @@ def blank():
         stack.enter_context(patch.object(pictures, "_picture", lambda *_: BLANK))
         stack.enter_context(patch.object(detail_parts, "_chart", lambda *_: BLANK))
         stack.enter_context(patch.object(detail_parts, "_drawn", lambda *_: BLANK))
+        stack.enter_context(patch.object(detail_parts, "view_of", small))
         yield
 
 
@@ -61,11 +69,15 @@ def tables(app) -> list:
 
 
 @pytest.mark.parametrize("name", preset_names("fiberscopes"))
-def test_every_demo_is_drawn(name):
-    app = page(name, drawn=True)
+def test_every_demo_is_answered(name, blank):
+    app = page(name)
     assert app.header[0].value[0] in "✓✗"
     assert "Most would come from" in said(app)
     assert len(app.get("image")) == 6
+
+
+def test_the_pictures_are_drawn():
+    assert len(page("airway_small_animal", drawn=True).get("image")) == 6
 
 
 def test_the_answer_is_that_of_size(blank):
@@ -97,7 +109,7 @@ def test_a_bare_light_guide_says_so_in_a_line(blank):
 def test_the_view_follows_its_controls(blank):
     app = page()
     asked = []
-    with patch.object(detail_parts, "view_of", lambda scope, **how: asked.append(how) or drawn_of(scope, **how)):
+    with patch.object(detail_parts, "view_of", lambda scope, **how: asked.append(how) or small(scope, **how)):
         for key, value in (("detail:subject", "cracks"), ("detail:smooth", 0.03)):
             app.selectbox(key=key).set_value(value)
             ran(app)
@@ -110,12 +122,6 @@ def test_the_view_follows_its_controls(blank):
     assert "Smoothed to 3 % of the honeycomb: that keeps" in said(app)
 
 
-def drawn_of(scope, **how):
-    from optics.report.picture import view_of
-
-    return view_of(scope, **{**how, "width_px": 64})
-
-
 def test_the_choices_survive_another_page(blank):
     app = page()
     app.selectbox(key="detail:subject").set_value("gear")
@@ -126,9 +132,9 @@ def test_the_choices_survive_another_page(blank):
 
 def test_a_crack_is_told_by_its_width(blank):
     app = page()
-    for width, words in ((0.02, "lost in the noise"), (0.1, "run together"), (0.5, "told apart")):
+    for width, told in ((0.02, "lost in the noise"), (0.1, "run together"), (0.5, "told apart")):
         app.number_input(key="detail:crack").set_value(width)
-        assert words in said(ran(app))
+        assert told in said(ran(app))
 
 
 def test_what_helps_can_be_tried_and_compared(blank):
@@ -162,12 +168,12 @@ def test_where_smaller_hardly_helps_it_is_said(blank):
 
 
 def test_words_of_changes():
-    from optics.study.sharper_helps import Help
-
     help = Help({"image.objective.focal_mm": 1.25}, 2.8, 0.179, 0.27, 41.1, "lattice", ())
     assert detail_words.help_words((help,)) == (
         "Most would come from a focal length of 1.25 mm: a gap of 0.179 mm over a field of 41.1°."
     )
+    assert "reaches the 0.1 mm asked" in detail_words.help_words((help,), 0.1)
+    assert "reaches" not in detail_words.help_words((help,), 0.2)
     assert "without giving up a need" in detail_words.help_words(())
 
 
@@ -180,7 +186,7 @@ def test_tables_have_a_row_for_each_place(blank):
 
 
 FIGURE_KINDS = {
-    **KINDS,
+    **{kind: KINDS[kind] for kind in ("eye", "chip", "dark", "no needs")},
     "demo": {},
     "fine": {"image.bundle.preset": "drawn_silica_3um"},
     "out of focus": {"scene.target.distance_mm": 8.0, "scene.target.near_mm": None, "image.objective.f_number": 2.0},
@@ -204,9 +210,8 @@ def test_pictures_clip_nothing_and_keep_words_apart(kind):
         assert any(unit in text for text, _ in found)
         assert not any(re.search(r"\b(nan|inf|None)\b", text) for text, _ in found)
         for text, box in found:
-            assert box.x0 >= -1 and box.y0 >= -1 and box.x1 <= width + 1 and box.y1 <= height + 1, (
-                f"{text!r} is cut off"
-            )
+            inside = box.x0 >= -1 and box.y0 >= -1 and box.x1 <= width + 1 and box.y1 <= height + 1
+            assert inside, f"{text!r} is cut off"
         for (text, box), (other, its) in itertools.combinations(found, 2):
             across = min(box.x1, its.x1) - max(box.x0, its.x0)
             down = min(box.y1, its.y1) - max(box.y0, its.y0)
@@ -220,6 +225,6 @@ def test_the_pictures_say_what_takes_over():
     assert sharper_figure.what_it_says(fine[0]) == "Smaller than 2.8 µm gains little: crosstalk limits"
     assert sharper_figure.what_it_says(plain[0]) == "Smaller stops being sharper near 3.8 µm: crosstalk takes over"
     assert sharper_figure.what_it_says(plain[2]).startswith("More light than ")
-    told = [text for text, _ in words(image.contrasts(contrasts(presets.load("gearbox_tooth"))))]
+    told = [text.strip() for text, _ in words(image.contrasts(contrasts(presets.load("gearbox_tooth"))))]
     assert "needed" in told
     assert any(text.startswith("the lattice ends at 3.04") for text in told)

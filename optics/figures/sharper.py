@@ -16,7 +16,7 @@ from optics.study.sharper import FLAT, Sharpness
 # Inches: of a panel, from one to the next, and margins
 PANEL, GAP, TOP, FOOT, LEFT, EDGE = 1.5, 0.95, 0.36, 0.5, 0.62, 0.2
 CORES = 0.26  # above the panel of the pitch, for the scale of cores
-AWAY, MARKED = 0.13, 0.45  # of the axis: so far names keep from the marks, and from the words on their right
+AWAY, MARKED = 0.13, 0.45  # of the axis: so far names keep from the marks, and from their words
 ROOM = 0.8  # inches of a line that can carry its name
 # Of each number: its name, its unit, the word for more of it, and how a value of it is written
 NAMES = {
@@ -106,7 +106,7 @@ def _colored(axes: Axes, curve: Sharpness, palette: Palette, wide_in: float) -> 
             at = float(x[0] * (x[-1] / x[0]) ** place)
             height = float(np.interp(at, x, y))
             above = height < 0.25 * axes.get_ylim()[1]
-            if place > AWAY and not any(-AWAY < place - mark < (MARKED if above else AWAY) for mark in marks):
+            if place > AWAY and all(abs(place - mark) > (MARKED if above else AWAY) for mark in marks):
                 rises = np.interp(1.1 * at, x, y) > np.interp(at / 1.1, x, y)
                 _name(axes, part, color, (at, height), above, bool(rises) != above)
                 break

@@ -1,6 +1,7 @@
 """What the pictures of the fit show: the face of the tip, the tube behind it with its fibers, and which parts set its size."""
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 
@@ -67,8 +68,9 @@ class Weight:
     comes_free: bool
 
 
+@lru_cache(maxsize=8)
 def numbered(fiberscope: Fiberscope) -> Fiberscope:
-    """The design with diameters that are to be solved for as numbers."""
+    """The design with diameters that are to be solved for as numbers: half a second where there is one, so kept for a while."""
     table = solved(columns([fiberscope]))
     guide, image = (float(table[path][0]) for path in PATHS)
     return with_solved(fiberscope, {"guide_diameter_mm": guide, "image_mm": image})

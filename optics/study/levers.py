@@ -28,7 +28,8 @@ Pair = tuple[Change, Fiberscope]
 class Lever:
     """One change and what it gives. Before and after in the unit of the path, or words; None where nothing stands.
 
-    `gain_share`: light gained over the light now, in lumens, in watts for a lamp stated in watts.
+    `gain_share`: light gained over the light now, in lumens, in watts for a lamp stated in watts. `unlit_fraction`: of
+    the field of view, then.
     `breaks`: needs that are met now and would not be. `settings` make the change in the document.
     """
 
@@ -38,6 +39,7 @@ class Lever:
     delivered_lm: float
     delivered_w: float
     center_lux: float | None
+    unlit_fraction: float | None
     gain_share: float
     words: str
     breaks: tuple[str, ...]
@@ -133,7 +135,7 @@ def _gain(now: float, then: np.ndarray) -> np.ndarray:
 
 
 def _lever(change: Change, figures: Figures, row: int, gain: float, lost: tuple[str, ...]) -> Lever:
-    lux = float(figures["center_lux"][row])
+    lux, unlit = (float(figures[name][row]) for name in ("center_lux", "unlit_fraction"))
     return Lever(
         change.path,
         change.before,
@@ -141,6 +143,7 @@ def _lever(change: Change, figures: Figures, row: int, gain: float, lost: tuple[
         float(figures["delivered_lm"][row]),
         float(figures["delivered_w"][row]),
         lux if np.isfinite(lux) else None,
+        unlit if np.isfinite(unlit) else None,
         gain,
         f"{change.said}: {told(gain)}",
         lost,

@@ -75,17 +75,25 @@ def show_crossings(chosen: Chosen) -> None:
         with place:
             bent = path == LENGTH or any(scope.guide.bundle.bends for scope in chosen.scopes)
             if bent:
-                for quantity in _drawn_along(found, path):
+                for quantity in _drawn_along(chosen, found, path):
                     _along(chosen, path, quantity, found)
             said, along = compare_words.crossings(found, path)
             st.markdown("  \n".join(said))
             st.caption(plain(along))
 
 
-def _drawn_along(found: tuple[Crossover, ...], path: str) -> list[str]:
-    """What is drawn: the lumens, and the detail where it crosses."""
-    gap = [row for row in found if row.path == path and row.quantity == "smallest_gap_mm" and row.value is not None]
-    return ["delivered_lm", *(["smallest_gap_mm"] if gap else [])]
+def _drawn_along(chosen: Chosen, found: tuple[Crossover, ...], path: str) -> list[str]:
+    """What is drawn: the lumens, and the detail where two that are both resolved cross."""
+    gap = "smallest_gap_mm"
+    values, places = curves(chosen.key, path, chosen)[gap], np.log(np.geomspace(*RANGES[path], POINTS))
+    seen = any(
+        np.isfinite(
+            [np.interp(np.log(row.value), places, values[chosen.names.index(name)]) for name in row.between]
+        ).all()
+        for row in found
+        if row.path == path and row.quantity == gap and row.value is not None
+    )
+    return ["delivered_lm", *([gap] if seen else [])]
 
 
 def _along(chosen: Chosen, path: str, quantity: str, found: tuple[Crossover, ...]) -> None:
@@ -142,7 +150,7 @@ def show_split(here: Sketch) -> None:
             if found.best is not None:
                 _take("Take the finest share", "compare:best", found.best.set)
             good = [point for point in split_words.keeping(found, scope) if point.smallest_gap_mm is not None]
-            if good and scope.needs.target_center_lux is not None:
+            if good and found.best.target_center_lux < (scope.needs.target_center_lux or 0.0):
                 best = min(good, key=lambda point: point.smallest_gap_mm)
                 _take(
                     f"Take {100 * best.image_fraction:.0f} %, the finest that keeps the light", "compare:keeping",

@@ -1,5 +1,6 @@
 """A comparison in words and rows for the screen: who leads in what, each difference with its reason, crossovers, the split."""
 
+import re
 from dataclasses import dataclass
 
 from optics.needs import AT_MOST, NeedLine
@@ -27,12 +28,6 @@ LEADS = {  # what people ask first: who is best in it, and whether less is bette
     "outer_diameter_mm": ("thinnest tube", True),
     "bend_radius_mm": ("tightest bend", True),
     "color_rendering_index": ("truest color", False),
-}
-OVERTAKES = {
-    "delivered_lm": "gives more lumens than",
-    "color_temperature_k": "gives the bluer light, against",
-    "color_rendering_index": "shows colors truer than",
-    "smallest_gap_mm": "sees finer than",
 }
 AHEAD = {
     "delivered_lm": "more lumens",
@@ -195,12 +190,21 @@ def why(differences: tuple[Difference, ...], of: str) -> Columns:
         (
             called(row.quantity),
             plain(_change(row)),
-            plain(sentence_case(row.because.replace(" x ", " × "))),
+            plain(sentence_case(_typeset(row.because))),
         )
         for row in differences
         if row.of == of and row.because != "the same"
     ]
     return columns(("number", "difference", "why"), rows)
+
+
+def _typeset(said: str) -> str:
+    """A reason with true minus and times signs.
+
+    >>> _typeset("mostly the cone: x 0.160 against x 1.000, by -10.1 K, not by 50%")
+    'mostly the cone: × 0.160 against × 1.000, by −10.1 K, not by 50 %'
+    """
+    return re.sub(r"(?<=\d)%", " %", re.sub(r"(?<!\w)-(?=\d)", "−", said.replace(" x ", " × ")))
 
 
 def _change(row: Difference) -> str:
@@ -218,10 +222,12 @@ def crossings(found: tuple[Crossover, ...], path: str) -> tuple[list[str], str]:
     """The crossovers along one path as sentences, nearest first; and where one stays ahead."""
     what, sign = ALONG[path]
     mine = [row for row in found if row.path == path]
-    crossed = sorted((row for row in mine if row.value is not None), key=lambda row: (row.quantity, row.value))
+    met: dict[tuple[str, str, str], list[str]] = {}
+    for row in sorted((row for row in mine if row.value is not None), key=lambda row: row.value):
+        met.setdefault((number(row.value), row.ahead, _other(row)), []).append(AHEAD[row.quantity])
     said = [
-        f"**Beyond a {what} of {number(row.value)} {sign}** {plain(row.ahead)} {OVERTAKES[row.quantity]} {plain(_other(row))}."
-        for row in sorted(crossed, key=lambda row: list(OVERTAKES).index(row.quantity))
+        f"**Beyond a {what} of {value} {sign}** {plain(ahead)} overtakes {plain(other)}\\: {_listed(gains)}."
+        for (value, ahead, other), gains in met.items()
     ]
     low, high = RANGES[path]
     ahead: dict[str, list[str]] = {}

@@ -10,7 +10,7 @@ from optics.figures.strip_words import largest_loss
 from optics.presets import Design
 from optics.report.answer import Report
 from optics.report.view_bend import BendTraceView
-from optics.study.levers import Lever, levers
+from optics.study.levers import LARGE, Lever, levers, told
 from optics.tables import preset_names
 from optics.ui import drawings, headline, light_words, sketch
 from optics.ui.names import field_name, preset_name
@@ -44,8 +44,17 @@ def answer(here: Sketch, found: tuple[Lever, ...]) -> None:
     if own is not None:
         st.markdown(f"**With this lamp most would come from {plain(spoken(own.words))}.**")
     if others is not None and (own is None or others.gain_share > own.gain_share):
-        change, _, gain = others.words.rpartition(": ")
-        st.markdown(f"{plain(sentence_case(spoken(change)))} would give {plain(gain)}.")
+        change = others.words.rpartition(": ")[0]
+        st.markdown(f"{plain(sentence_case(spoken(change)))} would give {plain(_more(others.gain_share))}.")
+
+
+def _more(gain_share: float) -> str:
+    """A gain as what would be given.
+
+    >>> _more(0.87), _more(2.41)
+    ('87 % more', '3.41 times the light')
+    """
+    return told(gain_share) if gain_share >= LARGE else f"{100 * gain_share:.0f} % more"
 
 
 def _arrives(report: Report, lamp: Lamp) -> tuple[float, float, str, float]:
@@ -121,11 +130,15 @@ def _lever(report: Report, lever: Lever) -> None:
     change, _, gain = lever.words.rpartition(": ")
     lost = ", ".join(field_name(name, f"needs.{name}") for name in lever.breaks)
     cost = f"  \n:orange[✗ then the {lost} is not met]" if lost else ""
-    gives, center = f"{number(lever.delivered_lm)} lm", report.target and report.target.center_lux
-    if center and lever.center_lux is not None:
+    gives, now = f"{number(lever.delivered_lm)} lm", report.target
+    if now is not None and lever.center_lux is not None:
         gives += f", {number(lever.center_lux)} lx at the center of the target"
-        if lever.center_lux < center * (1 - LESS):
-            cost = f"  \n:gray[though {percent(lever.center_lux / center - 1)} at the center of the target]{cost}"
+        if lever.center_lux < now.center_lux * (1 - LESS):
+            cost = (
+                f"  \n:gray[though {percent(lever.center_lux / now.center_lux - 1)} at the center of the target]{cost}"
+            )
+        if (lever.unlit_fraction or 0.0) > (now.unlit_fraction or 0.0) + LESS:
+            cost = f"  \n:gray[though {100 * lever.unlit_fraction:.0f} % of the field is dark then]{cost}"
     with st.container(horizontal=True, wrap=False, vertical_alignment="center", gap="small"):
         st.markdown(f"**{plain(gain)}** {plain(spoken(change))}{cost}", width="stretch")
         st.button(

@@ -85,4 +85,4 @@ def trace_table(view: BendTraceView) -> Columns:
         )
         for place, bend in enumerate(view.bends, 1)
     ]
-    return columns(("behind bend", "kernel", "rays", "95 % NA, kernel", "rays’ 95 % NA"), rows)
+    return columns(("behind bend", "kernel", "rays", "95 % NA, kernel", "95 % NA, rays"), rows)

@@ -192,6 +192,8 @@ def _shown(value: float | None) -> str | None:
 
 def nearly(one: Searched) -> None:
     """The nearest misses, each with the smallest single change that helps, to be tried."""
+    if not one.near:
+        st.markdown("The search was stopped before those that fail were looked at.")
     for place, (each, made) in enumerate(one.near):
         with st.container(horizontal=True, vertical_alignment="center", gap="small", wrap=False):
             st.markdown(words.nearly(each, made), width="stretch")

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from optics.fiberscope import SOLVE, Fiberscope
 from optics.needs import NeedLine
 from optics.presets import Document, value_at
+from optics.report.answer import Report
 from optics.report.verdict import NAMES
 from optics.study.pick import Failed, Pick, Picked
 from optics.study.pick_needs import SHORT
@@ -153,6 +154,15 @@ def plainest(first: Pick, made: Parts) -> str:
     outer = first.summary.outer_diameter_mm
     outer = "" if outer is None else f", of those the thinnest with {number(outer)} mm"
     return f"**The plainest** (cost class {first.cost_class}{outer})\\: {plain(str(made))}. {plain(gives(first))}."
+
+
+def stands(report: Report) -> str:
+    """How the sketch itself does, in a sentence."""
+    short = [field_name(line.name, f"needs.{line.name}") for line in report.needs if not line.met]
+    short += ["bore"] if report.fit is not None and report.fit.passes is False else []
+    if short:
+        return f"The sketch as it stands misses the {' and the '.join(short)}."
+    return "The sketch as it stands meets its needs too." if report.needs else ""
 
 
 def best(row: int, name: str, one: Pick, made: Parts) -> str:

@@ -75,6 +75,7 @@ def test_each_is_what_size_says_of_the_changed_design(variant):
         assert lever.gain_share > 0
         if then.target:
             assert lever.center_lux == pytest.approx(then.target.center_lux, rel=1e-9)
+            assert lever.unlit_fraction == pytest.approx(then.target.unlit_fraction, rel=1e-9)
 
 
 @pytest.mark.parametrize("variant", VARIANTS)

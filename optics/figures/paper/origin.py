@@ -75,7 +75,7 @@ def tables(document: Document, sourced: Mapping[str, Sourced]) -> Iterator[Table
 
 def _by_default(found: Sourced) -> bool:
     """Whether a value came into force because nobody named one, and is no more than assumed."""
-    return (found.source, found.at) == ("assumed", "default")
+    return found.source in UNSOURCED and (found.at, found.basis) == ("default", "assumed")
 
 
 def _rest(found: Sourced) -> tuple[Any, ...]:

@@ -91,19 +91,19 @@ def _need_unit(name: str) -> str:
 
 
 def margin(share: float | None, name: str) -> str:
-    """A relative margin in percent; as a multiple where percent stop helping.
+    """A relative margin in percent; as so many times what is wanted where percent stop helping.
 
     >>> margin(0.17, "rigid_tip_mm"), margin(-0.135, "evenness"), margin(172.4, "target_center_lux"), margin(None, "evenness")
-    ('+17 %', '−14 %', '173 × wanted', 'nothing reached')
+    ('+17 %', '−14 %', '173 times', '–')
     >>> margin(-11.2, "smallest_gap_mm"), margin(0.001, "rigid_tip_mm")
-    ('12.2 × wanted', '0 %')
+    ('12.2 times', '0 %')
     """
     if share is None:
-        return "nothing reached"
+        return "–"
     if name not in AT_MOST and share > 2:
-        return f"{1 + share:.3g} × wanted"
+        return f"{1 + share:.3g} times"
     if share < -1:
-        return f"{1 - share:.3g} × wanted"
+        return f"{1 - share:.3g} times"
     return f"{share:+.0%}".replace("+0%", "0%").replace("%", " %").replace("-", "−")
 
 

@@ -81,7 +81,7 @@ def detail(report: Report) -> list[Pair]:
     found, summary = report.detail, report.summary
     return _pairs(
         [
-            ("resolved at the target", summary.resolved_lp_mm, "lp/mm"),
+            ("resolved at the target", summary.resolved_lp_mm or "none", "lp/mm"),
             ("smallest gap", "none" if summary.smallest_gap_mm is None else summary.smallest_gap_mm, "mm"),
             ("thinnest dark line", "none" if summary.smallest_line_mm is None else summary.smallest_line_mm, "mm"),
             ("one pitch at the target", found.pitch_at_target_mm, "mm"),

@@ -22,14 +22,17 @@ with st.container(key="answer"):
     with left:
         st.subheader("Step by step", anchor=False)
         pictures.show("budget", here.design, report, "Light left after each step from lamp to exit face")
+    with right:
+        st.subheader("What would give more", anchor=False)
+        with st.container(gap="xsmall"):
+            light_parts.lever_list(report, found)
+    left, right = st.columns(2, gap="medium")
+    with left:
         cone = drawings.view("cone", here)
         st.subheader("Cone in, cone out", anchor=False)
         st.markdown(plain(light_words.cone_words(cone)))
         drawings.show("cone", here, "Radiance over the angle: launched, after the guide, as it leaves")
     with right:
-        st.subheader("What would give more", anchor=False)
-        with st.container(gap="xsmall"):
-            light_parts.lever_list(report, found)
         bends = drawings.view("bends", here)
         st.subheader("Bends", anchor=False)
         st.markdown(plain(light_words.bend_words(bends)))

@@ -29,7 +29,7 @@ with answer:
         mark, said = words.headline(one.found)
         st.header(f"{mark} {plain(said)}", anchor=False)
         if one.found.picks:
-            st.markdown(words.plainest(one.found.picks[0], one.made[0]))
+            st.markdown(f"{words.plainest(one.found.picks[0], one.made[0])} {plain(words.stands(here.report))}")
         else:
             parts.relax(one)
     st.markdown(words.asked(here.design.fiberscope))
@@ -50,13 +50,14 @@ else:
             parts.best(one)
         st.subheader("All that no other beats in everything", anchor=False)
         parts.table(one, here)
-    left, right = st.columns(2, gap="medium")
-    with left:
-        st.subheader("Nearly", anchor=False)
-        parts.nearly(one)
-    with right:
-        st.subheader("What fails first, in the order of the light", anchor=False)
-        parts.show_failing(one)
+    if one.found.failing:
+        left, right = st.columns(2, gap="medium")
+        with left:
+            st.subheader("Nearly", anchor=False)
+            parts.nearly(one)
+        with right:
+            st.subheader("What fails first, in the order of the light", anchor=False)
+            parts.show_failing(one)
     with st.expander("What was tried", key="pick:tried"):
         st.table(words.tried_table(tried), border="horizontal", hide_index=True, alt="The choices of a search")
 st.caption(
