@@ -236,6 +236,24 @@ RULES = (
         lambda bundle, pitch: core_count(diameter_mm=bundle, pitch_um=pitch) >= LEAST_CORES - 1e-9,
         f"an image bundle must have at least {LEAST_CORES} cores",
     ),
+    *(
+        Rule(
+            ("image.objective.focal_mm", "image.objective.f_number", around),
+            lambda focal, f_number, width: focal / f_number <= np.asarray(width),
+            f"such a pupil (focal length over f-number) is wider than {what}",
+            shown=3,
+        )
+        for around, what in (
+            ("body.section.objective_barrel_mm", "the objective's barrel"),
+            ("body.section.outer_diameter_mm", "the tip"),
+        )
+    ),
+    Rule(
+        ("image.bundle.diameter_mm", "viewer.camera.relay_magnification", "viewer.camera.sensor_mm"),
+        lambda bundle, relay, sensor: np.asarray(bundle) * relay <= sensor,
+        "the camera's sensor cannot cover the bundle's picture: a smaller relay magnification or a larger sensor",
+        shown=3,
+    ),
     Rule(
         ("image.objective.focus_mm", "image.objective.focal_mm"),
         np.greater,

@@ -80,15 +80,11 @@ def _pairs(rows) -> str:
 def _light(report: Report) -> str:
     light = report.light
     rows = [(step.name, rounded(step.after_lm), f"x {step.factor:.3f}", step.because) for step in light.steps]
-    total = [
-        (
-            "delivered",
-            rounded(light.delivered_lm),
-            f"x {light.transmission:.3f}",
-            f"{rounded(light.delivered_w)} W, 95 % within NA "
-            f"{light.exit_na:.3f}, {light.color_temperature_k:.0f} K, color rendering index {light.color_rendering_index:.0f}",
-        ),
-    ]
+    color = f"{light.color_temperature_k:.0f} K, Duv {light.color_duv:+.4f}, color rendering index"
+    said = (
+        f"{rounded(light.delivered_w)} W, 95 % within NA {light.exit_na:.3f}, {color} {light.color_rendering_index:.0f}"
+    )
+    total = [("delivered", rounded(light.delivered_lm), f"x {light.transmission:.3f}", said)]
     return table([("", "lm", "factor", ""), *rows, *total], right=(1, 2))
 
 

@@ -53,6 +53,7 @@ def report_of(fiberscope: Fiberscope, figures: Figures, row: int, sourced: Mappi
         value["exit_na"],
         value["color_temperature_k"],
         value["color_rendering_index"],
+        value["color_duv"],
     )
     limited = figures.limited_by()[row]
     got = {

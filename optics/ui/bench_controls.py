@@ -28,6 +28,7 @@ def bring(open_wide: bool) -> None:
         key = bound_to("bench:text", asked.text)
         st.text_area(
             "Or type or paste them here",
+            asked.text,
             key=key,
             height=160,
             placeholder="length_m,power_mw\n3,250\n2,281\n1,314",
@@ -92,6 +93,7 @@ def flat(got: parts.Outcome) -> None:
         key = bound_to("bench:flat", parts.lab().flat)
         st.toggle(
             "One loss at all wavelengths",
+            parts.lab().flat,
             key=key,
             on_change=_flat,
             args=(key,),
@@ -110,7 +112,9 @@ def outliers(got: parts.Outcome) -> None:
     apart = {item.row for item in got.found.residuals if item.apart} if got.found else set()
     for row in sorted(apart | set(asked.left_out)):
         key = bound_to(f"bench:leave:{row}", row in asked.left_out)
-        st.checkbox(plain(words.apart(row, got.readings)), key=key, on_change=_leave, args=(row, key))
+        st.checkbox(
+            plain(words.apart(row, got.readings)), row in asked.left_out, key=key, on_change=_leave, args=(row, key)
+        )
 
 
 def _leave(row: int, key: str) -> None:
@@ -124,6 +128,7 @@ def others_out(got: parts.Outcome) -> None:
     st.multiselect(
         "Leave out rows",
         [int(row) for row in got.readings.row],
+        list(parts.lab().left_out),
         key=key,
         placeholder="none",
         on_change=lambda: parts.leave_out(tuple(st.session_state[key])),

@@ -28,12 +28,12 @@ def run(found: parts.Answer) -> None:
     with st.container(horizontal=True, vertical_alignment="bottom", gap="small", key="margins-run"):
         key = bound_to("margins:samples", ask.samples)
         st.selectbox(
-            "Samples", SAMPLES, key=key, width=130, format_func=lambda count: f"{count:,}", on_change=_set,
+            "Samples", SAMPLES, SAMPLES.index(ask.samples), key=key, width=130, format_func=lambda count: f"{count:,}", on_change=_set,
             args=("samples", key), help="More samples, a smaller standard error, a longer wait.",
         )  # fmt: skip
         key = bound_to("margins:seed", ask.seed)
         st.number_input(
-            "Seed", 0, 2**31 - 1, step=1, key=key, width=130, on_change=_set, args=("seed", key),
+            "Seed", 0, 2**31 - 1, ask.seed, step=1, key=key, width=130, on_change=_set, args=("seed", key),
             help="Which draw it is. Another seed tells how far chance moves the answer.",
         )  # fmt: skip
         button("margins:run", found)
@@ -64,10 +64,11 @@ def tolerances(found: parts.Answer) -> None:
         "**click a low or a high to enter your own**, then run."
     )
     _refused(ask)
-    key = bound_to("margins:everything", bool(st.session_state.get("margins:everything:kept")))
-    st.toggle("Also values without a stated tolerance", key=key, on_change=_everything, args=(key,))
-    table = f"margins:table:{ask.edition}:{st.session_state[key]}"
-    ranges.table(here.design, ask.given, st.session_state[key], table, _entered)
+    key = bound_to("margins:everything", ask.everything)
+    st.toggle("Also values without a stated tolerance", ask.everything, key=key, on_change=_everything, args=(key,))
+    ranges.table(
+        here.design, ask.given, ask.everything, f"margins:table:{ask.edition}:{ask.everything}", _entered
+    )  # fmt: skip
     with st.container(horizontal=True, vertical_alignment="center"):
         button("margins:run:table", found)
         for path in ask.given:
@@ -78,7 +79,7 @@ def tolerances(found: parts.Answer) -> None:
 
 def _everything(key: str) -> None:
     sketch.touch()
-    st.session_state["margins:everything:kept"] = st.session_state[key]
+    parts.asked().everything = st.session_state[key]
 
 
 def _entered(path: str, low: float | None, high: float | None) -> None:
@@ -119,10 +120,10 @@ def years(found: parts.Answer) -> None:
     with st.grid("auto", min_column_width=150):
         for name in _fitting(scope):
             said, unit, times, _ = WORN[name]
-            value = ask.worn.get(name)
-            key = bound_to(f"margins:aged:{name}", None if value is None else round(value * times, 9))
+            value = None if name not in ask.worn else round(ask.worn[name] * times, 9)
+            key = bound_to(f"margins:aged:{name}", value)
             st.number_input(
-                f"{said}, {unit}", step=1.0 if times > 1 else 0.1, format="%g", key=key, placeholder="as new",
+                f"{said}, {unit}", value=value, step=1.0 if times > 1 else 0.1, format="%g", key=key, placeholder="as new",
                 on_change=_aged, args=(name, key),
             )  # fmt: skip
     with st.container(horizontal=True, vertical_alignment="center"):

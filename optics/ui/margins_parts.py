@@ -50,6 +50,7 @@ class Asked:
     seed: int = SEED
     given: Given = field(default_factory=dict)
     worn: dict[str, float] = field(default_factory=dict)
+    everything: bool = False  # whether values without a tolerance are listed too
     run: bool = False
     done: set[tuple[str, ...]] = field(default_factory=set)
     last: Studied | None = None

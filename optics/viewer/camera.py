@@ -35,6 +35,9 @@ class Camera(Spec):
     relay_transmission: float = quantity(
         "share of the light that the relay lens passes", default=0.9, gt=0, le=1, usual=(0.7, 1.0), source="assumed"
     )
+    sensor_mm: float | None = quantity(
+        "shorter side of the sensor; left out: large enough", default=None, gt=0, le=50, usual=(2.0, 15.0)
+    )
     color_filter: bool = quantity("whether a color filter mosaic covers the pixels", default=False, source="assumed")
     longest_exposure_s: float = quantity(
         "longest exposure of one picture", gt=0, le=60, usual=(0.005, 0.2), common=True
