@@ -94,9 +94,8 @@ def _expanded(table: Mapping[str, Any], path: str, sourced: dict[str, Sourced], 
         at = f"{path}.{key}" if path else key
         if key == "preset":
             continue
-        if isinstance(value, Mapping) and CURVE.issuperset(
-            value
-        ):  # an own curve stands for the preset's, tolerance and all
+        if isinstance(value, Mapping) and value and CURVE.issuperset(value):
+            # an own curve stands for the preset's, tolerance and all
             full[key] = dict(value)
             sourced[at] = Sourced("curve", None, None, "own_scenario", where, "assumed")
         elif isinstance(value, Mapping):

@@ -16,7 +16,7 @@ from optics.study.compare import differences
 from optics.study.pick import pick
 from optics.study.split import split
 from optics.tables import preset_names
-from optics.ui import compare_words, link, pick_search, split_words
+from optics.ui import compare_parts, compare_words, link, pick_search, split_words
 
 DEMOS = preset_names("fiberscopes")
 BARE = {"scene": None, "image": None, "viewer": None, "body": None, "needs": None}
@@ -61,6 +61,13 @@ def few(monkeypatch):
         pick_search, "pick", lambda design, **asked: pick(design, most=CANDIDATES, **{**asked, "nearest": 12})
     )
     pick_search._shelf().clear()
+    monkeypatch.setattr(compare_parts, "POINTS", 9)
+
+
+@pytest.fixture
+def no_crossings(monkeypatch):
+    """The curves alone: the search for crossings has tests of its own, and takes most of the time."""
+    monkeypatch.setattr(compare_parts, "crossed", lambda *_: ())
 
 
 # Pick
@@ -132,6 +139,7 @@ def test_a_search_that_is_stopped_says_so(monkeypatch):
     assert "pick:search" in [item.key for item in app.button], "the whole search can still be asked for"
 
 
+@pytest.mark.usefixtures("no_crossings")
 @pytest.mark.parametrize("name", ["pick", "compare"])
 def test_a_bare_light_guide_is_told_what_can_be_done(name):
     app = opened(name, "gearbox_tooth", settings=BARE)
@@ -148,6 +156,12 @@ def test_a_bare_light_guide_is_told_what_can_be_done(name):
 # Compare
 
 
+def test_crossings_are_sentences():
+    app = opened("compare", "gearbox_tooth")
+    assert any("**Beyond a length of" in item.value and "overtakes" in item.value for item in app.markdown)
+
+
+@pytest.mark.usefixtures("no_crossings")
 @pytest.mark.parametrize("demo", DEMOS)
 def test_families_and_split_answer(demo):
     app = opened("compare", demo)
@@ -161,9 +175,10 @@ def test_families_and_split_answer(demo):
     assert app.session_state["sketch"].pinned is not None
 
 
+@pytest.mark.usefixtures("no_crossings")
 def test_designs_side_by_side():
     app = opened("compare", "gearbox_tooth")
-    app.button_group(key="compare:mode").set_value(["designs"])
+    app.button_group(key="compare:mode").set_value("designs")
     ran(app)
     app.multiselect(key="compare:designs").set_value(["sketch", "turbine_casing", "airway_small_animal"])
     ran(app)

@@ -55,39 +55,39 @@ def detail(columns: Columns, lit: Lit, seen: dict[str, np.ndarray]) -> dict[str,
 def _detail(columns: Columns, target_w_m2_nm: np.ndarray, seen: dict[str, np.ndarray]) -> dict[str, np.ndarray]:
     size = seen["image_over_target_ratio"]  # at the target's distance, which need not be the sharpest
     parts, value = way_back(columns, target_w_m2_nm, seen)
-    upper = np.array([_upper_lp_mm(parts, ideal) for ideal in VARIANTS])
-    resolved = largest_passing(lambda f: _margin(parts, f), upper_lp_mm=upper)
+    upper = np.array([upper_lp_mm(parts, ideal) for ideal in VARIANTS])
+    resolved = largest_passing(lambda f: margin(parts, f), upper_lp_mm=upper)
     whole = lp_mm_from_per_um(1.0 / um_from_mm(seen["image_mm"]))  # one period over the whole image
     resolved = np.where(resolved < whole, 0.0, resolved)
     real = resolved[0]
     gain = resolved[1:] - real
-    gain = np.where(_present(parts), gain, -np.inf)
+    gain = np.where(present(parts), gain, -np.inf)
     # Ties, and gains within rounding of each other, go to the earlier part.
     best = gain.max(axis=0)
     value["limited_by"] = np.argmax(gain >= best - 1e-9 * np.maximum(resolved.max(axis=0), 1e-12), axis=0).astype(float)
     value["resolved_lp_mm"] = real * size
     value["smallest_gap_mm"] = np.where(real > 0, 0.5 / np.maximum(real * size, 1e-300), np.nan)
     value["smallest_line_mm"] = _smallest_line_mm(parts, real, size, upper[0])
-    factors = _factors(parts, real)
+    left = factors(parts, real)
     for row, part in enumerate(PARTS):
-        present = _present(parts)[row]
-        value[f"contrast.{part}"] = np.where(present, factors.get(part, np.ones_like(real)), np.nan)
-        value[f"limit.{part}"] = np.where(present, _alone_lp_mm(parts, part, seen) * size, np.nan)
-        value[f"gain.{part}"] = np.where(present, gain[row], np.nan)
+        there = present(parts)[row]
+        value[f"contrast.{part}"] = np.where(there, left.get(part, np.ones_like(real)), np.nan)
+        value[f"limit.{part}"] = np.where(there, alone_lp_mm(parts, part, seen) * size, np.nan)
+        value[f"gain.{part}"] = np.where(there, gain[row], np.nan)
     return value
 
 
 # Contrast
 
 
-def _present(parts: Parts) -> np.ndarray:
+def present(parts: Parts) -> np.ndarray:
     """Which parts a design has [part, design]."""
     always = np.ones_like(parts.bundle)
     has = {"crosstalk": parts.bundle, "camera": ~parts.eye, "eye": parts.eye}
     return np.array([has.get(part, always) for part in PARTS])
 
 
-def _factors(parts: Parts, frequency: np.ndarray) -> dict[str, np.ndarray]:
+def factors(parts: Parts, frequency: np.ndarray) -> dict[str, np.ndarray]:
     """Contrast of each part at frequencies [..., design] at the image."""
     lens = diffraction_mtf(
         f_number=parts.f_number[:, None], wavelength_nm=parts.color_nm, frequency_lp_mm=frequency[..., None]
@@ -115,7 +115,7 @@ def _factors(parts: Parts, frequency: np.ndarray) -> dict[str, np.ndarray]:
     }
 
 
-def _needed(parts: Parts, frequency: np.ndarray) -> np.ndarray:
+def needed(parts: Parts, frequency: np.ndarray) -> np.ndarray:
     """Contrast that the viewer needs [variant, design], each part ideal in its own row of VARIANTS."""
     rows = VARIANTS[: len(frequency)]
     snr = np.array(
@@ -127,48 +127,54 @@ def _needed(parts: Parts, frequency: np.ndarray) -> np.ndarray:
     bright = np.array(
         [np.full_like(parts.seen_cd_m2, BRIGHT_CD_M2) if part == "light" else parts.seen_cd_m2 for part in rows]
     )
-    needed = needed_contrast(
+    by_noise = needed_contrast(
         frequency_lp_mm=frequency, snr=snr, cell_um2=parts.cell_um2, threshold_snr=parts.threshold_snr
     )
     if not parts.eye.any():
-        return needed
+        return by_noise
     # Coarser than its peak the eye needs more contrast again, but a coarse pattern has edges that it sees as well.
     cycles = seen_frequency_cpd(frequency_lp_mm=frequency, eyepiece_focal_mm=parts.eyepiece_focal_mm)
     cycles = np.maximum(cycles, parts.peak_cpd)
     sensitivity = contrast_sensitivity(frequency_cpd=cycles, luminance_cd_m2=bright, field_deg=parts.seen_deg)
     by_eye = one_eye_threshold_contrast(sensitivity=np.maximum(sensitivity, 1e-12))
     by_eye = np.where(np.array([part == "eye" for part in VARIANTS])[: len(frequency), None], 0.0, by_eye)
-    return np.where(parts.eye, by_eye, needed)
+    return np.where(parts.eye, by_eye, by_noise)
 
 
-def _margin(parts: Parts, frequency: np.ndarray) -> np.ndarray:
+def margin(parts: Parts, frequency: np.ndarray) -> np.ndarray:
     """Contrast less what is needed [variant, design]."""
     product = parts.contrast
-    for part, factor in _factors(parts, frequency).items():
+    for part, factor in factors(parts, frequency).items():
         ideal = np.array([part == variant for variant in VARIANTS])[:, None]
         product = product * np.where(ideal, 1.0, factor)
-    return product - _needed(parts, frequency)
+    return product - needed(parts, frequency)
 
 
-def _upper_lp_mm(parts: Parts, ideal: str | None) -> np.ndarray:
+def upper_lp_mm(parts: Parts, ideal: str | None) -> np.ndarray:
     """Where the search ends: the lattice limit, and the first zero of every part that has one."""
     zeros = {
         "objective": cutoff_lp_mm(f_number=parts.f_number, wavelength_nm=parts.color_nm.min(axis=-1)),
         "focus": lp_mm_from_per_um(AIRY_ZERO / np.maximum(parts.blur_um, 1e-9)),
         "lattice": parts.lattice_limit_lp_mm,
-        "camera": lp_mm_from_per_um(1.0 / np.maximum(parts.pixel_um, 1e-9)),
+        "camera": _camera_lp_mm(parts),
     }
     return np.minimum.reduce([zero for part, zero in zeros.items() if part != ideal])
 
 
-def _alone_lp_mm(parts: Parts, part: str, seen: dict[str, np.ndarray]) -> np.ndarray:
+def _camera_lp_mm(parts: Parts) -> np.ndarray:
+    """Where the camera ends: half its sampling frequency on a bundle's face; a chip's sampling is its lattice."""
+    samples = np.where(parts.bundle, 0.5, 1.0)
+    return lp_mm_from_per_um(samples / np.maximum(parts.pixel_um, 1e-9))
+
+
+def alone_lp_mm(parts: Parts, part: str, seen: dict[str, np.ndarray]) -> np.ndarray:
     """What one part alone would allow, all others ideal, at the image [design]; nan: no limit."""
     zeros = {
         "objective": cutoff_lp_mm(f_number=parts.f_number, wavelength_nm=parts.color_nm.max(axis=-1)),
         "focus": np.where(parts.blur_um > 1e-6, lp_mm_from_per_um(AIRY_ZERO / np.maximum(parts.blur_um, 1e-9)), np.nan),
         "lattice": parts.lattice_limit_lp_mm,
         "crosstalk": np.full_like(parts.blur_um, np.nan),
-        "camera": np.where(parts.pixel_um > 0, lp_mm_from_per_um(1.0 / np.maximum(parts.pixel_um, 1e-9)), np.nan),
+        "camera": np.where(parts.pixel_um > 0, _camera_lp_mm(parts), np.nan),
     }
     if part in zeros:
         return zeros[part]
@@ -178,14 +184,14 @@ def _alone_lp_mm(parts: Parts, part: str, seen: dict[str, np.ndarray]) -> np.nda
         by_camera = np.where(ratio >= 1, np.nan, one_cell * ratio)
         return np.where(parts.eye, np.nan, by_camera)
     top = np.full((1, parts.blur_um.size), lp_mm_from_per_um(1.0))
-    return largest_passing(lambda f: parts.contrast - _needed(parts, f), upper_lp_mm=top)[0]
+    return largest_passing(lambda f: parts.contrast - needed(parts, f), upper_lp_mm=top)[0]
 
 
 def _smallest_line_mm(parts: Parts, resolved: np.ndarray, size: np.ndarray, upper: np.ndarray) -> np.ndarray:
     """Width of the thinnest single dark line at the target; never wider than the gap; nan where nothing is resolved."""
     f = upper * (NODES[:, None] + 1) / 2
     product = np.ones_like(f)
-    for factor in _factors(parts, f).values():
+    for factor in factors(parts, f).values():
         product = product * factor
     weight = per_um_from_lp_mm(upper) / 2 * WEIGHTS[:, None]  # 1/um
     by_cores = smallest_line_um(  # an eye has no camera's noise, but the cores' unevenness masks for it too

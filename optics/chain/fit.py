@@ -86,7 +86,7 @@ def section(columns: Columns, image_mm: np.ndarray) -> tuple[dict[str, np.ndarra
         "needed_lumen_mm": needed,
         "lumen_mm": lumen,
         "outer_diameter_mm": outer_diameter_mm(lumen_mm=np.maximum(lumen, 1e-9), wall_mm=wall),
-        "free_area_mm2": np.pi / 4 * (lumen**2 - (parts**2).sum(axis=1)),
+        "free_area_mm2": np.maximum(np.pi / 4 * (lumen**2 - (parts**2).sum(axis=1)), 0.0),  # none where they do not fit
         "laid_port_offset_mm": np.where(light[:, 0] > 0, laid_mm, np.nan),
         "fits": (needed <= lumen * (1 + 1e-9)).astype(float),
     }

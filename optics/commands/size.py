@@ -80,7 +80,7 @@ def _pairs(rows) -> str:
 def _light(report: Report) -> str:
     light = report.light
     rows = [(step.name, rounded(step.after_lm), f"x {step.factor:.3f}", step.because) for step in light.steps]
-    color = f"{light.color_temperature_k:.0f} K, Duv {light.color_duv:+.4f}, color rendering index"
+    color = f"{light.color_temperature_k:.0f} K, Duv {light.duv_ratio:+.4f}, color rendering index"
     said = (
         f"{rounded(light.delivered_w)} W, 95 % within NA {light.exit_na:.3f}, {color} {light.color_rendering_index:.0f}"
     )

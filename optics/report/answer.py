@@ -21,7 +21,7 @@ class LightAnswer:
     exit_na: float
     color_temperature_k: float
     color_rendering_index: float
-    color_duv: float  # distance from the black bodies in CIE 1960 u, v; positive is greenish
+    duv_ratio: float  # distance from the black bodies in CIE 1960 u, v; positive is greenish
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,9 +8,7 @@ from dataclasses import dataclass, fields
 import numpy as np
 
 from optics.chain.columns import Columns, columns
-from optics.chain.detail import _factors as factors
-from optics.chain.detail import _needed as needed
-from optics.chain.detail import _present as present
+from optics.chain.detail import factors, needed, present
 from optics.chain.evaluate import evaluate
 from optics.chain.fit import fit
 from optics.chain.light import Light, light

@@ -6,7 +6,7 @@ import numpy as np
 
 from optics.chain.columns import columns
 from optics.chain.cone import medium_index
-from optics.chain.detail import _upper_lp_mm as upper_lp_mm
+from optics.chain.detail import upper_lp_mm
 from optics.chain.evaluate import Figures
 from optics.chain.target import pupil_depth_mm
 from optics.fiberscope import Fiberscope

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from optics.chain.columns import columns
-from optics.chain.detail import _upper_lp_mm as upper_lp_mm
+from optics.chain.detail import upper_lp_mm
 from optics.chain.evaluate import evaluate
 from optics.fiberscope import Fiberscope
 from optics.spec import positive

@@ -42,7 +42,8 @@ def answer(here: Sketch, found: tuple[Lever, ...]) -> None:
     st.markdown(plain(largest_loss(report)))
     own, others = (next(iter(_unbroken(each)), None) for each in _by_lamp(found))
     if own is not None:
-        st.markdown(f"**With this lamp most would come from {plain(spoken(own.words))}.**")
+        though = f" {sentence_case(_though(report, own))}." if _though(report, own) else ""
+        st.markdown(f"**With this lamp most would come from {plain(spoken(own.words))}.**{plain(though)}")
     if others is not None and (own is None or others.gain_share > own.gain_share):
         change = others.words.rpartition(": ")[0]
         st.markdown(f"{plain(sentence_case(spoken(change)))} would give {plain(_more(others.gain_share))}.")
@@ -125,20 +126,26 @@ def _best(found: list[Lever]) -> list[Lever]:
     return list(first.values())
 
 
+def _though(report: Report, lever: Lever) -> str:
+    """What more light out of the tip does not say of the target: less at its center, or more of the field dark."""
+    now, said = report.target, []
+    if now is None or lever.center_lux is None:
+        return ""
+    if lever.center_lux < now.center_lux * (1 - LESS):
+        said.append(f"{percent(lever.center_lux / now.center_lux - 1)} at the center of the target")
+    if (lever.unlit_fraction or 0.0) > (now.unlit_fraction or 0.0) + LESS:
+        said.append(f"{100 * lever.unlit_fraction:.0f} % of the field dark")
+    return f"though then {' and '.join(said)}" if said else ""
+
+
 def _lever(report: Report, lever: Lever) -> None:
     """One change in words, what it costs, and a button that makes it."""
     change, _, gain = lever.words.rpartition(": ")
-    lost = ", ".join(field_name(name, f"needs.{name}") for name in lever.breaks)
-    cost = f"  \n:orange[✗ then the {lost} is not met]" if lost else ""
-    gives, now = f"{number(lever.delivered_lm)} lm", report.target
-    if now is not None and lever.center_lux is not None:
-        gives += f", {number(lever.center_lux)} lx at the center of the target"
-        if lever.center_lux < now.center_lux * (1 - LESS):
-            cost = (
-                f"  \n:gray[though {percent(lever.center_lux / now.center_lux - 1)} at the center of the target]{cost}"
-            )
-        if (lever.unlit_fraction or 0.0) > (now.unlit_fraction or 0.0) + LESS:
-            cost = f"  \n:gray[though {100 * lever.unlit_fraction:.0f} % of the field is dark then]{cost}"
+    though, lost = _though(report, lever), ", ".join(field_name(name, f"needs.{name}") for name in lever.breaks)
+    cost = f"  \n:gray[{plain(though)}]" if though else ""
+    cost += f"  \n:orange[✗ then the {lost} is not met]" if lost else ""
+    gives = f"{number(lever.delivered_lm)} lm"
+    gives += f", {number(lever.center_lux)} lx at the center of the target" if lever.center_lux is not None else ""
     with st.container(horizontal=True, wrap=False, vertical_alignment="center", gap="small"):
         st.markdown(f"**{plain(gain)}** {plain(spoken(change))}{cost}", width="stretch")
         st.button(

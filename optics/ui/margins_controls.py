@@ -28,8 +28,8 @@ def run(found: parts.Answer) -> None:
     with st.container(horizontal=True, vertical_alignment="bottom", gap="small", key="margins-run"):
         key = bound_to("margins:samples", ask.samples)
         st.selectbox(
-            "Samples", SAMPLES, SAMPLES.index(ask.samples), key=key, width=130, format_func=lambda count: f"{count:,}", on_change=_set,
-            args=("samples", key), help="More samples, a smaller standard error, a longer wait.",
+            "Samples", SAMPLES, SAMPLES.index(ask.samples), key=key, width=130, format_func=lambda count: f"{count:,}",
+            on_change=_set, args=("samples", key), help="More samples, a smaller standard error, a longer wait.",
         )  # fmt: skip
         key = bound_to("margins:seed", ask.seed)
         st.number_input(

@@ -11,10 +11,14 @@ from optics.ui.rows import Columns, columns
 from optics.ui.words import number, plain
 
 
-def run_words(found: Margins) -> str:
+def run_words(found: Margins, old: bool) -> str:
+    """What was drawn; and whether something else is asked since."""
     kinds = len(found.ranges)
     varied = "1 tolerance" if kinds == 1 else f"{kinds} tolerances"
-    return f"{found.samples:,} designs drawn from {varied}, seed {found.seed}. The same seed gives the same answer."
+    drawn = f"{found.samples:,} designs drawn from {varied}, seed {found.seed}."
+    if old:
+        return f":orange[**○ This is the answer from before your change.** Run to draw it again.] {drawn}"
+    return f"{drawn} The same seed gives the same answer."
 
 
 def still(found: Margins) -> str:

@@ -207,14 +207,18 @@ def relax(one: Searched) -> None:
     helped = next(((each, made) for each, made in one.near if each.smallest_change is not None), None)
     if helped is not None:
         each, made = helped
-        st.markdown(
-            f"**One number changed, and one does:** {plain(words.change(each.smallest_change))}.  \n"
-            f":gray[{plain(str(made))}]"
-        )
-        take_button("Try it", "pick:helped", one, each.set, {each.smallest_change.path: each.smallest_change.after})
-    st.markdown(words.relaxed(one.found, helped is not None))
-    moved = one.found.nearest_relaxation
-    if moved is not None:
-        st.markdown(f":gray[{plain(str(one.relaxed))}]")
+        said = f"**One number changed, and one does\\:** {plain(words.change(each.smallest_change))}."
+        settings = (each.set, {each.smallest_change.path: each.smallest_change.after})
+        _way_out(said, made, "Try", "pick:helped", one, *settings)
+    moved, said = one.found.nearest_relaxation, words.relaxed(one.found, helped is not None)
+    if moved is None:
+        st.markdown(said)
+    else:
         eased = {change.path: change.after for change in moved.relax}
-        take_button("Relax it and take this one", "pick:relax", one, moved.set, eased)
+        _way_out(said, one.relaxed, "Relax and take", "pick:relax", one, moved.set, eased)
+
+
+def _way_out(said: str, made: words.Parts, text: str, key: str, one: Searched, *settings: Settings) -> None:
+    with st.container(horizontal=True, vertical_alignment="center", gap="small", wrap=False):
+        st.markdown(f"{said}  \n:gray[{plain(str(made))}]", width="stretch")
+        take_button(text, key, one, *settings)

@@ -29,6 +29,8 @@ def split_words(found: Split, scope: Fiberscope) -> tuple[str, list[str]]:
     asked = keeping_words(found, scope)
     if asked:
         told.append(asked)
+    if not found.solved and found.now_gap_mm is not None:
+        told.append("As it stands the design leaves some of what fibers may take empty, so it lies beside the curves.")
     if not best.fits:
         told.append("At the finest share the ports as they are do not lie beside the image in this tube.")
     tube = "as its parts need it now" if found.solved else "as given"

@@ -32,11 +32,11 @@ def test_the_part_that_limits_by_brute_force_on_200_designs(random_designs):
     parts, _ = way_back(table, landed.center_w_m2_nm, seen)
     share = np.linspace(0.0, 1.0, 4001)
     best = np.zeros((len(PARTS) + 1, len(designs)))
-    uppers = np.array([chain_detail._upper_lp_mm(parts, ideal) for ideal in chain_detail.VARIANTS])
+    uppers = np.array([chain_detail.upper_lp_mm(parts, ideal) for ideal in chain_detail.VARIANTS])
     for step in share:
-        passes = chain_detail._margin(parts, uppers * step) >= 0
+        passes = chain_detail.margin(parts, uppers * step) >= 0
         best = np.where(passes, uppers * step, best)
-    gain = np.where(chain_detail._present(parts), best[1:] - best[0], -np.inf)
+    gain = np.where(chain_detail.present(parts), best[1:] - best[0], -np.inf)
     limited = found.limited_by()
     close = np.sort(gain, axis=0)[-2:]
     for row, part in enumerate(limited):

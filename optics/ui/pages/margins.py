@@ -16,7 +16,7 @@ controls, pictures = st.container(), st.container(key="answer-pictures")
 with first:
     found = parts.answer()
 one = found.studied
-look.dim(here.wrong is not None)
+look.dim(here.wrong is not None or found.old)
 
 with first:
     if one is not None:
@@ -26,13 +26,9 @@ with first:
 with controls:
     if found.wrong:
         st.error(plain(found.wrong), icon=":material/error:")
-    if found.old:
-        st.warning(
-            "This is the last answer: what is asked has changed since. Run to draw it again.", icon=":material/history:"
-        )
     margins_controls.run(found)
     if one is not None:
-        st.caption(plain(margins_rests.run_words(one.found)))
+        st.caption(margins_rests.run_words(one.found, found.old))
 
 if one is not None:
     with pictures:
