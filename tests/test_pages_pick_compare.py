@@ -136,6 +136,7 @@ def test_a_search_that_is_stopped_says_so(monkeypatch):
     app = click(opened("pick", "gearbox_tooth"), "pick:search")
     assert app.session_state["pick"].last.found.stopped
     assert any("Stopped early" in item.value for item in app.caption)
+    assert not any("No single number" in item.value for item in app.markdown), "that was not looked for"
     assert "pick:search" in [item.key for item in app.button], "the whole search can still be asked for"
 
 

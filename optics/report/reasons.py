@@ -4,7 +4,8 @@ from collections.abc import Callable, Mapping
 
 from optics.fiberscope import Fiberscope
 from optics.guide.packing import core_share
-from optics.source.launch import Butt, Matched, Rated, Spot
+from optics.source.lamp import etendue_mm2_sr
+from optics.source.launch import Butt, Matched, Spot, spot_radiance_ratio
 
 
 def step_reason(name: str, fiberscope: Fiberscope, value: Mapping[str, float]) -> str:
@@ -39,15 +40,29 @@ def _cone(scope: Fiberscope, value: Mapping[str, float]) -> str:
     return f"the launch fills NA {fill:.3g}, the fiber takes {takes:.3g}: a cone of {takes:.3g} would waste nothing"
 
 
+def least_spot_mm(scope: Fiberscope) -> float:
+    """The smallest spot that the lamp's radiance allows in the launch's own cone."""
+    lamp, launch = scope.source.lamp, scope.source.launch
+    ratio = spot_radiance_ratio(
+        transmission=launch.transmission,
+        lamp_etendue_mm2_sr=etendue_mm2_sr(diameter_mm=lamp.emitter_mm, na=lamp.cone_na),
+        spot_mm=launch.spot_mm,
+        cone_na=launch.cone_na,
+        gaussian=launch.profile == "gaussian",
+    )
+    return float(launch.spot_mm * ratio**0.5)
+
+
 def _spot(scope: Fiberscope, value: Mapping[str, float]) -> str:
     face = scope.guide.cable.diameter_mm if scope.guide.cable else scope.guide.bundle.diameter_mm
     launch = scope.source.launch
     if isinstance(launch, Spot):
-        hint = (
-            ""
-            if launch.spot_mm <= face and launch.profile == "top_hat"
-            else f": a spot within {face:.3g} mm would waste nothing"
-        )
+        least = least_spot_mm(scope)
+        hint = f": a spot within {face:.3g} mm would waste nothing"
+        if launch.spot_mm <= face and launch.profile == "top_hat":
+            hint = ""
+        elif least > face:
+            hint = f": the lamp's radiance allows none below {least:.3g} mm in this cone"
         return f"a spot of {launch.spot_mm:.3g} mm on a face of {face:.3g} mm{hint}"
     if isinstance(launch, Butt):
         return f"an emitter of {scope.source.lamp.emitter_mm:.3g} mm before a face of {face:.3g} mm, gap {launch.gap_mm:.3g} mm"
@@ -109,8 +124,6 @@ REASONS: dict[str, Callable[[Fiberscope, Mapping[str, float]], str]] = {
     "spreading": lambda scope, value: f"the cover spreads each ray by NA {scope.scene.cover.spread_na:.3g}",
     "cover": lambda scope, value: "two more faces of the cover",
 }
-
-assert Rated  # a launch that falls through to the last clause of _condenser
 
 
 def limit_reason(part: str | None) -> str:

@@ -8,6 +8,7 @@ from optics.body.lumen import smallest_lumens
 from optics.body.section import jacketed_mm
 from optics.chain.columns import columns, written_out
 from optics.chain.fit import fit
+from optics.chain.solve import numbered
 from optics.chain.target import field_of_view
 from optics.fiberscope import Fiberscope
 from optics.units import rad_from_deg
@@ -42,6 +43,7 @@ class SectionView:
 
 def section_view(fiberscope: Fiberscope) -> SectionView | None:
     """Where every part lies in the tube, as the section of the design is laid out. None without a body."""
+    fiberscope = numbered(fiberscope)
     if fiberscope.body is None:
         return None
     table = columns([fiberscope])
@@ -147,6 +149,7 @@ class PassageView:
 
 def passage_view(fiberscope: Fiberscope) -> PassageView | None:
     """The tip where it is tightest: its side on the inner wall in the middle of the bend. None without a bore."""
+    fiberscope = numbered(fiberscope)
     asked = fiberscope.body and fiberscope.body.passage
     if not asked or asked.bore_mm is None:
         return None

@@ -1,7 +1,6 @@
 """What the pictures of the fit show: the face of the tip, the tube behind it with its fibers, and which parts set its size."""
 
 from dataclasses import dataclass
-from functools import lru_cache
 
 import numpy as np
 
@@ -9,7 +8,7 @@ from optics.body.fill import filled
 from optics.body.section import jacketed_mm
 from optics.chain.columns import Columns, columns
 from optics.chain.fit import fit
-from optics.chain.solve import PATHS, solved, with_solved
+from optics.chain.solve import numbered
 from optics.chain.target import field_of_view
 from optics.fiberscope import Fiberscope
 from optics.report.view_body import Part, section_view
@@ -66,14 +65,6 @@ class Weight:
     parts_count: int
     adds_mm: float
     comes_free: bool
-
-
-@lru_cache(maxsize=8)
-def numbered(fiberscope: Fiberscope) -> Fiberscope:
-    """The design with diameters that are to be solved for as numbers: half a second where there is one, so kept for a while."""
-    table = solved(columns([fiberscope]))
-    guide, image = (float(table[path][0]) for path in PATHS)
-    return with_solved(fiberscope, {"guide_diameter_mm": guide, "image_mm": image})
 
 
 def tube_view(fiberscope: Fiberscope) -> TubeView | None:

@@ -12,6 +12,7 @@ from optics.chain.cone import medium_index
 from optics.chain.evaluate import evaluate
 from optics.chain.fit import fit
 from optics.chain.light import Light, light
+from optics.chain.solve import numbered
 from optics.chain.target import field_of_view, port_objects, pupil_depth_mm
 from optics.fiberscope import BundleImage, Fiberscope
 from optics.image.objective import accepted_fraction, face_irradiance_factor, magnification, working_f_number
@@ -78,6 +79,7 @@ class TargetMap:
 
 def target_map(fiberscope: Fiberscope, points: int = 121) -> TargetMap | None:
     """Fine map of the light on the target, points x points; exact at each. None without a target."""
+    fiberscope = numbered(fiberscope)
     if fiberscope.scene is None:
         return None
     table = columns([fiberscope])
@@ -197,6 +199,7 @@ class Spectra:
 
 def spectra(fiberscope: Fiberscope) -> Spectra:
     """The color of the light: in, out, and on its way back to the viewer."""
+    fiberscope = numbered(fiberscope)
     table = columns([fiberscope])
     found = evaluate(table)
     spectrum = {name: power[0] for name, power in found.spectrum_w_nm.items()}

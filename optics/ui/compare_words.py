@@ -95,9 +95,14 @@ def _same(side: Side) -> bool:
 
 
 def _cell(quantity: str, value: float | None, reference: float | None, place: int) -> str:
-    said = plain(amount(quantity, value))
-    moved = "" if place == 0 else moved_by(value, reference)
+    said = plain(_whole(amount(quantity, value)))
+    moved = "" if place == 0 else _whole(moved_by(value, reference))
     return f"{said} :gray[{plain(moved)}]" if moved else said
+
+
+def _whole(said: str) -> str:
+    """A number that keeps its unit beside it on a narrow screen."""
+    return said.replace(" ", "\u00a0")
 
 
 def moved_by(value: float | None, reference: float | None) -> str:
@@ -212,7 +217,7 @@ def _change(row: Difference) -> str:
         return "none" if row.value is None else amount(row.quantity, row.value)
     sign = "+" if row.difference > 0 else "−"
     share = moved_by(row.value, row.reference)
-    return f"{sign}{amount(row.quantity, abs(row.difference))}" + (f" ({share})" if share else "")
+    return _whole(f"{sign}{amount(row.quantity, abs(row.difference))}") + (f" ({_whole(share)})" if share else "")
 
 
 # Crossovers

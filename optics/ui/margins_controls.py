@@ -48,6 +48,21 @@ def button(key: str, found: parts.Answer) -> None:
     )  # fmt: skip
 
 
+def undo() -> None:
+    """What was entered for another state of the design can be taken back at once."""
+    ask = parts.asked()
+    if ask.given:
+        _back("Set the entered tolerances back", "margins:undo", None)
+    if ask.worn:
+        _as_new("margins:undo:aged")
+
+
+def _as_new(key: str) -> None:
+    st.button(
+        "All as new", key=key, type="tertiary", icon=":material/undo:", on_click=parts.change, args=("worn", {})
+    )  # fmt: skip
+
+
 def _set(what: str, key: str) -> None:
     if st.session_state[key] is not None:
         parts.change(what, st.session_state[key])
@@ -129,10 +144,7 @@ def years(found: parts.Answer) -> None:
     with st.container(horizontal=True, vertical_alignment="center"):
         button("margins:run:aged", found)
         if ask.worn:
-            st.button(
-                "All as new", key="margins:aged:back", type="tertiary", icon=":material/undo:",
-                on_click=parts.change, args=("worn", {}),
-            )  # fmt: skip
+            _as_new("margins:aged:back")
         else:
             st.button(
                 "Fill in an example, made up", key="margins:aged:example", type="tertiary", icon=":material/edit_note:",

@@ -131,7 +131,8 @@ def _aged(found: Margins) -> str:
     condition = f"**Aged\\:** {plain(_worn(found.aging))}\\:"
     if found.aged.all_needs is None:
         return f"{condition} see the lines in the histograms."
-    return f"{condition} {odds(found.aged) if found.aged.all_needs else 'not one'} of them still meet all needs."
+    still = f"{odds(found.aged)} of them still meet" if found.aged.all_needs else "not one still meets"
+    return f"{condition} {still} all needs."
 
 
 def _worn(condition: Aged) -> str:

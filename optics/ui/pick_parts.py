@@ -192,11 +192,9 @@ def _shown(value: float | None) -> str | None:
 
 def nearly(one: Searched) -> None:
     """The nearest misses, each with the smallest single change that helps, to be tried."""
-    if not one.near:
-        st.markdown("The search was stopped before those that fail were looked at.")
     for place, (each, made) in enumerate(one.near):
         with st.container(horizontal=True, vertical_alignment="center", gap="small", wrap=False):
-            st.markdown(words.nearly(each, made), width="stretch")
+            st.markdown(words.nearly(each, made, one.found.stopped), width="stretch")
             if each.smallest_change is not None:
                 change = {each.smallest_change.path: each.smallest_change.after}
                 take_button("Try", f"pick:near:{place}", one, each.set, change)

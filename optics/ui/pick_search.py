@@ -18,6 +18,8 @@ from optics.study.pick_axes import axes
 from optics.study.pick_settings import Settings
 from optics.ui import pick_words as words
 from optics.ui import sketch
+from optics.ui.pick_tried import Tried
+from optics.ui.pick_tried import tried as axis_tried
 from optics.ui.sketch import Sketch
 
 NEAREST, SHOWN = 60, 6  # failing candidates that are looked at, and shown
@@ -200,11 +202,11 @@ def _others(failed: Failures) -> np.ndarray:
 
 
 @st.cache_data(max_entries=32, show_spinner=False)
-def tried(key: Key, _design: Design) -> tuple[words.Tried, ...]:
+def tried(key: Key, _design: Design) -> tuple[Tried, ...]:
     """What a search goes through, axis by axis, the design's own choice first."""
     found = []
     for axis in axes(_design.document, _design.fiberscope):
         documents = [presets.edited(_design.document, settings) for settings in axis.settings]
         made = [words.parts(document, presets.resolve(document).fiberscope) for document in documents]
-        found.append(words.tried(axis.name, made))
+        found.append(axis_tried(axis.name, made))
     return tuple(found)

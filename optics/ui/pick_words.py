@@ -1,6 +1,5 @@
 """A search in words for the screen: what is asked, the answer, the candidates and what they lack."""
 
-import re
 from dataclasses import dataclass
 
 from optics.fiberscope import SOLVE, Fiberscope
@@ -13,16 +12,10 @@ from optics.study.pick_needs import SHORT
 from optics.study.smallest_change import Change
 from optics.ui.margins_words import limit
 from optics.ui.names import field_name, place, preset_name
-from optics.ui.rows import Columns, columns, margin
+from optics.ui.rows import margin
 from optics.ui.words import exact, number, plain, sentence_case, unit
 
 PORTS = {"annulus": "ring", "placed": "placed ports", "crescent": "crescent"}
-AXES = {
-    "guide": "light guides",
-    "lamp": "lamps",
-    "ports": "shapes of light ports",
-    "image": "image parts with their lenses",
-}
 RELAXED = {"body.passage.bore_mm": "the bore", "body.section.outer_diameter_mm": "the tube's outer diameter"}
 COST = "1 cheap, 5 dear, by plain rules of the trade; no price stands behind them."
 CHOSEN = "field_of_view_deg"  # the lens is chosen for it, so its margin says nothing
@@ -39,7 +32,7 @@ class Parts:
 
     def __str__(self) -> str:
         return "; ".join(
-            part for part in (self.guide, " ".join(filter(None, (self.image, self.lens))), self.lamp) if part
+            part for part in (self.guide, ", ".join(filter(None, (self.image, self.lens))), self.lamp) if part
         )
 
 
@@ -51,7 +44,7 @@ def parts(document: Document, scope: Fiberscope) -> Parts:
         return preset_name(str(name)) if name else own
 
     bundle = scope.guide.bundle
-    size = "" if bundle.diameter_mm == SOLVE else f" {exact(bundle.diameter_mm)} mm"
+    size = "" if bundle.diameter_mm == SOLVE else f" ⌀ {exact(bundle.diameter_mm)} mm"
     guide = f"{named('guide.fiber', 'own fiber')}{size}"
     if scope.scene is not None:
         form = scope.scene.ports.form
@@ -63,7 +56,7 @@ def parts(document: Document, scope: Fiberscope) -> Parts:
             image = f"chip {named('image.chip', exact(scope.image.chip.pixel_um) + ' µm')}"
         else:
             own = f"bundle {exact(scope.image.bundle.pitch_um)} µm"
-            image = f"{named('image.bundle', own)} {exact(scope.image.bundle.diameter_mm)} mm"
+            image = f"{named('image.bundle', own)} ⌀ {exact(scope.image.bundle.diameter_mm)} mm"
     return Parts(guide, image, lens, named("source.lamp", "own lamp"))
 
 
@@ -86,51 +79,6 @@ def asked(scope: Fiberscope) -> str:
     if not needs:
         said.insert(0, "no needs are set, so whatever can be built and passes counts")
     return "**Asked\\:** " + plain("; ".join(said)) + "."
-
-
-@dataclass(frozen=True, slots=True)
-class Tried:
-    """One axis of a search: how many choices, and what they are."""
-
-    count: int
-    name: str
-    what: str
-
-
-def tried(axis: str, made: list[Parts]) -> Tried:
-    """The choices of one axis in words, each once."""
-    read = {"guide": lambda one: one.guide.split(",")[0], "lamp": lambda one: one.lamp, "image": lambda one: one.image}
-    said = [read[axis](one) if axis in read else one.guide.rpartition(", ")[2] for one in made]
-    if axis in ("guide", "image"):
-        said = gathered(said)
-    return Tried(max(len(made) - 1, 1), AXES.get(axis, axis), "; ".join(dict.fromkeys(said)))
-
-
-def gathered(said: list[str]) -> list[str]:
-    """Sizes of the same part behind one another.
-
-    >>> gathered(["glass 1 mm", "glass 2 mm", "chip"])
-    ['glass: 1, 2 mm', 'chip']
-    """
-    sizes: dict[str, list[str]] = {}
-    for one in dict.fromkeys(said):
-        found = re.fullmatch(r"(.+) ([\d.]+) mm", one)
-        sizes.setdefault(found[1] if found else one, []).extend([found[2]] if found else [])
-    return [f"{name}: {', '.join(many)} mm" if many else name for name, many in sizes.items()]
-
-
-def search_words(found: tuple[Tried, ...]) -> str:
-    said = [f"{each.count} {each.name if each.count > 1 else 'of the ' + each.name}" for each in found]
-    listed = f"{', '.join(said[:-1])} and {said[-1]}" if len(said) > 1 else said[0]
-    return (
-        f"A search puts together {listed}, sends each combination through the whole chain, and keeps those that no other "
-        "beats in everything: detail, light, outer diameter, bend radius and cost class. The job stays as the sketch has it."
-    )
-
-
-def tried_table(found: tuple[Tried, ...]) -> Columns:
-    rows = [(f"{each.count} {each.name}", plain(each.what)) for each in found]
-    return columns(("tried", "the design's own first"), rows)
 
 
 # The answer
@@ -225,9 +173,11 @@ def change(moved: Change) -> str:
     )
 
 
-def nearly(failed: Failed, made: Parts) -> str:
-    """One that nearly does it: what fails first, and what would make it pass."""
-    if failed.smallest_change is None:
+def nearly(failed: Failed, made: Parts, stopped: bool) -> str:
+    """One that nearly does it: what fails first, and what would make it pass; after a stop that was not looked for."""
+    if stopped:
+        help = "What would help was not looked for: the search was stopped."
+    elif failed.smallest_change is None:
         help = "No single number, within its usual bounds, makes it pass."
     else:
         size = failed.smallest_change.after / failed.smallest_change.before - 1

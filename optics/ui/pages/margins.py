@@ -26,6 +26,7 @@ with first:
 with controls:
     if found.wrong:
         st.error(plain(found.wrong), icon=":material/error:")
+        margins_controls.undo()
     margins_controls.run(found)
     if one is not None:
         st.caption(margins_rests.run_words(one.found, found.old))

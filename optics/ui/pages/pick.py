@@ -3,7 +3,7 @@
 import streamlit as st
 
 from optics.report.verdict import sentence
-from optics.ui import headline, look, sketch
+from optics.ui import headline, look, pick_tried, sketch
 from optics.ui import pick_parts as parts
 from optics.ui import pick_search as search
 from optics.ui import pick_words as words
@@ -24,7 +24,7 @@ one, tried = found.searched, search.tried(search.key_of(here.design, here), here
 with answer:
     if one is None:
         st.header("Which combination of parts does this job?", anchor=False)
-        st.markdown(plain(words.search_words(tried)))
+        st.markdown(plain(pick_tried.search_words(tried)))
     else:
         mark, said = words.headline(one.found)
         st.header(f"{mark} {plain(said)}", anchor=False)
@@ -39,7 +39,7 @@ with answer:
 
 if one is None:
     st.subheader("What is tried", anchor=False)
-    st.table(words.tried_table(tried), border="horizontal", hide_index=True, alt="The choices of a search")
+    st.table(pick_tried.tried_table(tried), border="horizontal", hide_index=True, alt="The choices of a search")
 else:
     if one.found.picks:
         left, right = st.columns([3, 2], gap="medium")
@@ -59,7 +59,7 @@ else:
             st.subheader("What fails first, in the order of the light", anchor=False)
             parts.show_failing(one)
     with st.expander("What was tried", key="pick:tried"):
-        st.table(words.tried_table(tried), border="horizontal", hide_index=True, alt="The choices of a search")
+        st.table(pick_tried.tried_table(tried), border="horizontal", hide_index=True, alt="The choices of a search")
 st.caption(
     f"Design {here.report.design_hash}, version {here.report.version}. A screening estimate; it certifies nothing."
 )
