@@ -73,21 +73,24 @@ def evaluate(columns: Columns) -> Figures:
     columns = solved(columns)
     seen = field_of_view(columns)
     body, ports = fit(columns, seen["image_mm"])
+    # Designs alike in their stations go together, so that no block walks through what few of its designs have.
+    order = np.argsort(columns.has("guide.cable.length_m"), kind="stable")
     blocks = []
     for start in range(0, columns.count, BLOCK):
-        rows = np.arange(start, min(start + BLOCK, columns.count))
+        rows = order[start : start + BLOCK]
         blocks.append(_block(columns.take(rows), _taken(seen, rows), _taken(body, rows), _taken(ports, rows)))
-    value = {
-        name: np.concatenate([block.value[name] for block in blocks]) for name in (blocks[0].value if blocks else ())
-    }
+    back = np.argsort(order, kind="stable")
+
+    def joined(parts: list[np.ndarray]) -> np.ndarray:
+        return np.concatenate(parts)[back]
+
+    value = {name: joined([block.value[name] for block in blocks]) for name in (blocks[0].value if blocks else ())}
     after = {
-        step: np.concatenate(
-            [block.after_lm.get(step, np.full(len(block.value["delivered_lm"]), np.nan)) for block in blocks]
-        )
+        step: joined([block.after_lm.get(step, np.full(len(block.value["delivered_lm"]), np.nan)) for block in blocks])
         for step in STEPS
         if any(step in block.after_lm for block in blocks)
     }
-    spectrum = {name: np.concatenate([block.spectrum_w_nm[name] for block in blocks]) for name in SPECTRA if blocks}
+    spectrum = {name: joined([block.spectrum_w_nm[name] for block in blocks]) for name in SPECTRA if blocks}
     value["guide_diameter_mm"] = columns["guide.bundle.diameter_mm"]
     return Figures({**seen, **body, **value}, after, spectrum)
 

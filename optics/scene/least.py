@@ -6,7 +6,7 @@ from optics.scene.region import bin_factor, distinct_ports, ports_area_mm2
 
 # The grid: center, rings and spokes, and a finer rim (every 3 degrees: halfway between 2, 3, 4, 5, 6, 10 ports);
 # nodes of the profile of one port.
-RINGS, SPOKES, RIM, NODES = 12, 40, 120, 48
+RINGS, SPOKES, RIM, NODES = 12, 36, 120, 40
 
 
 def least_per_mm2(field, flux):

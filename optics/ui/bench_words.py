@@ -52,7 +52,8 @@ def said(text: str) -> str:
     text = re.sub(
         r"With ((?:--without \d+ ?)+)", lambda found: f"Without {'it' if found[1].count('--') == 1 else 'them'} ", text
     )
-    return sentence_case(spoken(text.replace("--without", "The row to leave out")))
+    text = spoken(text.replace("--without", "The row to leave out"))
+    return text if re.match(r"\S*[._]", text) else sentence_case(text)  # names of files and columns stay as they are
 
 
 def verdict(found: Bench) -> tuple[str, str, list[str]]:

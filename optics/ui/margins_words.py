@@ -15,7 +15,7 @@ NUMBERS = {  # headline numbers that no need names
     "smallest_line_mm": "thinnest line",
 }
 SWITCHES = {  # what messages call by the name of a switch of the command
-    "--tolerance path=low:high": "in the table of tolerances",
+    "with --tolerance path=low:high": "in the table of tolerances",
     r"with --tolerance": "in the table of tolerances",
     "--tolerance ": "",
     "--samples": "the number of samples",
