@@ -2,10 +2,9 @@
 
 import argparse
 from collections.abc import Callable
-from pathlib import Path
 from typing import Any
 
-from optics.commands.terminal import add_design, opened
+from optics.commands.terminal import add_design, opened, writable, write
 from optics.fiberscope import Fiberscope
 from optics.spec import OutOfRange
 from optics.tables import nearest
@@ -42,7 +41,7 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 
 def run(options: argparse.Namespace) -> int:
-    path = _writable(Path(options.to), options.force)
+    path = writable(options.to, SUFFIXES, options.force)
     if options.figure not in FIGURES:
         raise OutOfRange(
             f"FIGURE is {options.figure!r}{nearest(options.figure, list(FIGURES))}; it must be one of: {', '.join(FIGURES)}."
@@ -55,21 +54,8 @@ def run(options: argparse.Namespace) -> int:
 
     figure = _drawn(fiberscope, options.figure)(palette=DARK if options.dark else LIGHT)
     data = export.png(figure, options.dpi) if path.suffix == ".png" else export.FORMATS[path.suffix[1:]](figure)
-    try:
-        path.write_bytes(data)
-    except OSError as wrong:
-        raise OutOfRange(f"--to {path} cannot be written: {(wrong.strerror or 'unknown reason').lower()}.") from None
-    print(path)
+    write(path, data)
     return 0
-
-
-def _writable(path: Path, force: bool) -> Path:
-    """The path, unless its ending says no format or something stands there already."""
-    if path.suffix not in SUFFIXES:
-        raise OutOfRange(f"--to {path} does not end in one of: {', '.join(SUFFIXES)}.")
-    if path.exists() and not force:
-        raise OutOfRange(f"--to {path} exists already; --force writes over it.")
-    return path
 
 
 def _drawn(fiberscope: Fiberscope, name: str) -> Callable[..., Any]:

@@ -1,11 +1,10 @@
 """`report`: the whole answer for one design on paper (PDF), or its cross-section as a drawing in millimeters (DXF)."""
 
 import argparse
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 from optics import presets
-from optics.commands.terminal import add_design, opened
+from optics.commands.terminal import add_design, opened, writable, write
 from optics.fiberscope import Fiberscope
 from optics.spec import OutOfRange
 
@@ -29,24 +28,11 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 
 def run(options: argparse.Namespace) -> int:
-    path = _writable(Path(options.to), options.force)
+    path = writable(options.to, SUFFIXES, options.force)
     design = opened(options)
     data = pdf_of(design) if path.suffix == ".pdf" else dxf_of(design)
-    try:
-        path.write_bytes(data)
-    except OSError as wrong:
-        raise OutOfRange(f"--to {path} cannot be written: {(wrong.strerror or 'unknown reason').lower()}.") from None
-    print(path)
+    write(path, data)
     return 0
-
-
-def _writable(path: Path, force: bool) -> Path:
-    """The path, unless its ending says no format or something stands there already."""
-    if path.suffix not in SUFFIXES:
-        raise OutOfRange(f"--to {path} does not end in one of: {', '.join(SUFFIXES)}.")
-    if path.exists() and not force:
-        raise OutOfRange(f"--to {path} exists already; --force writes over it.")
-    return path
 
 
 def pdf_of(design: presets.Design) -> bytes:

@@ -5,9 +5,11 @@ import json
 import shutil
 import textwrap
 from collections.abc import Iterable, Sequence
+from pathlib import Path
 from typing import Any
 
 from optics import presets
+from optics.spec import OutOfRange
 
 
 def add_design(parser: argparse.ArgumentParser) -> None:
@@ -32,6 +34,25 @@ def opened(options: argparse.Namespace) -> presets.Design:
     settings = dict(presets.parse_setting(text) for text in options.settings)
     settings = {path: None if value == "absent" else value for path, value in settings.items()}
     return presets.resolve(presets.edited(design.document, settings), str(options.design))
+
+
+def writable(to: str, suffixes: Sequence[str], force: bool) -> Path:
+    """The path to write to, unless its ending says no format or something stands there already."""
+    path = Path(to)
+    if path.suffix not in suffixes:
+        raise OutOfRange(f"--to {path} does not end in one of: {', '.join(suffixes)}.")
+    if path.exists() and not force:
+        raise OutOfRange(f"--to {path} exists already; --force writes over it.")
+    return path
+
+
+def write(path: Path, data: bytes) -> None:
+    """Write a file and say where; what cannot be written is one sentence."""
+    try:
+        path.write_bytes(data)
+    except OSError as wrong:
+        raise OutOfRange(f"--to {path} cannot be written: {(wrong.strerror or 'unknown reason').lower()}.") from None
+    print(path)
 
 
 def as_json(answer: Any) -> str:

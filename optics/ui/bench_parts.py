@@ -1,4 +1,4 @@
-"""What the page of the bench is made of: the readings of this session, the fit, its picture, and the fit in the design."""
+"""What the page of the bench is made of: the readings of this tab, the fit, its picture, and the fit in the design."""
 
 from dataclasses import dataclass
 from typing import Any
@@ -32,7 +32,7 @@ class Taken:
 
 @dataclass
 class Lab:
-    """The readings of this session, and what is asked of them."""
+    """The readings of this tab, and what is asked of them."""
 
     text: str = ""
     name: str = words.TYPED

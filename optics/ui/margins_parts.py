@@ -59,7 +59,7 @@ class Asked:
 
 
 def asked() -> Asked:
-    """What is asked in this session about the design that was opened."""
+    """What is asked in this tab about the design that was opened."""
     here, found = sketch.current(), st.session_state.get("margins")
     if found is None or found.opened != here.opened:
         found = st.session_state["margins"] = Asked(here.opened)

@@ -87,7 +87,7 @@ class Answer:
 
 
 def hunt() -> Hunt:
-    """What this session has searched; another design that is opened starts afresh."""
+    """What this tab has searched; another design that is opened starts afresh."""
     here, found = sketch.current(), st.session_state.get("pick")
     if found is None or found.opened != here.opened:
         if found is not None and found.job is not None:

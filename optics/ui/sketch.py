@@ -49,7 +49,7 @@ class Sketch:
 
 
 def current() -> Sketch:
-    """The sketch of this session."""
+    """The sketch of this tab."""
     return st.session_state["sketch"]
 
 
