@@ -625,6 +625,8 @@ BAD = {
     "one long line": ("length_m,power_mw\n" + "9" * 200_000 + ",1\n1,2\n2,3\n", "no table of numbers|must be a finite"),
     "only a note": ("# nothing here\n", "is empty"),
     "quotes": ('length_m,power_mw\n"1,300\n"2",280\n3,270\n', "cells under|must be a number"),
+    "no light at all": ("bend_radius_mm,bend_deg,power_mw\n1e-9,360,254\n1e-9,180,166\n1e-9,90,35\n", "no number fits"),
+    "nonsense": ("length_m,power_mw,standard_error_mw\n2,181.9,0.001\n1,70.57,1e300\n2,120,1e-12\n9,188,1\n", "."),
     "zero byte": ("length_m,power_mw\n1,3\x000\n2,280\n3,270\n", "must be a number"),
 }
 

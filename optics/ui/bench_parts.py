@@ -1,5 +1,6 @@
 """What the page of the bench is made of: the readings of this tab, the fit, its picture, and the fit in the design."""
 
+import re
 from dataclasses import dataclass
 from typing import Any
 
@@ -19,6 +20,9 @@ from optics.ui import bench_words as words
 from optics.ui import pictures, sketch
 
 KEPT = 24
+NOT_FITTED = (
+    "These readings go so far against the design's own model that no number fits them; look at units, settings and rows."
+)
 POINTS, MOST_LINES = 41, 4  # of a line of the model; lines for different angles turned
 
 
@@ -130,7 +134,16 @@ def _fit(
     _design: Design,
     _readings: Readings,
 ) -> Bench:
-    return bench(_design, _readings, source=name, flat=flat, without=left_out)
+    try:
+        with np.errstate(all="ignore"):
+            found = bench(_design, _readings, source=name, flat=flat, without=left_out)
+    except (ArithmeticError, ValueError) as wrong:
+        if isinstance(wrong, OutOfRange):
+            raise
+        raise OutOfRange(NOT_FITTED) from None
+    if re.search(r"\b(nan|inf)\b", found.verdict):
+        raise OutOfRange(NOT_FITTED)
+    return found
 
 
 # The picture

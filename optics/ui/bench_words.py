@@ -104,7 +104,7 @@ def residual_table(found: Bench, all_of_them: Readings) -> Columns:
 
 
 def _against(item: Residual) -> tuple[str, str, str, str]:
-    off = f"{100 * item.residual / item.model:+.1f} %".replace("-", "−")
+    off = f"{100 * item.residual / item.model:+.1f} %".replace("-", "−") if item.model else "no light"
     return number(item.model, 4), off, f"{item.normalized:+.1f}".replace("-", "−"), "✗ apart" if item.apart else ""
 
 

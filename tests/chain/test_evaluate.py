@@ -157,3 +157,19 @@ def test_water_narrows_the_field_and_less_light_is_reflected_at_the_exit(documen
     air, water = sized(document), sized(document, scene__target__medium="water")
     assert water.summary.field_of_view_deg < air.summary.field_of_view_deg
     assert water.light.delivered_lm > air.light.delivered_lm
+
+
+@pytest.mark.slow
+def test_nothing_is_brighter_than_the_lamp_in_10000_designs(document):
+    """Radiance per angle bin of the delivered beam over the cores alone, against the lamp's."""
+    from random_designs import first_valid
+
+    table = columns(first_valid(document, 10_000))
+    for start in range(0, table.count, 500):
+        few = table.take(np.arange(start, start + 500))
+        lit = light(few)
+        lamp = lit.after_lm["lamp"] / etendue_mm2_sr(
+            diameter_mm=few["source.lamp.emitter_mm"], na=few["source.lamp.cone_na"]
+        )
+        per_bin = np.pi * lit.value["core_area_mm2"][:, None] * np.diff(lit.beam.sine2_edges, axis=1)
+        assert np.all(lit.beam.bin_lm / per_bin <= lamp[:, None] * (1 + 1e-9))
