@@ -141,7 +141,13 @@ def test_what_was_added_is_not_marked_value_by_value():
     assert app.session_state["sketch"].document == DEMO
 
 
-@pytest.mark.parametrize("name", preset_names("fiberscopes"))
+SHOWN = [
+    pytest.param(name, marks=[] if name in ("gearbox_tooth", "injector_hole") else pytest.mark.slow)
+    for name in preset_names("fiberscopes")
+]
+
+
+@pytest.mark.parametrize("name", SHOWN)
 def test_every_section_of_every_demo_is_shown(name):
     app = opened(drawn=True, d=link.written(name, {}))
     assert app.get("image"), "the light strip is missing"

@@ -131,7 +131,12 @@ UNITS = {
 }
 
 
-@pytest.mark.parametrize("name", [*VARIANTS, *DEMOS])
+# Seconds each: a few in the normal run, the rest with -m slow.
+QUICK = ("demo", "eye", "bare", "bore", "nothing resolved")
+CHECKED = [pytest.param(name, marks=[] if name in QUICK else pytest.mark.slow) for name in [*VARIANTS, *DEMOS]]
+
+
+@pytest.mark.parametrize("name", CHECKED)
 def test_pictures_say_their_units_clip_nothing_and_keep_words_apart(made, name):
     for turn, (picture, figure_in) in enumerate(pictures(made(name))):
         figure = figure_in((LIGHT, DARK)[turn % 2])

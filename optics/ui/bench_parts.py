@@ -20,9 +20,7 @@ from optics.ui import bench_words as words
 from optics.ui import pictures, sketch
 
 KEPT = 24
-NOT_FITTED = (
-    "These readings go so far against the design's own model that no number fits them; look at units, settings and rows."
-)
+NOT_FITTED = "These readings go so far against the design's own model that no number fits them; look at units, settings and rows."
 POINTS, MOST_LINES = 41, 4  # of a line of the model; lines for different angles turned
 
 

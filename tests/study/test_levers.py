@@ -61,7 +61,9 @@ def answers(variant: str):
     ]
 
 
-@pytest.mark.parametrize("variant", VARIANTS)
+@pytest.mark.parametrize(
+    "variant", [pytest.param(name, marks=pytest.mark.slow if name == "solved" else []) for name in VARIANTS]
+)
 def test_each_is_what_size_says_of_the_changed_design(variant):
     now, found = answers(variant)
     assert found
