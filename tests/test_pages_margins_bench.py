@@ -18,6 +18,7 @@ from random_designs import BARE, CHIP
 from optics import presets
 from optics.figures import bench as bench_figures
 from optics.figures import margins as figures
+from optics.figures import margins_spread as spread_figures
 from optics.figures.palette import DARK, LIGHT
 from optics.presets import value_at
 from optics.spec import OutOfRange
@@ -130,14 +131,17 @@ def test_margin_pictures_say_their_units_and_keep_words_apart(name, aged):
         wanted = next((need.wanted for need in one.found.new.needs if need.name == item.name), None)
         old = one.aged[item.name] if aged else None
         title = margins_words.titled(item.name)
-        check(figures.spread(item.name, title, one.numbers[item.name], item.value, wanted, old, palette=palette), title)
+        check(
+            spread_figures.spread(item.name, title, one.numbers[item.name], item.value, wanted, old, palette=palette),
+            title,
+        )
 
 
 def test_the_shaded_share_is_the_share_beyond():
     """Areas of the histogram, measured in the picture: what is shaded over all, against a count."""
     samples = triangular_quantile(share=(np.arange(4000) + 0.5) / 4000, low=1.0, value=2.0, high=4.0)
     for name, wanted, beyond in (("smallest_gap_mm", 3.0, 1 / 6), ("evenness", 1.5, 1 / 12)):
-        axes = figures.spread(name, name, samples, 2.0, wanted).axes[0]
+        axes = spread_figures.spread(name, name, samples, 2.0, wanted).axes[0]
         values, edges, _ = next(patch for patch in axes.patches if hasattr(patch, "get_data")).get_data()
         shaded = sum(
             abs(np.ptp(one.get_xy()[:, 0]) * np.ptp(one.get_xy()[:, 1]))
@@ -152,13 +156,13 @@ def test_the_shaded_share_is_the_share_beyond():
 
 def test_samples_without_the_number_count_as_beyond():
     samples = np.where(np.arange(100) < 25, np.nan, 0.1 + 1e-4 * np.arange(100))
-    assert "25.0 % beyond" in figures.spread("smallest_gap_mm", "gap", samples, None, 0.2).axes[0].get_title(
+    assert "25.0 % beyond" in spread_figures.spread("smallest_gap_mm", "gap", samples, None, 0.2).axes[0].get_title(
         loc="right"
     )
-    assert "25.0 % without" in figures.spread("smallest_gap_mm", "gap", samples, None, None).axes[0].get_title(
+    assert "25.0 % without" in spread_figures.spread("smallest_gap_mm", "gap", samples, None, None).axes[0].get_title(
         loc="right"
     )
-    nothing = figures.spread("smallest_gap_mm", "gap", np.full(9, np.nan), None, 0.2)
+    nothing = spread_figures.spread("smallest_gap_mm", "gap", np.full(9, np.nan), None, 0.2)
     assert "100 % beyond" in nothing.axes[0].get_title(loc="right")
 
 

@@ -10,7 +10,7 @@ from dataclasses import dataclass, field
 import numpy as np
 import streamlit as st
 
-from optics.figures import export
+from optics.figures import export, margins_spread
 from optics.figures import margins as figures
 from optics.figures.palette import DARK, LIGHT
 from optics.presets import Design, Document
@@ -210,7 +210,7 @@ def _drawn(kind: str, of: str, key: tuple[str, ...], dark: bool, _one: Studied, 
         nominal = next(item.value for item in found.new.figures if item.name == of)
         wanted = next((need.wanted for need in found.new.needs if need.name == of), None)
         aged = _one.aged[of] if _one.aged else None
-        figure = figures.spread(of, _names[of], _one.numbers[of], nominal, wanted, aged, palette=palette)
+        figure = margins_spread.spread(of, _names[of], _one.numbers[of], nominal, wanted, aged, palette=palette)
     return export.svg(figure).decode("utf-8")
 
 

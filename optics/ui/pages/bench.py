@@ -55,6 +55,7 @@ else:
     controls.bring(open_wide=True)
     st.subheader("Three kinds of readings", anchor=False)
     controls.explain(design)
+headline.caution(here.report)
 st.caption(
     f"Design {here.report.design_hash}, version {here.report.version}. A screening estimate; it certifies nothing."
 )

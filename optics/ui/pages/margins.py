@@ -34,11 +34,11 @@ with controls:
 if one is not None:
     with pictures:
         left, right = st.columns(2, gap="medium")
-        with left:
-            if one.found.new.needs:
+        if one.found.new.needs:
+            with left:
                 st.subheader("How often each need is met", anchor=False)
                 parts.show_odds(one)
-        with right:
+        with right if one.found.new.needs else left:
             parts.causes(one)
 
 tabs = st.tabs(["Spread", "Tolerances", "Years of use", "What it rests on"], key="margins:tab", on_change=sketch.touch)
