@@ -98,7 +98,7 @@ def _residuals(found: Bench) -> str:
     rows = [("row", found.varied, found.measured, "model", "off by", "std. errors", "")]
     for item in found.residuals:
         numbers = (rounded(number) for number in (item.at, item.measured, item.model))
-        off = f"{100 * item.residual / item.model:+.1f} %"
+        off = f"{100 * item.residual / item.model:+.1f} %" if item.model else "-"
         rows.append((str(item.row), *numbers, off, f"{item.normalized:+.1f}", _line(item.normalized, item.apart)))
     return table(rows, right=range(6), wrap=False)
 

@@ -116,8 +116,13 @@ def bench(
     held = "" if aim is None else _held(model, used, aim)
     if held:
         aim, model = None, Model(design, used, None)
-    fit = fitted(model, used, aim)
+    try:
+        fit = fitted(model, used, aim)
+    except (ValueError, ArithmeticError) as wrong:  # no light in the model, or settings all alike (a singular matrix)
+        raise OutOfRange(f"{source}: the readings cannot be fitted by this design's model ({wrong}).") from None
     factor = float(fit.values[0])
+    if not np.isfinite(factor):
+        raise OutOfRange(f"{source}: the readings cannot be fitted: the design's model gives no light for them.")
     if not 1 / FAR < factor < FAR:
         raise OutOfRange(
             f"{source}: the readings are {factor:.3g} times what the design gives; is {used.measured} in its unit?"

@@ -17,9 +17,12 @@ CHANGED, SOFT = ":primary[●]", ":gray[≈]"
 
 
 def bound_to(key: str, value: Any) -> str:
-    """The key of a widget, after making sure that the widget shows what the document says."""
-    if key not in st.session_state or st.session_state[key] != value:
-        st.session_state[key] = value
+    """The key of a widget, after making sure that the widget shows what the document says.
+
+    The value is set in every run, changed or not: a run that is replaced before the browser has drawn it would
+    else leave a widget with its own default, which the browser then sends back as if a person had chosen it.
+    """
+    st.session_state[key] = value
     return key
 
 
