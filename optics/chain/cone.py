@@ -8,7 +8,7 @@ from optics.guide.bend import relative_bend_ratio
 from optics.guide.ends import tapered_na
 from optics.media.index import D_LINE_NM, refractive_index
 
-INNER_BINS, OUTER_BINS = 12, 6
+INNER_BINS, OUTER_BINS = 12, 5
 # Room beyond NA^2 for what bends widen: 2.5 X, at least a little, at most what the bend table knows.
 BEND_SPREAD, LEAST_ROOM, MOST_ROOM = 2.5, 1.02, 2.0
 LARGEST_NA = 0.9999  # of light that is followed: a grazing ray gets through no face

@@ -4,9 +4,9 @@ import numpy as np
 
 from optics.scene.region import bin_factor, distinct_ports, ports_area_mm2
 
-# The grid: center, rings and spokes, and a finer rim (every 3 degrees: halfway between 2, 3, 4, 5, 6, 10 ports);
+# The grid: center, rings and spokes, and a finer rim (every 4 degrees: halfway between 2, 3, 5 ports and more);
 # nodes of the profile of one port.
-RINGS, SPOKES, RIM, NODES = 12, 36, 120, 40
+RINGS, SPOKES, RIM, NODES = 12, 30, 90, 36
 
 
 def least_per_mm2(field, flux):

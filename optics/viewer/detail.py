@@ -12,7 +12,7 @@ from optics.units import Numbers, lp_mm_from_per_um
 
 # The order in which ties are settled: the light's way there, then the way back.
 PARTS = ("light", "objective", "focus", "lattice", "crosstalk", "camera", "eye")
-ITERATIONS = 11
+ITERATIONS = 10
 LINE_PITCHES = 10.0  # length of the single dark line looked for, in core pitches: a house choice
 
 
