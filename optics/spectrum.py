@@ -149,6 +149,11 @@ def duv(*, wavelength_nm: np.ndarray, power: np.ndarray) -> AnyUnit:
     return _nearest_on_locus(chromaticity(wavelength_nm=wavelength_nm, power=power))[1]
 
 
+def nearest_black_body(*, wavelength_nm: np.ndarray, power: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+    """(color temperature in K, Duv) of a light source at once; see `color_temperature_k` and `duv`."""
+    return _nearest_on_locus(chromaticity(wavelength_nm=wavelength_nm, power=power))
+
+
 def color_rendering_index(*, wavelength_nm: np.ndarray, power: np.ndarray) -> units.Numbers:
     """General color rendering index Ra: 100 - 4.6 times the mean color shift of eight samples.
 

@@ -31,7 +31,7 @@ from optics.media.face import ray_face_transmission
 from optics.media.loss import attenuation_transmission
 from optics.scene.cover import spread_share
 from optics.scene.exit_cone import cone_na_holding
-from optics.spectrum import GRID_NM, color_rendering_index, color_temperature_k, duv, integral, luminous_flux_lm
+from optics.spectrum import GRID_NM, color_rendering_index, integral, luminous_flux_lm, nearest_black_body
 
 EXIT_SHARE = 0.95  # exit_na holds this share of the lumens
 
@@ -243,13 +243,14 @@ def _attenuated(columns: Columns, table: str, length_m: np.ndarray, na: np.ndarr
 def _numbers(columns: Columns, beam: Beam, way: Way) -> dict[str, np.ndarray]:
     spectrum, delivered, lamp = beam.spectrum_w_nm, way.bin_lm.sum(axis=1), way.after_lm["lamp"]
     fibers = fiber_area_mm2(diameter_mm=exit_mm(columns), packing_fraction=columns["guide.bundle.packing_fraction"])
+    kelvin, off_locus = nearest_black_body(wavelength_nm=GRID_NM, power=spectrum)
     return {
         "delivered_lm": delivered,
         "delivered_w": integral(spectrum),
         "transmission": np.where(lamp > 0, delivered / np.where(lamp > 0, lamp, 1.0), 0.0),
         "exit_na": cone_na_holding(sine2_edges=beam.sine2_edges, flux=way.bin_lm, share=EXIT_SHARE),
-        "color_temperature_k": color_temperature_k(wavelength_nm=GRID_NM, power=spectrum),
-        "color_duv": duv(wavelength_nm=GRID_NM, power=spectrum),
+        "color_temperature_k": kelvin,
+        "color_duv": off_locus,
         "color_rendering_index": color_rendering_index(wavelength_nm=GRID_NM, power=spectrum),
         "core_area_mm2": fibers * _core_share(columns, "guide.fiber"),
     }
