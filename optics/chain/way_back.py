@@ -30,7 +30,7 @@ from optics.units import Flags, m2_from_mm2, mm2_from_um2, mm_from_um
 from optics.viewer.camera import cell_signal_to_noise, exposure_s, relay_fraction
 from optics.viewer.eye import apparent_field_deg, peak_cpd, pupil_diameter_mm, seen_luminance_cd_m2
 
-COLORS = 5  # wavelengths that stand for the viewer's spectrum (Gauss quadrature)
+COLORS = 6  # wavelengths that stand for the viewer's spectrum (Gauss quadrature)
 WORST_DEG = 30.0  # grating vector across the rows of cores: the lattice's worst direction
 UNQUANTIZED_DN_E = 1e9  # a camera without rounding
 

@@ -118,8 +118,11 @@ def bench(
         aim, model = None, Model(design, used, None)
     try:
         fit = fitted(model, used, aim)
-    except (ValueError, ArithmeticError) as wrong:  # no light in the model, or settings all alike (a singular matrix)
-        raise OutOfRange(f"{source}: the readings cannot be fitted by this design's model ({wrong}).") from None
+    except (ValueError, ArithmeticError):  # no light in the model, or settings all alike (a singular matrix)
+        raise OutOfRange(
+            "These readings go so far against the design's own model that no number fits them; look at units, settings "
+            "and rows."
+        ) from None
     factor = float(fit.values[0])
     if not np.isfinite(factor):
         raise OutOfRange(f"{source}: the readings cannot be fitted: the design's model gives no light for them.")
