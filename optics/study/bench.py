@@ -118,6 +118,8 @@ def bench(
         aim, model = None, Model(design, used, None)
     try:
         fit = fitted(model, used, aim)
+    except OutOfRange:
+        raise
     except (ValueError, ArithmeticError):  # no light in the model, or settings all alike (a singular matrix)
         raise OutOfRange(
             "These readings go so far against the design's own model that no number fits them; look at units, settings "
